@@ -1,0 +1,81 @@
+"""What the design room answers: margins, poles, the ideal beside the real, and what cannot be beaten."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from balance.design.law import Law
+from balance.plant.record import Plant
+
+Array = NDArray[np.float64]
+
+
+@dataclass(frozen=True)
+class Crossing:
+    """One crossing of the loop transfer: of the unit circle (`phase`) or of the negative real axis (`gain`)."""
+
+    kind: str            # "phase" | "gain"
+    frequency: float     # rad/s
+    value: float         # phase margin in rad, or gain factor
+
+
+@dataclass(frozen=True)
+class Margins:
+    """Margins of a loop broken at one place; everything but `stable` is NaN where the closed loop is unstable."""
+
+    stable: bool
+    gain_lower: float         # largest factor below 1 at which stability is lost (0: none)
+    gain_upper: float         # smallest factor above 1 (inf: none)
+    phase: float              # rad, smallest
+    phase_crossover: float    # rad/s
+    delay: float              # s: smallest added input delay that puts an eigenvalue on the unit circle (inf: none)
+    delay_estimate: float     # s: phase/ω, the textbook estimate
+    modulus: float            # min |1 + L|
+    disk: float               # balanced disk α
+    peak_sensitivity: float   # Ms
+    peak_complementary: float # Mt
+    crossings: tuple[Crossing, ...]
+
+
+@dataclass(frozen=True)
+class Response:
+    """Frequency response of the loop broken at the physical torque, for drawing."""
+
+    frequency: Array          # (n,) rad/s, up to the Nyquist frequency
+    loop: Array               # (n,) complex128 L(e^{jωT}), negative feedback (1 + L)
+
+
+@dataclass(frozen=True)
+class LoopLimits:
+    """What cannot be beaten by any law at this sampling and delay."""
+
+    pole_times_delay: float
+    least_peak_complementary: float   # e^{p t_d}
+    total_delay: float                # s: latency + half a sample + actuator lag
+
+
+@dataclass(frozen=True)
+class Ideal:
+    """The continuous design without sampling or delay, reported beside the real one."""
+
+    K: Array
+    poles: Array              # complex
+    margins: Margins
+
+
+@dataclass(frozen=True)
+class Design:
+    """One stance's law and everything measured on it."""
+
+    plant: Plant
+    law: Law
+    poles: Array              # complex, discrete closed loop
+    equivalent: Array         # complex, ln(z)/T in rad/s
+    margins: Margins
+    limits: LoopLimits
+    ideal: Ideal | None
+    response: Response
+    refused: str              # "" or why no law could be designed ("cannot act about this line", …)

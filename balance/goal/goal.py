@@ -1,0 +1,122 @@
+"""The design file as records: loop, law, estimator, requirements (trials are in `goal.trials`)."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+
+from balance.files.fields import Shape, number, place, quantity, section, table, text, variant
+from balance.goal.trials import Trial
+
+
+@dataclass(frozen=True)
+class Loop:
+    """The sampled loop. `latency` runs from the sampling instant to the torque command."""
+
+    rate: float = quantity("frequency", above=0)
+    latency: float = quantity("time", least=0, default=0.0)
+
+
+@dataclass(frozen=True)
+class Allow:
+    """The largest acceptable excursions (Bryson's rule). Momentum and torque are about the line."""
+
+    lean: float = quantity("angle", above=0)
+    lean_rate: float = quantity("angular speed", above=0)
+    momentum: float = quantity("momentum", above=0)
+    torque: float | None = quantity("torque", above=0, default=None, says="wheels and torque motors")
+    gimbal_rate: float | None = quantity("angular speed", above=0, default=None, says="position servos")
+
+
+@dataclass(frozen=True)
+class Weights:
+    """Explicit diagonal weights in SI on the model's states and input: Σ(xᵀQx + uᵀRu)."""
+
+    states: tuple[float, ...] = place(Shape("list", items=Shape("number", least=0)))
+    input: float = number(above=0)
+
+
+@dataclass(frozen=True)
+class LqrControl:
+    """`law: lqr` with either `allow` or `weights`."""
+
+    allow: Allow | None = section(Allow, default=None)
+    weights: Weights | None = section(Weights, default=None)
+
+
+@dataclass(frozen=True)
+class PidGains:
+    """A user's own gains (SI, parallel form, per second): judged instead of computed."""
+
+    kp: float = number()
+    ki: float = number()
+    kd: float = number()
+    momentum: float = number(default=0.0, says="lean asked for per stored momentum, rad per N·m·s")
+
+
+@dataclass(frozen=True)
+class PidControl:
+    """`law: pid`: computed for the largest allowed peak sensitivity, or the user's own `gains`."""
+
+    peak_sensitivity: float = number(above=1, default=1.7, says="largest Ms the computed gains may show")
+    derivative_filter: float | None = quantity("frequency", above=0, default=None)
+    desaturation_time: float | None = quantity("time", above=0, default=None, says="in which stored momentum is brought back")
+    gains: PidGains | None = section(PidGains, default=None)
+
+
+@dataclass(frozen=True)
+class NoEstimator:
+    """`kind: none`: lean and lean rate are measured as they are."""
+
+
+@dataclass(frozen=True)
+class Complementary:
+    """`kind: complementary`: gyro above the crossover, accelerometer below it."""
+
+    crossover: float = quantity("frequency", above=0)
+
+
+@dataclass(frozen=True)
+class Kalman:
+    """`kind: kalman`: steady-state filter from the IMU's noise densities."""
+
+    disturbance: float = quantity("torque", above=0, says="RMS of the unknown torque, to trust the model less")
+
+
+@dataclass(frozen=True)
+class Requirements:
+    """What the design must meet; what is left out is not judged."""
+
+    phase_margin: float | None = quantity("angle", above=0, default=None)
+    gain_margin_lower: float | None = number(above=0, below=1, default=None, says="a factor; passes at or below")
+    gain_margin_upper: float | None = number(above=1, default=None)
+    delay_margin: float | None = quantity("time", above=0, default=None)
+    modulus_margin: float | None = number(above=0, below=1, default=None)
+    disk_margin: float | None = number(above=0, below=2, default=None)
+    peak_sensitivity: float | None = number(above=1, default=None)
+    momentum_used: float | None = number(above=0, most=1, default=None, says="share of capacity in any trial")
+    peak_lean: float | None = quantity("angle", above=0, default=None)
+    settling_time: float | None = quantity("time", above=0, default=None)
+    friction_needed: float | None = number(above=0, default=None)
+    offset_error: float | None = quantity("length", above=0, default=None,
+                                          says="steady centre-of-mass error that must be tolerable for ever")
+
+
+@dataclass(frozen=True)
+class Goal:
+    """A whole design file."""
+
+    format: int = place(Shape("whole", least=1, most=1, says="1"))
+    design: str = text(says="the design's name")
+    machine: str = text(says="path of the machine file, from this file's folder")
+    loop: Loop = section(Loop)
+    control: LqrControl | PidControl = variant({"lqr": LqrControl, "pid": PidControl}, by="law")
+    trials: dict[str, Trial] = table(Trial)
+    stance: str = text(default="every", says="a stance's name, or `every`")
+    estimator: NoEstimator | Complementary | Kalman = variant(
+        {"none": NoEstimator, "complementary": Complementary, "kalman": Kalman}, default=NoEstimator())
+    require: Requirements = section(Requirements, default=Requirements())
+    fell: float = quantity("angle", above=0, default=0.5235987755982988, says="lean beyond which the machine fell")
+    source: str = field(default="", metadata={"shape": None})
+    marks: Mapping[str, tuple[int, int]] = field(default_factory=dict, metadata={"shape": None}, compare=False)
+    """`source`: path of the file; `marks`: dotted key -> (line, column) in it; neither is a key of the file."""

@@ -1,0 +1,58 @@
+"""Where each parameter of the equations of motion stands in the kernel's flat arrays (the only contract with `plant`).
+
+State vector X: [θ, θ̇, then two entries per unit in file order]; wheel: (Ω, motor current i); gimballed: (γ, γ̇).
+θ is measured from the pose of the stance (not from the balanced lean).
+"""
+
+# body parameters
+INERTIA = 0        # kg·m²: about the line, wheels locked, without the gimballed rotors' own rotational inertia
+STIFF_SIN = 1      # N·m: G_s = m g h cos β
+STIFF_COS = 2      # N·m: G_c = m g δ cos β
+BODY_DRAG = 3      # N·m·s/rad
+MASS = 4           # kg
+HEIGHT = 5         # m
+OFFSET = 6         # m
+GRAVITY = 7        # m/s²: g cos β, the part square to the line
+FOOT_RADIUS = 8    # m
+BALANCED = 9       # rad: θ_b
+TOUCH_DOWN = 10    # rad: inward θ of touch-down as a positive number; inf where nothing catches it
+FELL = 11          # rad: |lean| beyond which it fell
+BODY_SIZE = 16
+
+# unit parameters, common
+KIND = 0           # one of the kinds below
+WHEEL = 0
+GIMBAL_TORQUE = 1  # gimballed, torque motor: input is the gimbal torque (N·m per gimbal)
+GIMBAL_SERVO = 2   # gimballed, position servo: input is the commanded gimbal rate (rad/s)
+
+# reaction wheel
+COUPLING = 1       # kg·m²: α (I + s N J_r)
+OWN_INERTIA = 2    # kg·m²: I + N² J_r
+AXIS_SHARE = 3     # α = a·e
+COULOMB = 4        # N·m
+VISCOUS = 5        # N·m·s/rad
+TORQUE_PER_AMP = 6 # N·m/A at the wheel: η s N K_t  (sign s: same or reversed sense)
+BACK_EMF = 7       # V·s/rad of wheel speed: s N K_e
+RESISTANCE = 8     # ohm, line
+BUS_VOLTAGE = 9    # V
+CURRENT_LIMIT = 10 # A
+CURRENT_LAG = 11   # rad/s: bandwidth of the current loop
+SPEED_LIMIT = 12   # rad/s, relative to the body
+TORQUE_LIMIT = 13  # N·m at the wheel
+
+# gimballed flywheel; `COUNT` 1: single, 2: mirrored pair (one coordinate γ, second gimbal at -γ with -H)
+E_S0 = 1           # e·s₀
+E_GXS0 = 2         # e·(g × s₀)
+KAPPA = 3          # e·g
+MOMENTUM = 4       # N·m·s: H per rotor
+TRANSVERSE = 5     # kg·m²: I_t per rotor
+SPIN_HELD = 6      # kg·m²: I_s where the spin *speed* is held (adds I_s σ²), 0 where the momentum is
+GIMBAL_INERTIA = 7 # kg·m²: I_γ per gimbal, rotor's I_t included
+GIMBAL_DAMPING = 8
+GIMBAL_SPRING = 9
+ANGLE_STOP = 10    # rad
+RATE_LIMIT = 11    # rad/s
+DRIVE_TORQUE = 12  # N·m per gimbal
+RATE_LAG = 13      # rad/s: bandwidth of the servo's rate loop
+COUNT = 14
+UNIT_SIZE = 20

@@ -1,0 +1,46 @@
+"""Legs: two links and a hip, placed by inverse kinematics from hip to foot (`stance` does the placing)."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from balance.files.fields import choice, number, quantity, section, vector
+from balance.machine.solids import Tensor, Vector
+
+
+@dataclass(frozen=True)
+class Link:
+    """One link: a thin rod unless centre and inertia are stated (link frame: x along the link from its upper joint)."""
+
+    length: float = quantity("length", above=0)
+    mass: float = quantity("mass", above=0)
+    centre: float = number(least=0, most=1, default=0.5, says="of its mass, as a share of the length from the upper joint")
+    inertia: Tensor | None = section(Tensor, default=None)
+
+
+@dataclass(frozen=True)
+class JointLimits:
+    """Allowed joint angles: swing sideways, hip from straight down, knee from straight."""
+
+    swing: float = quantity("angle", above=0, default=3.2)
+    hip: float = quantity("angle", above=0, default=3.2)
+    knee: float = quantity("angle", above=0, default=3.2)
+
+
+@dataclass(frozen=True)
+class Leg:
+    """One leg. Without `lower` it is a single link that must span hip to foot."""
+
+    hip: Vector = vector("length")
+    upper: Link = section(Link)
+    lower: Link | None = section(Link, default=None)
+    knee: str = choice(["outward", "inward"], default="outward")
+    limits: JointLimits | None = section(JointLimits, default=None)
+
+
+@dataclass(frozen=True)
+class Feet:
+    """All feet alike: ball radius (0 = a point) and friction coefficient against the ground."""
+
+    radius: float = quantity("length", least=0, default=0.0)
+    friction: float = number(above=0, default=0.6)
