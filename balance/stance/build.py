@@ -1,0 +1,92 @@
+"""From a machine and the name of a stance to the machine standing on its two feet."""
+
+from __future__ import annotations
+
+from difflib import get_close_matches
+from math import atan2, cos, hypot
+
+import numpy as np
+from numpy.typing import NDArray
+
+from balance.base.errors import InputError
+from balance.machine.legs import Feet
+from balance.machine.machine import Machine, StancePlan
+from balance.maths.contact_line import line_axes
+from balance.maths.inertia import about_line
+from balance.maths.rotations import turned
+from balance.stance.bodies import Body, join, placed
+from balance.stance.ground import check_feet, contact_line, lifted_places, touch_down
+from balance.stance.lumped import lumped_stance
+from balance.stance.parts import trunk_bodies
+from balance.stance.problems import problem
+from balance.stance.record import Stance
+from balance.stance.rotors import stabiliser_bodies
+from balance.stance.standing import stand_legs
+
+Array = NDArray[np.float64]
+
+
+def build_stance(machine: Machine, name: str) -> Stance:
+    """Return the machine on the two feet of the stance `name`, rotors locked and gimbals at angle zero.
+
+    Raises
+    ------
+    InputError
+        No such stance; feet in one place or one above the other; a foot without a leg or a leg without a place; a leg
+        that cannot reach its foot or must bend past a joint limit; a lifted foot below the ground.
+    """
+    if name not in machine.stance_names():
+        near = get_close_matches(name, machine.stance_names(), 1)
+        raise InputError([problem(machine, "stances", name, ", ".join(machine.stance_names()),
+                                  f"did you mean {near[0]}?" if near else "")])
+    if machine.lumped is not None:
+        return lumped_stance(machine, machine.lumped)
+    plans = machine.stances or {}
+    return stand(machine, name, plans[name])
+
+
+def stand(machine: Machine, name: str, plan: StancePlan) -> Stance:
+    """Return the machine standing as `plan` says (errors as `build_stance`)."""
+    check_feet(machine, name, plan)
+    R_WT, p_WT = turned(*plan.trunk.turn), np.array(plan.trunk.at)
+    a, b = contact_line(plan)
+    p_a, p_b = np.array(plan.down[a]), np.array(plan.down[b])
+    e, u, w = line_axes(p_a, p_b)
+    lifted = lifted_places(machine, name, plan, p_a, u, w)
+    legs = stand_legs(machine, name, plan, R_WT, p_WT)
+    bodies_T = trunk_bodies(machine.body) + [body for leg in legs.values() for body in leg.bodies]
+    for unit_name, unit_ in machine.stabilisers.items():
+        bodies_T += stabiliser_bodies(unit_name, unit_, machine.motors, R_WT.T @ e)
+    mass, com, I_com = join([placed(body, R_WT, p_WT) for body in bodies_T])
+    feet = machine.feet or Feet()
+    return Stance(
+        name=name, foot_from=a, foot_to=b, p_a_W=p_a, p_b_W=p_b, e_W=e, u_W=u, w_W=w, R_WT=R_WT, p_WT=p_WT,
+        slope=atan2(e[2], hypot(e[0], e[1])), gravity=machine.gravity, mass=mass,
+        height=float((com - p_a) @ u), offset=float((com - p_a) @ w),
+        inertia_locked=about_line(I_com, mass, com - p_a, e), com_W=com, I_com_W=I_com, drag=0.0,
+        foot_radius=feet.radius, friction=feet.friction, lifted=lifted, touch_down_lean=touch_down(lifted),
+        joints={leg_name: leg.joints for leg_name, leg in legs.items()},
+        points_W=_points(bodies_T, {n: leg.points for n, leg in legs.items()}, R_WT, p_WT),
+    )
+
+
+def _points(bodies_T: list[Body], legs: dict[str, Array], R_WT: Array, p_WT: Array) -> dict[str, Array]:
+    """Return what the drawing needs: centres by body name (legs' links left out), then hip, knee and end by leg name."""
+    points: dict[str, list[Array]] = {}
+    links = {link for leg in legs for link in (leg, f"{leg} upper", f"{leg} lower")}
+    for body in bodies_T:
+        if body.name not in links:
+            points.setdefault(body.name, []).append(body.centre)
+    return {name: np.array(rows) @ R_WT.T + p_WT for name, rows in (points | {n: list(r) for n, r in legs.items()}).items()}
+
+
+def toppling_stiffness(stance: Stance) -> tuple[float, float]:
+    """Return (G_s, G_c) in N·m: M(θ) = G_s sin θ + G_c cos θ, feet rolling on their radius."""
+    weight = stance.mass * stance.gravity * cos(stance.slope)
+    return weight * (stance.height - stance.foot_radius), weight * stance.offset
+
+
+def balanced_lean(stance: Stance) -> float:
+    """Return θ_b in rad, where gravity has no moment about the line: −atan(δ/(h − r))."""
+    G_s, G_c = toppling_stiffness(stance)
+    return -atan2(G_c, G_s)

@@ -1,0 +1,107 @@
+"""Masses and inertias of the stabilisers, rotors locked and gimbals at angle zero."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from balance.machine.motors import Motor
+from balance.machine.stabilisers import GimballedFlywheel, ReactionWheel, Rotor, ScissoredPair, Stabiliser
+from balance.maths.inertia import axial, rotated
+from balance.maths.rotations import unit
+from balance.stance.bodies import Body
+from balance.stance.facing import faced_axes
+from balance.stance.parts import solid_mass, stated_tensor
+
+Array = NDArray[np.float64]
+
+
+@dataclass(frozen=True)
+class RotorMass:
+    """A spinning part: mass, inertia about its axis and square to it."""
+
+    mass: float         # kg
+    spin: float         # kg·m²
+    transverse: float   # kg·m²
+
+
+@dataclass(frozen=True)
+class WheelDrive:
+    """A reaction wheel with its motor: the mass matrix of (θ, Ω) is [[J, α·coupled], [α·coupled, own]]."""
+
+    wheel: float    # kg·m²: I, without the motor's rotor
+    motor: float    # kg·m²: J_r
+    ratio: float    # N, motor turns per turn of the wheel
+    sense: float    # s: +1 same, −1 reversed
+
+    @property
+    def coupled(self) -> float:
+        """I + s N J_r in kg·m²."""
+        return self.wheel + self.sense * self.ratio * self.motor
+
+    @property
+    def own(self) -> float:
+        """I + N² J_r in kg·m²."""
+        return self.wheel + self.ratio**2 * self.motor
+
+    @property
+    def locked(self) -> float:
+        """I + J_r in kg·m²: what both add about the wheel's axis when nothing turns against the body."""
+        return self.wheel + self.motor
+
+
+def rotor_mass(rotor: Rotor) -> RotorMass:
+    """Return a rotor's mass and inertias: stated ones first, else its solid's (whose axis is z).
+
+    A stated spin inertia without a transverse one is taken as a thin disc's: half of it.
+    """
+    mass, I_own = solid_mass(rotor.solid, rotor.mass, rotor.density)
+    spin = rotor.spin if rotor.spin is not None else float(I_own[2, 2])
+    if rotor.transverse is not None:
+        return RotorMass(mass, spin, rotor.transverse)
+    across = float(I_own[0, 0] + I_own[1, 1]) / 2.0
+    return RotorMass(mass, spin, across if rotor.spin is None or across > 0.0 else spin / 2.0)
+
+
+def wheel_drive(wheel: ReactionWheel, motors: Mapping[str, Motor] | None) -> WheelDrive:
+    """Return a wheel's inertias with its motor's.
+
+    Where the file says that the wheel's inertia already holds the motor's rotor, it holds it as the wheel feels it: N² J_r.
+    """
+    motor = (motors or {}).get(wheel.motor)
+    rotor = motor.rotor_inertia if motor is not None else 0.0
+    spin = rotor_mass(wheel.rotor).spin
+    if wheel.gear is None:
+        return WheelDrive(spin, rotor, 1.0, 1.0)
+    ratio, sense = wheel.gear.ratio, 1.0 if wheel.gear.sense == "same" else -1.0
+    return WheelDrive(spin - ratio**2 * rotor if wheel.gear.includes_rotor else spin, rotor, ratio, sense)
+
+
+def stabiliser_bodies(name: str, unit_: Stabiliser, motors: Mapping[str, Motor] | None, e_T: Array) -> list[Body]:
+    """Return a stabiliser's bodies in the trunk's axes; turntables face the line's direction `e_T` (3,)."""
+    rotor = rotor_mass(unit_.rotor)
+    at = np.array(unit_.at)
+    if isinstance(unit_, ReactionWheel):
+        spin = wheel_drive(unit_, motors).locked
+        return [Body(name, rotor.mass, at, axial(spin, rotor.transverse, unit(unit_.axis)))]
+    s_T, g_T, R = faced_axes(unit_, e_T)
+    I_own = axial(rotor.spin, rotor.transverse, s_T) + rotated(frame_tensor(unit_), R)
+    mass = rotor.mass + unit_.frame_mass
+    if isinstance(unit_, ScissoredPair):
+        arm = unit_.spacing / 2.0 * g_T
+        return [Body(name, mass, at - arm, I_own), Body(name, mass, at + arm, I_own)]
+    return [Body(name, mass, at, I_own)]
+
+
+def frame_tensor(unit_: GimballedFlywheel) -> Array:
+    """Return one gimbal frame's tensor (3, 3) at angle zero, in the axes of the file.
+
+    Only the inertia about the gimbal axis stated: taken alike about all axes, the one choice that does not vary with
+    the gimbal's angle whatever the line's direction.
+    """
+    if unit_.frame_inertia is not None:
+        return stated_tensor(unit_.frame_inertia)
+    return unit_.gimbal.inertia * np.eye(3)
