@@ -15,7 +15,8 @@ UP = np.array([0.0, 0.0, 1.0])
 def line_axes(p_a: Array, p_b: Array) -> tuple[Array, Array, Array]:
     """Return e (from foot a to foot b), u (up, square to e) and w = e × u (horizontal), each (3,).
 
-    A small turn +θ about e moves u toward w.  The two feet must not stand in one place or one above the other.
+    A small turn +θ about e moves u toward w.  The two feet must not stand in one place or one above the
+    other.
     """
     e = unit(p_b - p_a)
     u = unit(UP - e[2] * e)

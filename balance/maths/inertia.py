@@ -1,4 +1,4 @@
-"""Inertia tensors as (3, 3) arrays: xy = −∫xy dm off the diagonal, each about a stated point and in stated axes."""
+"""Inertia tensors as (3, 3) arrays, xy = −∫xy dm, each about a stated point and in stated axes."""
 
 from __future__ import annotations
 
@@ -14,7 +14,7 @@ def tensor(xx: float, yy: float, zz: float, xy: float = 0.0, xz: float = 0.0, yz
 
 
 def axial(spin: float, transverse: float, axis: Array) -> Array:
-    """Return the tensor (3, 3) of a body of revolution: `spin` about the unit `axis` (3,), `transverse` square to it."""
+    """Return the tensor (3, 3) of a body of revolution about the unit `axis` (3,)."""
     return np.asarray(transverse * np.eye(3) + (spin - transverse) * np.outer(axis, axis))
 
 
@@ -24,15 +24,15 @@ def rotated(I_A: Array, R_BA: Array) -> Array:
 
 
 def shifted(I_com: Array, mass: float, arm: Array) -> Array:
-    """Return the tensor about a point `arm` (3,) away from the centre of mass (parallel-axis theorem, Steiner)."""
+    """Return the tensor about a point `arm` (3,) from the centre of mass (parallel-axis theorem)."""
     return np.asarray(I_com + mass * (arm @ arm * np.eye(3) - np.outer(arm, arm)))
 
 
 def joined(masses: Array, centres: Array, tensors: Array) -> tuple[float, Array, Array]:
     """Return mass, centre of mass (3,) and tensor (3, 3) about it of rigidly joined bodies.
 
-    `masses` (n,), `centres` (n, 3) and `tensors` (n, 3, 3), each about its own centre, in common axes.  A total mass of
-    zero has its centre at the origin.
+    `masses` (n,), `centres` (n, 3) and `tensors` (n, 3, 3), each about its own centre, in common axes.  A
+    total mass of zero has its centre at the origin.
     """
     mass = float(masses.sum())
     centre = masses @ centres / mass if mass > 0.0 else np.zeros(3)
@@ -43,5 +43,5 @@ def joined(masses: Array, centres: Array, tensors: Array) -> tuple[float, Array,
 
 
 def about_line(I_com: Array, mass: float, arm: Array, direction: Array) -> float:
-    """Return the moment of inertia about a line through a point `arm` away from the centre of mass, unit `direction`."""
+    """Return the inertia about a line of unit `direction` through a point `arm` from the centre of mass."""
     return float(direction @ shifted(I_com, mass, arm) @ direction)

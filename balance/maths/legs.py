@@ -1,7 +1,8 @@
 """Closed-form inverse kinematics of a leg whose hip swings sideways and bends in the swung plane.
 
-Leg axes at the hip: r outward (horizontal, from the trunk's middle to the hip), t = z × r sideways, z up.  The hip swings
-by `swing` about r, then bends by `hip` from straight down toward r; the knee bends by `knee` from straight.
+Leg axes at the hip: r outward (horizontal, from the trunk's middle to the hip), t = z × r sideways, z up.
+The hip swings by `swing` about r, then bends by `hip` from straight down toward r; the knee bends by `knee`
+from straight.
 """
 
 from __future__ import annotations
@@ -22,19 +23,26 @@ def leg_axes(hip: Array) -> Array:
 
 
 def swing_angle(sideways: float, up: float) -> tuple[float, float]:
-    """Return the sideways swing in rad, within ±π/2, and the foot's depth along the swung leg (negative above the hip).
+    """Return the sideways swing (rad, within ±π/2) and the foot's depth in the swung plane (m).
 
-    The smaller of the two possible swings is taken, so a foot lifted past the hip does not flip the knee over.
+    A foot above the hip has negative depth.
+
+    The smaller of the two possible swings is taken, so a foot lifted past the hip does not flip the knee
+    over.
     """
     depth = hypot(sideways, up)
-    return (atan2(sideways, -up), depth) if up <= 0.0 and depth > 0.0 else (atan2(-sideways, up) + 0.0, -depth)
+    if up <= 0.0 and depth > 0.0:
+        return atan2(sideways, -up), depth
+    return atan2(-sideways, up) + 0.0, -depth
 
 
-def bend_angles(out: float, depth: float, upper: float, lower: float, side: float) -> tuple[float, float] | None:
+def bend_angles(out: float, depth: float, upper: float, lower: float,
+                side: float) -> tuple[float, float] | None:
     """Return (hip, knee) in rad for a foot at (out, depth) in the swung plane, or None out of reach.
 
-    Law of cosines for the triangle of both links; `side` +1 puts the knee outward of the line from hip to foot, −1
-    inward.  The hip turns the upper link from straight down toward r; the lower link then points at hip + knee.
+    Law of cosines for the triangle of both links; `side` +1 puts the knee outward of the line from hip to
+    foot, −1 inward.  The hip turns the upper link from straight down toward r; the lower link then points at
+    hip + knee.
     """
     reach = hypot(out, depth)
     if reach > upper + lower or reach < abs(upper - lower) or reach == 0.0:
@@ -47,7 +55,8 @@ def bend_angles(out: float, depth: float, upper: float, lower: float, side: floa
 def link_axes(axes: Array, swing: float, bend: float) -> Array:
     """Return a link's own axes as columns; `axes` from `leg_axes`.
 
-    x runs along the link from its upper joint, y is its hinge (t at no swing), z = x × y (outward when hanging down).
+    x runs along the link from its upper joint, y is its hinge (t at no swing), z = x × y (outward when
+    hanging down).
 
     `bend` is the link's angle from straight down toward r, in the plane swung by `swing`.
     """

@@ -12,7 +12,7 @@ Array = NDArray[np.float64]
 
 def turned(roll: float, pitch: float, yaw: float) -> Array:
     """Return R = Rz(yaw)·Ry(pitch)·Rx(roll), (3, 3); angles in rad (ISO 8855 order)."""
-    cr, sr, cp, sp, cy, sy = np.cos(roll), np.sin(roll), np.cos(pitch), np.sin(pitch), np.cos(yaw), np.sin(yaw)
+    (cr, cp, cy), (sr, sp, sy) = np.cos([roll, pitch, yaw]), np.sin([roll, pitch, yaw])
     return np.array([
         [cy * cp, cy * sp * sr - sy * cr, cy * sp * cr + sy * sr],
         [sy * cp, sy * sp * sr + cy * cr, sy * sp * cr - cy * sr],

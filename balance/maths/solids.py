@@ -1,7 +1,7 @@
 """Volumes and inertia tensors of uniform solids, per unit of mass, about their centres (standard tables).
 
-Each function returns (volume in m³, tensor ÷ mass in m², shape (3, 3)).  Solids of revolution have z as their axis;
-`laid` lays them along x or y.  Thin rods and points have no volume.
+Each function returns (volume in m³, tensor ÷ mass in m², shape (3, 3)).  Solids of revolution have z as their
+axis; `laid` lays them along x or y.  Thin rods and points have no volume.
 """
 
 from __future__ import annotations
@@ -21,7 +21,7 @@ def box(x: float, y: float, z: float) -> Solid:
 
 
 def tube(outer: float, inner: float, length: float) -> Solid:
-    """Return a tube with outer and inner diameter and axial length (m); inner 0 is a full cylinder or disc."""
+    """Return a tube by outer and inner diameter and axial length (m); inner 0 is a full cylinder."""
     squares = (outer * outer + inner * inner) / 4.0
     across = squares / 4.0 + length * length / 12.0
     return pi * (outer * outer - inner * inner) / 4.0 * length, np.diag([across, across, squares / 2.0])

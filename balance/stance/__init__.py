@@ -1,0 +1,1 @@
+"""The machine on its two feet: contact line, mass, height, offset, inertia."""

@@ -32,8 +32,9 @@ def build_stance(machine: Machine, name: str) -> Stance:
     Raises
     ------
     InputError
-        No such stance; feet in one place or one above the other; a foot without a leg or a leg without a place; a leg
-        that cannot reach its foot or must bend past a joint limit; a lifted foot below the ground.
+        No such stance; feet in one place or one above the other; a foot without a leg or a leg without a
+        place; a leg that cannot reach its foot or must bend past a joint limit; a lifted foot below the
+        ground.
     """
     if name not in machine.stance_names():
         near = get_close_matches(name, machine.stance_names(), 1)
@@ -71,13 +72,14 @@ def stand(machine: Machine, name: str, plan: StancePlan) -> Stance:
 
 
 def _points(bodies_T: list[Body], legs: dict[str, Array], R_WT: Array, p_WT: Array) -> dict[str, Array]:
-    """Return what the drawing needs: centres by body name (legs' links left out), then hip, knee and end by leg name."""
+    """Return what the drawing needs: centres by body name (links left out); hip, knee and end by leg name."""
     points: dict[str, list[Array]] = {}
     links = {link for leg in legs for link in (leg, f"{leg} upper", f"{leg} lower")}
     for body in bodies_T:
         if body.name not in links:
             points.setdefault(body.name, []).append(body.centre)
-    return {name: np.array(rows) @ R_WT.T + p_WT for name, rows in (points | {n: list(r) for n, r in legs.items()}).items()}
+    found_T = {name: np.array(rows) for name, rows in points.items()} | legs
+    return {name: rows @ R_WT.T + p_WT for name, rows in found_T.items()}
 
 
 def toppling_stiffness(stance: Stance) -> tuple[float, float]:

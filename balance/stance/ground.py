@@ -45,7 +45,7 @@ def contact_line(plan: StancePlan) -> tuple[str, str]:
 
 def lifted_places(machine: Machine, name: str, plan: StancePlan, p_a: Array, u: Array,
                   w: Array) -> dict[str, tuple[float, float]]:
-    """Return foot -> (signed distance from the line along w, clearance above the ground through the line) in m.
+    """Return foot -> (signed distance from the line along w, clearance above the ground) in m.
 
     The ground is the plane through the line and w.  Raises InputError for a lifted foot below it.
     """
@@ -61,17 +61,17 @@ def lifted_places(machine: Machine, name: str, plan: StancePlan, p_a: Array, u: 
 
 
 def touch_down(lifted: dict[str, tuple[float, float]]) -> float | None:
-    """Return the inward turn (rad, positive) at which the first lifted foot on the inward side lands; None: none is there.
+    """Return the inward turn (rad, positive) at which the first lifted foot lands; None: none is inward.
 
-    Exactly atan(clearance ÷ distance): a turn about the line carries the foot on a circle, and equal balls at all feet
-    roll together.
+    Exactly atan(clearance ÷ distance): a turn about the line carries the foot on a circle, and equal balls at
+    all feet roll together.
     """
     angles = [atan2(max(clearance, 0.0), -across) for across, clearance in lifted.values() if across < 0.0]
     return min(angles) if angles else None
 
 
 def _size(plan: StancePlan) -> float:
-    """Return the machine's size: the distance between the points of the stance that lie furthest apart, about."""
+    """Return the machine's size: the diagonal of the box around feet and trunk."""
     points = np.array([*plan.down.values(), *(plan.lifted or {}).values(), plan.trunk.at])
     return float(np.linalg.norm(np.ptp(points, axis=0)))
 
@@ -98,9 +98,10 @@ def _names(machine: Machine, name: str, plan: StancePlan) -> list[Problem]:
         for foot in feet:
             if legs and foot not in legs:
                 near = get_close_matches(foot, legs, 1)
-                found.append(problem(machine, f"stances.{name}.{place}.{foot}", foot, ", ".join(legs),
-                                     f"did you mean {near[0]}?" if near else "every foot belongs to a leg of its name"))
-    found += [problem(machine, f"stances.{name}.lifted.{foot}", foot, "a foot that is not down", "a foot stands or is lifted")
+                hint = f"did you mean {near[0]}?" if near else "every foot belongs to a leg of its name"
+                found.append(problem(machine, f"stances.{name}.{place}.{foot}", foot, ", ".join(legs), hint))
+    found += [problem(machine, f"stances.{name}.lifted.{foot}", foot, "a foot that is not down",
+                      "a foot stands or is lifted")
               for foot in lifted if foot in plan.down]
     found += [problem(machine, f"stances.{name}", f"no place for the leg {leg}", "a place for every leg",
                       f"put {leg} under `down` or `lifted`")

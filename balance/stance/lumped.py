@@ -19,17 +19,18 @@ E_T = np.array([1.0, 0.0, 0.0])
 
 
 def lumped_stance(machine: Machine, lumped: Lumped) -> Stance:
-    """Return the stance of a lumped machine: line along the trunk's x, up its z, so outward (w = e × u) is −y.
+    """Return the stance of a lumped machine: line along the trunk's x, up its z, so outward w = e × u is −y.
 
-    The trunk's origin lies on the line.  The feet are drawn half a height to either side, and the tensor about the
-    centre of mass is taken alike about all axes: three numbers say nothing about the other two.
+    The trunk's origin lies on the line.  The feet are drawn half a height to either side, and the tensor
+    about the centre of mass is taken alike about all axes: three numbers say nothing about the other two.
     Raises InputError where the inertia is less than m(h² + δ²), which no mass distribution can be.
     """
     steiner = lumped.mass * (lumped.height**2 + lumped.offset**2)
     rounding = 1e-9 * steiner
     if lumped.inertia < steiner - rounding:
         raise InputError([problem(
-            machine, "lumped.inertia", f"{lumped.inertia:.6g} kg*m^2", f"at least mass × (height² + offset²) = {steiner:.6g} kg*m^2",
+            machine, "lumped.inertia", f"{lumped.inertia:.6g} kg*m^2",
+            f"at least mass × (height² + offset²) = {steiner:.6g} kg*m^2",
             "inertia is about the line through the feet, not about the centre of mass")])
     p_a, p_b = -0.5 * lumped.height * E_T, 0.5 * lumped.height * E_T
     e, u, w = line_axes(p_a, p_b)

@@ -29,8 +29,8 @@ from balance.stance.bodies import Body
 Array = NDArray[np.float64]
 
 
-def solid_shape(solid: Solid) -> tuple[float, Array]:
-    """Return volume (m³; 0 for rods and points) and tensor per unit of mass (m², (3, 3)) about the solid's centre."""
+def solid_shape(solid: Solid) -> tuple[float, Array]:  # noqa: PLR0911 - one return per kind
+    """Return volume (m³; 0 for rods and points) and tensor per unit of mass (m², (3, 3)) about its centre."""
     match solid:
         case Box(sides):
             return box(*sides)
@@ -49,7 +49,7 @@ def solid_shape(solid: Solid) -> tuple[float, Array]:
 
 
 def solid_mass(solid: Solid | None, mass: float | None, density: float | None) -> tuple[float, Array]:
-    """Return mass (kg) and tensor (kg·m², (3, 3)) of a solid given by its mass or its density; no solid: a point."""
+    """Return mass (kg) and tensor (kg·m², (3, 3)) of a solid given by mass or density; no solid: a point."""
     volume, unit_tensor = solid_shape(solid) if solid is not None else point()
     found = mass if mass is not None else (density or 0.0) * volume
     return found, found * unit_tensor

@@ -17,8 +17,9 @@ from balance.stance.parts import stated_tensor
 Array = NDArray[np.float64]
 
 SLACK = 5e-3
-"""How far a one-link leg may miss the distance from hip to foot, as a share of its length: coordinates are written to a
-millimetre or so, and the link is laid along the true line."""
+"""How far a one-link leg may miss the distance from hip to foot, as a share of its length.
+
+Coordinates are written to a millimetre or so; the link is laid along the true line."""
 
 
 @dataclass(frozen=True)
@@ -42,8 +43,8 @@ class OutOfReach:
 def place_leg(name: str, leg: Leg, end: Array) -> PlacedLeg | OutOfReach:
     """Return a leg whose end stands at `end` (3,), in the trunk's axes.
 
-    Closed form: the sideways swing from the foot's place across the leg, then the triangle of the two links by the law
-    of cosines.
+    Closed form: the sideways swing from the foot's place across the leg, then the triangle of the two links
+    by the law of cosines.
     """
     hip = np.array(leg.hip)
     axes = leg_axes(hip)
@@ -51,7 +52,8 @@ def place_leg(name: str, leg: Leg, end: Array) -> PlacedLeg | OutOfReach:
     swing, depth = swing_angle(sideways, up)
     if leg.lower is None:
         return _one_link(name, leg, hip, end, swing, float(np.arctan2(out, depth)))
-    found = bend_angles(out, depth, leg.upper.length, leg.lower.length, 1.0 if leg.knee == "outward" else -1.0)
+    side = 1.0 if leg.knee == "outward" else -1.0
+    found = bend_angles(out, depth, leg.upper.length, leg.lower.length, side)
     if found is None:
         return OutOfReach(hypot(out, depth), *reach_range(leg.upper.length, leg.lower.length))
     bend, knee_angle = found
@@ -62,7 +64,8 @@ def place_leg(name: str, leg: Leg, end: Array) -> PlacedLeg | OutOfReach:
     return PlacedLeg((swing, bend, knee_angle), bodies, np.array([hip, knee, end]))
 
 
-def _one_link(name: str, leg: Leg, hip: Array, end: Array, swing: float, bend: float) -> PlacedLeg | OutOfReach:
+def _one_link(name: str, leg: Leg, hip: Array, end: Array, swing: float,
+              bend: float) -> PlacedLeg | OutOfReach:
     length, span = leg.upper.length, float(np.linalg.norm(end - hip))
     if abs(span - length) > SLACK * length:
         return OutOfReach(span, length, length)
@@ -82,4 +85,5 @@ def beyond_limits(leg: Leg, joints: tuple[float, ...]) -> list[tuple[str, float,
     if leg.limits is None:
         return []
     limits = (("swing", leg.limits.swing), ("hip", leg.limits.hip), ("knee", leg.limits.knee))
-    return [(name, angle, limit) for (name, limit), angle in zip(limits, joints, strict=False) if abs(angle) > limit]
+    return [(name, angle, limit) for (name, limit), angle in zip(limits, joints, strict=False)
+            if abs(angle) > limit]

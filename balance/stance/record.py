@@ -14,8 +14,9 @@ Array = NDArray[np.float64]
 class Stance:
     """One pair of feet.  World frame z up; vectors carry their frame (`_W` world, `_T` trunk).
 
-    The line runs from `foot_from` (a) to `foot_to` (b) along `e`; `u` is up, square to the line; `w` = e × u is horizontal
-    and points outward.  θ turns u toward w.  The centre of mass is at height·u + offset·w from the line.
+    The line runs from `foot_from` (a) to `foot_to` (b) along `e`; `u` is up, square to the line; `w` = e × u
+    is horizontal and points outward.  θ turns u toward w.  The centre of mass is at height·u + offset·w from
+    the line.
     """
 
     name: str
@@ -40,7 +41,7 @@ class Stance:
     foot_radius: float              # m
     friction: float
     lifted: dict[str, tuple[float, float]]   # foot -> (signed distance from the line along w, clearance) in m
-    touch_down_lean: float | None   # rad > 0: inward turn from θ = 0 at which a lifted foot meets the ground; None: never
+    touch_down_lean: float | None   # rad > 0: inward turn from θ = 0 that lands a lifted foot; None: never
     joints: dict[str, tuple[float, ...]]     # leg -> joint angles (swing, hip, knee) in rad
     points_W: dict[str, Array]      # drawing: leg name -> (k, 3) hip, knee, foot; part name -> (1, 3) centre
 

@@ -69,7 +69,8 @@ def rotor_mass(rotor: Rotor) -> RotorMass:
 def wheel_drive(wheel: ReactionWheel, motors: Mapping[str, Motor] | None) -> WheelDrive:
     """Return a wheel's inertias with its motor's.
 
-    Where the file says that the wheel's inertia already holds the motor's rotor, it holds it as the wheel feels it: N² J_r.
+    Where the file says that the wheel's inertia already holds the motor's rotor, it holds it as the wheel
+    feels it: N² J_r.
     """
     motor = (motors or {}).get(wheel.motor)
     rotor = motor.rotor_inertia if motor is not None else 0.0
@@ -80,7 +81,8 @@ def wheel_drive(wheel: ReactionWheel, motors: Mapping[str, Motor] | None) -> Whe
     return WheelDrive(spin - ratio**2 * rotor if wheel.gear.includes_rotor else spin, rotor, ratio, sense)
 
 
-def stabiliser_bodies(name: str, unit_: Stabiliser, motors: Mapping[str, Motor] | None, e_T: Array) -> list[Body]:
+def stabiliser_bodies(name: str, unit_: Stabiliser, motors: Mapping[str, Motor] | None,
+                      e_T: Array) -> list[Body]:
     """Return a stabiliser's bodies in the trunk's axes; turntables face the line's direction `e_T` (3,)."""
     rotor = rotor_mass(unit_.rotor)
     at = np.array(unit_.at)
@@ -99,8 +101,8 @@ def stabiliser_bodies(name: str, unit_: Stabiliser, motors: Mapping[str, Motor] 
 def frame_tensor(unit_: GimballedFlywheel) -> Array:
     """Return one gimbal frame's tensor (3, 3) at angle zero, in the axes of the file.
 
-    Only the inertia about the gimbal axis stated: taken alike about all axes, the one choice that does not vary with
-    the gimbal's angle whatever the line's direction.
+    Only the inertia about the gimbal axis stated: taken alike about all axes, the one choice that does not
+    vary with the gimbal's angle whatever the line's direction.
     """
     if unit_.frame_inertia is not None:
         return stated_tensor(unit_.frame_inertia)

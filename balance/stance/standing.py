@@ -14,11 +14,12 @@ from balance.stance.problems import degrees, millimetres, problem
 Array = NDArray[np.float64]
 
 
-def stand_legs(machine: Machine, name: str, plan: StancePlan, R_WT: Array, p_WT: Array) -> dict[str, PlacedLeg]:
+def stand_legs(machine: Machine, name: str, plan: StancePlan, R_WT: Array,
+               p_WT: Array) -> dict[str, PlacedLeg]:
     """Return every leg in the trunk's axes, in file order.
 
-    A leg ends in the middle of its foot's ball, which is one radius above the contact.  Raises InputError with all legs
-    that cannot reach their feet or must bend past a limit.
+    A leg ends in the middle of its foot's ball, which is one radius above the contact.  Raises InputError
+    with all legs that cannot reach their feet or must bend past a limit.
     """
     radius = (machine.feet or Feet()).radius
     contacts = {**plan.down, **(plan.lifted or {})}
