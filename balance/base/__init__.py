@@ -1,0 +1,1 @@
+"""What every room needs: errors with their place, units, plain tables."""

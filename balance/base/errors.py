@@ -13,8 +13,8 @@ from dataclasses import dataclass
 class Problem:
     """One thing wrong with an input.
 
-    `where` is a file path (or a command line), `line` and `column` count from 1 (0: not in a file), `key` is the
-    dotted path inside the file.
+    `where` is a file path (or a command line), `line` and `column` count from 1 (0: not in a file), `key` is
+    the dotted path inside the file.
     """
 
     where: str

@@ -1,8 +1,8 @@
 """The words a record uses to describe its own place in a file.
 
-A machine or design file has no schema beside its records: each frozen dataclass *is* the schema.  A field's metadata
-says what stands in the file (a quantity with a unit, a number, a choice, a section, a named table of sections); the
-reader (`files.reader`) and the published JSON Schema (`files.schema`) both walk the same metadata.
+A machine or design file has no schema beside its records: each frozen dataclass *is* the schema.  A field's
+metadata says what stands in the file (a quantity with a unit, a number, a choice, a section, a named table of
+sections); the reader (`files.reader`) and the published JSON Schema (`files.schema`) both walk the same metadata.
 """
 
 from __future__ import annotations
@@ -19,13 +19,13 @@ REQUIRED: Any = MISSING
 class Shape:
     """What may stand at one place of a file.
 
-    `kind`: "quantity" | "number" | "whole" | "text" | "flag" | "choice" | "list" | "section" | "table" | "variant" |
-    "tensor".  The other members matter only to some kinds:
+    `kind`: "quantity" | "number" | "whole" | "text" | "flag" | "choice" | "list" | "section" | "table" |
+    "variant".  The other members matter only to some kinds:
 
     - `dimension`: name in the project's table of dimensions (quantity)
     - `above`/`least`/`below`/`most`: open and closed bounds in SI (quantity, number)
     - `choices`: the allowed words (choice)
-    - `items`, `length`, `ordered`: shape and count of a list's members
+    - `items`, `length`: shape and count of a list's members; `each`: their shapes one by one, where they differ
     - `record`: the dataclass of a section, or of each entry of a table
     - `variants`: word -> dataclass, told apart by the key `by` (variant)
       or, with `by=""`, by which of the words is present as the single key
@@ -40,6 +40,7 @@ class Shape:
     choices: tuple[str, ...] = ()
     items: Shape | None = None
     length: int | None = None
+    each: tuple[Shape, ...] = ()
     record: type | None = None
     variants: tuple[tuple[str, type], ...] = ()
     by: str = "kind"
@@ -51,7 +52,9 @@ class Shape:
 
 def place(shape: Shape, default: Any = REQUIRED) -> Any:
     """Return a dataclass field that carries `shape`."""
-    return field(default=default, metadata={"shape": shape}) if default is not REQUIRED else field(metadata={"shape": shape})
+    if default is REQUIRED:
+        return field(metadata={"shape": shape})
+    return field(default=default, metadata={"shape": shape})
 
 
 def shape_of(member: Field[Any]) -> Shape:
@@ -59,6 +62,11 @@ def shape_of(member: Field[Any]) -> Shape:
     found = member.metadata["shape"]
     assert isinstance(found, Shape)
     return found
+
+
+def key_of(member: Field[Any]) -> str:
+    """Return the key a field has in the file."""
+    return shape_of(member).written or member.name
 
 
 def quantity(dimension: str, *, default: Any = REQUIRED, says: str = "", above: float | None = None,

@@ -1,0 +1,1 @@
+"""What the design file says: loop, law, trials, requirements."""

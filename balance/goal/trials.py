@@ -1,7 +1,7 @@
 """What happens to the machine in a trial. Parts of one trial act together.
 
-Lean is measured from the balanced lean; `toward` says which way a push, torque, start, shift, release or swing goes:
-positive values in the file mean "in that direction", and `both` runs the trial twice.
+Lean is measured from the balanced lean; `toward` says which way a push, torque, start, shift, release or swing
+goes: positive values in the file mean "in that direction", and `both` runs the trial twice.
 """
 
 from __future__ import annotations
@@ -76,7 +76,8 @@ class Swing:
     lasts: float | None = quantity("time", above=0, default=None, written="for")
     start: float = quantity("time", least=0, default=0.1, written="from")
     points: tuple[tuple[float, float], ...] | None = place(
-        Shape("list", items=Shape("list", length=2, items=Shape("quantity", "time or torque"))), None)
+        Shape("list", items=Shape("list", length=2, each=(Shape("quantity", "time", least=0),
+                                                          Shape("quantity", "torque")))), None)
     toward: str = choice(TOWARD, default="both")
 
 

@@ -1,0 +1,1 @@
+"""What the machine file says: parts, legs, feet, stabilisers, motors, supply, sensing, stances."""

@@ -1,0 +1,38 @@
+"""A design file into a `Goal`."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+from balance.base.errors import Problem
+from balance.base.words import listed, nearest
+from balance.files.document import load
+from balance.files.reader import read
+from balance.goal.goal import Goal
+from balance.goal.rules import RULES
+
+EVERY = "every"
+"""The word that stands for all stances of the machine."""
+
+
+def read_goal(path: str) -> Goal:
+    """Return the goal a design file describes, SI throughout.
+
+    `Goal.machine` stays the path as written; it counts from the folder of `Goal.source`.
+
+    Raises
+    ------
+    InputError
+        With all problems of the file.
+    """
+    return read(load(path), Goal, RULES)
+
+
+def stance_problem(goal: Goal, stances: Sequence[str]) -> Problem | None:
+    """Return what is wrong with the goal's stance on a machine that has `stances`; None where it names one of them."""
+    if goal.stance == EVERY or goal.stance in stances:
+        return None
+    near = nearest(goal.stance, (*stances, EVERY))
+    line, column = goal.marks.get("stance", (0, 0))
+    return Problem(goal.source, line, column, "stance", f"the stance `{goal.stance}`",
+                   f"{listed(stances)} or `{EVERY}`", f"did you mean `{near}`?" if near else "")

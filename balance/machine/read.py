@@ -1,0 +1,104 @@
+"""A machine file into a `Machine`, with everything that must hold across its sections."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+from balance.base.errors import InputError, Problem
+from balance.base.words import listed, nearest
+from balance.files.document import Node, Tree, load
+from balance.files.reader import Fault, Marks, attempt
+from balance.machine.machine import Machine
+from balance.machine.rules import RULES
+
+
+def read_machine(path: str) -> Machine:
+    """Return the machine a file describes, SI throughout.
+
+    Raises
+    ------
+    InputError
+        With all problems of the file: unreadable, wrong values, and values that do not go together.
+    """
+    tree = load(path)
+    reading = attempt(tree, Machine, RULES)
+    problems = [*reading.problems, *_across(tree, reading.marks)]
+    if problems:
+        raise InputError(problems)
+    assert isinstance(reading.record, Machine)
+    return reading.record
+
+
+def _across(tree: Tree, marks: Marks) -> Iterator[Problem]:
+    """Rules across sections, read off the tree so that they speak up beside other problems of the file."""
+    root = tree.root
+    for fault in (*_kind_of_body(root), *_motors(root), *_rotors(root), *_legs(root)):
+        line, column = marks.get(fault.key, (root.line, root.column))
+        yield Problem(tree.path, line, column, fault.key or "(file)", fault.given, fault.allowed, fault.hint)
+
+
+def _kind_of_body(root: Node) -> Iterator[Fault]:
+    """Three numbers, or parts and stances."""
+    if root.kind != "mapping":
+        return
+    if root.get("lumped"):
+        for word in ("body", "legs", "stances"):
+            if root.get(word):
+                yield Fault(word, f"`{word}` beside `lumped`", "`lumped` alone, or `body` and `stances`",
+                            "three numbers stand for the whole body and its one stance")
+    else:
+        for word in ("body", "stances"):
+            if not root.get(word):
+                yield Fault("", f"neither `lumped` nor `{word}`", "`lumped`, or `body` and `stances`",
+                            f"add `{word}:`, or `lumped:` with mass, height and inertia")
+
+
+def _entries(root: Node, table: str) -> tuple[tuple[str, Node], ...]:
+    found = root.get(table)
+    return tuple((name, node) for name, _, node in found.pairs) if found else ()
+
+
+def _motors(root: Node) -> Iterator[Fault]:
+    """Motor names lead to entries under `motors`."""
+    known = root.get("motors")
+    names = known.names() if known else ()
+    for unit, node in _entries(root, "stabilisers"):
+        for word in ("motor", "spin_motor"):
+            motor = node.get(word)
+            if motor is not None and motor.text and motor.text not in names:
+                near = nearest(motor.text, names)
+                yield Fault(f"stabilisers.{unit}.{word}", f"the motor `{motor.text}`",
+                            f"a name under `motors`: {listed(names)}" if names else "a name under `motors`",
+                            f"did you mean `{near}`?" if near else f"add `{motor.text}:` under `motors:`")
+
+
+def _rotors(root: Node) -> Iterator[Fault]:
+    """A stated spin inertia needs mass and transverse inertia where the body is built from parts."""
+    if root.get("lumped"):
+        return
+    for unit, node in _entries(root, "stabilisers"):
+        rotor = node.get("rotor")
+        for word in ("mass", "transverse"):
+            if rotor is not None and rotor.get("spin") and not rotor.get(word):
+                yield Fault(f"stabilisers.{unit}.rotor", f"`spin` without `{word}`", "`spin`, `transverse` and `mass`",
+                            "the rotor is a part of the body too; only `lumped` holds it already")
+
+
+def _legs(root: Node) -> Iterator[Fault]:
+    """Every foot of a stance is a leg's, and every leg stands or is lifted."""
+    legs = root.get("legs")
+    if legs is None:
+        return
+    for stance, plan in _entries(root, "stances"):
+        seen = set[str]()
+        for word in ("down", "lifted"):
+            for foot, _ in _entries(plan, word):
+                seen.add(foot)
+                if foot not in legs.names():
+                    near = nearest(foot, legs.names())
+                    yield Fault(f"stances.{stance}.{word}.{foot}", f"the foot `{foot}`",
+                                f"a name under `legs`: {listed(legs.names())}", f"did you mean `{near}`?" if near else "")
+        for leg in legs.names():
+            if leg not in seen and plan.get("down"):
+                yield Fault(f"stances.{stance}", f"no place for the leg `{leg}`", "every leg under `down` or `lifted`",
+                            f"add `{leg}:` to `lifted:`")

@@ -1,0 +1,140 @@
+"""What must hold between the values of one part, rotor, motor or stance of a machine file."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterator
+from itertools import combinations
+
+from balance.files.reader import Fault, Rules
+from balance.machine.machine import Lumped, StancePlan
+from balance.machine.motors import Motor, Supply
+from balance.machine.solids import (
+    Cylinder,
+    Disc,
+    Part,
+    RimAndWeb,
+    RimWebSize,
+    Ring,
+    Sphere,
+    Tensor,
+    Tube,
+    TubeSize,
+)
+from balance.machine.stabilisers import GimballedFlywheel, Rotor, ScissoredPair
+from balance.machine.tensors import check_tensor
+
+CLOSEST = 1e-3
+"""m: feet nearer than this, seen from above, are in one place: no line runs through them."""
+
+
+def exactly_one(record: object, words: tuple[str, ...], hint: str = "") -> Iterator[Fault]:
+    """Fault unless exactly one of the named members is given."""
+    given = [word for word in words if getattr(record, word) is not None]
+    allowed = "exactly one of " + " and ".join(f"`{word}`" for word in words)
+    if len(given) != 1:
+        yield Fault(given[1] if given else "", " and ".join(f"`{word}`" for word in given) or "neither", allowed, hint)
+
+
+def check_part(part: Part) -> Iterator[Fault]:
+    """A mass or a density, a solid or a tensor; a density needs a volume."""
+    yield from exactly_one(part, ("mass", "density"), "a density needs a `solid` whose volume it fills")
+    yield from exactly_one(part, ("solid", "inertia"))
+    if part.density is not None and part.solid is None and part.inertia is not None:
+        yield Fault("density", "`density` without `solid`", "`mass` beside `inertia`")
+
+
+def check_tube(tube: TubeSize) -> Iterator[Fault]:
+    """A wall must remain."""
+    if tube.inner >= tube.outer:
+        yield Fault("inner", f"an inner diameter of {_mm(tube.inner)}", f"less than the outer, {_mm(tube.outer)}")
+
+
+def check_rim(wheel: RimWebSize) -> Iterator[Fault]:
+    """Bore, rim and web nest."""
+    if wheel.inner >= wheel.outer:
+        yield Fault("inner", f"an inner diameter of {_mm(wheel.inner)}", f"less than the outer, {_mm(wheel.outer)}")
+    if wheel.bore >= wheel.inner:
+        yield Fault("bore", f"a bore of {_mm(wheel.bore)}", f"less than the rim's inner diameter, {_mm(wheel.inner)}")
+    if wheel.web > wheel.length:
+        yield Fault("web", f"a web of {_mm(wheel.web)}", f"at most the rim's axial length, {_mm(wheel.length)}")
+
+
+def check_rotor(rotor: Rotor) -> Iterator[Fault]:
+    """A round solid about z with a mass or density, or a stated spin inertia."""
+    yield from exactly_one(rotor, ("solid", "spin"))
+    if rotor.solid is not None:
+        yield from exactly_one(rotor, ("mass", "density"))
+        if rotor.transverse is not None:
+            yield Fault("transverse", "`transverse` beside `solid`", "`transverse` only with `spin`")
+        yield from _round_about_z(rotor)
+    elif rotor.density is not None:
+        yield Fault("density", "`density` without `solid`", "`mass` beside `spin`")
+    if rotor.spin is not None and rotor.transverse is not None and rotor.spin > 2.0 * rotor.transverse * (1 + 1e-6):
+        yield Fault("transverse", f"{rotor.transverse:g} kg*m^2", f"at least half the spin inertia, {rotor.spin / 2:g} kg*m^2",
+                    "a flat disc has exactly half (triangle inequality)")
+
+
+def _round_about_z(rotor: Rotor) -> Iterator[Fault]:
+    solid = rotor.solid
+    if not isinstance(solid, Cylinder | Disc | Tube | Ring | RimAndWeb | Sphere):
+        yield Fault("solid", "a solid that is not round", "a cylinder, disc, tube, ring, rim_and_web or sphere")
+        return
+    sizes = [getattr(solid, word) for word in ("cylinder", "disc", "tube", "ring", "rim_and_web") if hasattr(solid, word)]
+    for size in sizes:
+        if size.along != "z":
+            yield Fault("solid", f"a rotor along {size.along}", "along z, the rotor's own spin axis",
+                        "turn the wheel with the stabiliser's axis")
+
+
+def check_gimbal_axes(unit: GimballedFlywheel) -> Iterator[Fault]:
+    """The spin axis turns in the plane square to the gimbal axis."""
+    cosine = sum(s * g for s, g in zip(unit.spin_axis, unit.gimbal_axis, strict=True))
+    if abs(cosine) > 1e-6:
+        yield Fault("gimbal_axis", f"{math.degrees(math.acos(max(-1.0, min(1.0, cosine)))):.4g} deg from the spin axis",
+                    "square to the spin axis")
+
+
+def check_motor(motor: Motor) -> Iterator[Fault]:
+    """What it stands for ever is no more than what it stands for a moment."""
+    if motor.continuous_current > motor.peak_current:
+        yield Fault("continuous_current", f"{motor.continuous_current:g} A",
+                    f"at most the peak current, {motor.peak_current:g} A", "are the two exchanged?")
+
+
+def check_supply(supply: Supply) -> Iterator[Fault]:
+    """The clamp acts above the working voltage."""
+    if supply.overvoltage <= supply.voltage:
+        yield Fault("overvoltage", f"{supply.overvoltage:g} V", f"more than the voltage, {supply.voltage:g} V")
+
+
+def check_lumped(body: Lumped) -> Iterator[Fault]:
+    """About the line a body has at least its mass at its centre (parallel-axis theorem)."""
+    least = body.mass * (body.height**2 + body.offset**2)
+    if body.inertia < least * (1.0 - 1e-6):
+        yield Fault("inertia", f"{body.inertia:g} kg*m^2",
+                    f"at least mass*(height^2 + offset^2) = {least:.4g} kg*m^2",
+                    "it is meant about the line; add that to an inertia about the centre of mass")
+
+
+def check_stance(plan: StancePlan) -> Iterator[Fault]:
+    """Two feet down, apart, and no foot both down and lifted."""
+    if len(plan.down) != 2:
+        yield Fault("down", f"{len(plan.down)} feet ({', '.join(plan.down)})", "exactly two feet")
+    for (a, p), (b, q) in combinations(plan.down.items(), 2):
+        if math.dist(p[:2], q[:2]) < CLOSEST:
+            yield Fault(f"down.{b}", f"`{a}` and `{b}` in one place, seen from above", "two feet apart from each other",
+                        "the contact line runs through both feet")
+    for name in set(plan.lifted or {}) & set(plan.down):
+        yield Fault(f"lifted.{name}", f"`{name}` both down and lifted", "each foot once")
+
+
+def _mm(length: float) -> str:
+    return f"{length * 1e3:.4g} mm"
+
+
+RULES: Rules = {
+    Tensor: check_tensor, Part: check_part, TubeSize: check_tube, RimWebSize: check_rim, Rotor: check_rotor,
+    GimballedFlywheel: check_gimbal_axes, ScissoredPair: check_gimbal_axes, Motor: check_motor, Supply: check_supply,
+    Lumped: check_lumped, StancePlan: check_stance,
+}
