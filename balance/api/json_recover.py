@@ -1,0 +1,31 @@
+"""The answer of `balance recover` as a dictionary (SI, unit in the key)."""
+
+from __future__ import annotations
+
+from balance.api.json_numbers import Tree, number
+from balance.simulate.records import TrialResult
+
+
+def json_recover(trials: tuple[TrialResult, ...]) -> Tree:
+    """Write every trial, one entry per direction."""
+    return {"trials": [_trial(t) for t in trials]}
+
+
+def _trial(trial: TrialResult) -> Tree:
+    return {
+        "name": trial.name, "stance": trial.stance, "toward": trial.toward,
+        "verdict": trial.verdict, "reason": trial.reason,
+        "peak_lean_rad": number(trial.peak_lean),
+        "settling_time_s": number(trial.settling_time),
+        "peak_torque_n_m": number(trial.peak_torque),
+        "torque_saturated_s": number(trial.torque_saturated),
+        "peak_momentum_n_m_s": number(trial.peak_momentum),
+        "momentum_used": number(trial.momentum_used),
+        "rms_torque_n_m": number(trial.rms_torque),
+        "peak_current_a": number(trial.peak_current),
+        "peak_bus_power_w": number(trial.peak_bus_power),
+        "friction_needed": number(trial.friction_needed),
+        "lift_off": trial.lift_off,
+        "end_lean_rad": number(trial.end_lean),
+        "end_momentum_n_m_s": number(trial.end_momentum),
+    }

@@ -1,0 +1,22 @@
+"""From designs to what happened in every trial."""
+
+from __future__ import annotations
+
+from balance.api.load import Job
+from balance.api.tell import Tell, quiet
+from balance.design.records import Design
+from balance.simulate.records import TrialResult
+from balance.simulate.run import run_trials
+
+
+def recover(job: Job, designs: tuple[Design, ...], record: bool = False, tell: Tell = quiet) -> tuple[TrialResult, ...]:
+    """Run the job's trials on every design that has a law; `record` keeps the time histories.
+
+    A stance for which no law could be designed runs no trial: `balance.check` says why.
+    """
+    results: list[TrialResult] = []
+    for design in designs:
+        if not design.refused:
+            tell(f"running the trials on stance {design.plant.stance.name} (the first run after installing compiles)")
+            results.extend(run_trials(design, job.goal, job.machine, record))
+    return tuple(results)

@@ -1,0 +1,112 @@
+"""One function per command: words in, Outcome out. What computes is imported inside, after the files have been read."""
+
+from __future__ import annotations
+
+import argparse
+import os
+
+from balance.cli.outcome import MET, UNMET, Outcome
+from balance.cli.progress import Progress
+
+
+def run(asked: argparse.Namespace) -> Outcome:
+    """Run the command that was asked for."""
+    commands = {"check": run_check, "plant": run_plant, "gains": run_gains, "recover": run_recover,
+                "new": run_new, "schema": run_schema}
+    with Progress(asked.progress) as progress:
+        return commands[asked.command](asked, progress)
+
+
+def run_plant(asked: argparse.Namespace, progress: Progress) -> Outcome:
+    """`balance plant FILE`, where FILE is a machine file or a design file."""
+    from balance.api.load import load_machine
+
+    machine, stances, fell = load_machine(asked.file, asked.stance)
+    from balance.api.json_plant import json_plant
+    from balance.api.plant import plant
+    from balance.cli.show_plant import show_plant
+
+    plants = plant(machine, stances, fell)
+    code = MET if all(p.acts for p in plants) else UNMET
+    return Outcome(code, show_plant(plants), json_plant(plants))
+
+
+def run_gains(asked: argparse.Namespace, progress: Progress) -> Outcome:
+    """`balance gains FILE`: the requirements on margins are judged, trials are not run."""
+    from balance.api.load import load
+
+    job = load(asked.file, asked.stance)
+    from balance.api.check import verdicts_of_loop
+    from balance.api.gains import gains
+    from balance.api.json_check import json_verdicts
+    from balance.api.json_gains import json_gains
+    from balance.cli.show_gains import show_gains
+
+    designs = gains(job, progress.tell)
+    verdicts = verdicts_of_loop(job, designs)
+    answer = {"machine": job.machine.machine, "design": job.goal.design, **json_gains(designs), **json_verdicts(verdicts)}
+    return Outcome(_code(answer), show_gains(designs, verdicts), answer)
+
+
+def run_recover(asked: argparse.Namespace, progress: Progress) -> Outcome:
+    """`balance recover FILE`: the trials and the requirements on them."""
+    from balance.api.load import load
+
+    job = load(asked.file, asked.stance)
+    from balance.api.check import verdicts_of_trials
+    from balance.api.gains import gains
+    from balance.api.json_check import json_verdicts
+    from balance.api.json_recover import json_recover
+    from balance.api.recover import recover
+    from balance.cli.show_recover import show_recover
+
+    designs = gains(job, progress.tell)
+    trials = recover(job, designs, tell=progress.tell)
+    verdicts = verdicts_of_trials(job, designs, trials)
+    answer = {"machine": job.machine.machine, "design": job.goal.design, **json_recover(trials), **json_verdicts(verdicts)}
+    return Outcome(_code(answer), show_recover(designs, trials, verdicts), answer)
+
+
+def run_check(asked: argparse.Namespace, progress: Progress) -> Outcome:
+    """`balance check FILE`: the main job, with its report."""
+    from balance.api.load import load
+
+    job = load(asked.file, asked.stance)
+    from balance.api.check import check, report
+    from balance.api.json_check import json_check
+    from balance.cli.show_check import show_check
+
+    result = check(job, progress.tell)
+    page = report(result, asked.out or output_folder(asked.file), progress.tell)
+    answer = {**json_check(result), "report": page}
+    return Outcome(_code(answer), show_check(result, page), answer)
+
+
+def run_new(asked: argparse.Namespace, progress: Progress) -> Outcome:
+    """`balance new NAME`: a machine and a design file to start from."""
+    from balance.cli.new import write_pair
+
+    machine, design = write_pair(asked.name, asked.folder)
+    text = f"wrote {machine}\nwrote {design}\n\nNext: edit both, then run\n  balance check {design}"
+    return Outcome(MET, text, {"machine_file": machine, "design_file": design})
+
+
+def run_schema(asked: argparse.Namespace, progress: Progress) -> Outcome:
+    """`balance schema machine|design`: with `--json` the schema stands under the envelope's `schema`."""
+    import json
+
+    from balance.files.schema import json_schema
+    from balance.goal.goal import Goal
+    from balance.machine.machine import Machine
+
+    schema = json_schema(Machine if asked.which == "machine" else Goal)
+    return Outcome(MET, json.dumps(schema, indent=2, ensure_ascii=False), {"schema": schema})
+
+
+def output_folder(design_file: str) -> str:
+    """Return the folder named like the design file, beside it."""
+    return os.path.splitext(design_file)[0] if design_file.endswith((".yaml", ".yml")) else design_file + "-report"
+
+
+def _code(answer: dict[str, object]) -> int:
+    return MET if answer["passed"] else UNMET

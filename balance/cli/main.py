@@ -1,0 +1,87 @@
+"""The command `balance`: read the words, run the command, print once, leave with the right code."""
+
+from __future__ import annotations
+
+import json
+import os
+import sys
+from collections.abc import Sequence
+
+from balance.base.errors import InputError
+from balance.cli.outcome import (
+    FAILED,
+    INTERRUPTED,
+    Failure,
+    Outcome,
+    envelope,
+    plain_failure,
+    wrong_input,
+)
+from balance.cli.parser import COMMANDS, read_words
+
+
+def main(argv: Sequence[str] | None = None) -> int:
+    """Run one command; `argv` are the words after `balance` (the shell's own by default). Returns the exit code."""
+    words = list(sys.argv[1:] if argv is None else argv)
+    try:
+        ended = attempt(words)
+        show(words, ended)
+    except BrokenPipeError:
+        _drop_stdout()
+        return FAILED
+    except KeyboardInterrupt:
+        return INTERRUPTED
+    except SystemExit as leaving:  # argparse after --help and --version
+        return int(leaving.code or 0)
+    return ended.code
+
+
+def attempt(words: Sequence[str]) -> Outcome | Failure:
+    """Run the command and turn whatever goes wrong into a Failure; with `--debug` unforeseen errors pass through."""
+    try:
+        asked = read_words(words)
+        from balance.cli.commands import run
+
+        return run(asked)
+    except InputError as error:
+        return wrong_input(error)
+    except KeyboardInterrupt:
+        return plain_failure(INTERRUPTED, "interrupted; no half-written file is left")
+    except BrokenPipeError:
+        raise
+    except Exception as error:
+        if "--debug" in words:
+            raise
+        return plain_failure(FAILED, f"{_in_words(error)} (--debug shows where)")
+
+
+def show(words: Sequence[str], ended: Outcome | Failure) -> None:
+    """Print the answer: one JSON object, or text on the output and errors on the error stream."""
+    if "--json" in words:
+        command = next((w for w in words if w in COMMANDS), "")
+        print(json.dumps(envelope(command, ended), allow_nan=False, ensure_ascii=False, indent=1))
+    elif isinstance(ended, Failure):
+        print("\n".join(ended.lines), file=sys.stderr)
+    else:
+        from balance.cli.colour import painted
+
+        print(painted(ended.text, sys.stdout))
+    sys.stdout.flush()
+
+
+def _in_words(error: Exception) -> str:
+    if isinstance(error, OSError) and error.strerror:
+        return f"{error.strerror}: {error.filename}" if error.filename else error.strerror
+    return f"{type(error).__name__}: {' '.join(str(error).split())}"
+
+
+def _drop_stdout() -> None:
+    """Point the output at nothing, so that the interpreter's last flush does not complain about the closed pipe."""
+    try:
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+    except (OSError, ValueError):
+        return
+
+
+if __name__ == "__main__":
+    sys.exit(main())
