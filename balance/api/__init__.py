@@ -7,6 +7,7 @@
     result = check(job)
     print(result.passed, report(result, "designs/scout-wheels"))
 
-Reading files needs no numpy, so `balance.api.load` stands apart from the verbs that compute, and nothing is imported
+Reading files needs no numpy, so `balance.api.load` stands apart from the verbs that compute, and nothing is
+imported
 here.  The `json_*` modules write each answer as the dictionary that `--json` prints.
 """

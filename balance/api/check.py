@@ -22,6 +22,6 @@ def check(job: Job, tell: Tell = quiet) -> CheckResult:
 
 
 def report(result: CheckResult, folder: str, tell: Tell = quiet) -> str:
-    """Write the report of `result` into `folder` (made if it is not there) and return the path of its page."""
+    """Write the report of `result` into `folder`, made if it is not there; return the path of its page."""
     tell("drawing the report")
     return write_report(result, folder)

@@ -28,9 +28,14 @@ def json_check(result: CheckResult) -> Tree:
 
 def _verdict(verdict: Verdict) -> Tree:
     return {
-        "name": verdict.name, "stance": verdict.stance,
-        "value": _either(verdict.value), "unit": verdict.unit, "limit": _either(verdict.limit),
-        "sense": verdict.sense, "passed": verdict.passed, "reason": verdict.reason,
+        "name": verdict.name,
+        "stance": verdict.stance,
+        "value": _either(verdict.value),
+        "unit": verdict.unit,
+        "limit": _either(verdict.limit),
+        "sense": verdict.sense,
+        "passed": verdict.passed,
+        "reason": verdict.reason,
     }
 
 

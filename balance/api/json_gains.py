@@ -28,9 +28,11 @@ def _stance(design: Design) -> Tree:
         "poles": {"discrete": complexes(design.poles), "equivalent_rad_s": complexes(design.equivalent)},
         "continuous": _continuous(design.ideal),
         "margins": json_margins(design.margins),
-        "limits": {"pole_times_delay": number(design.limits.pole_times_delay),
-                   "least_peak_complementary": number(design.limits.least_peak_complementary),
-                   "total_delay_s": number(design.limits.total_delay)},
+        "limits": {
+            "pole_times_delay": number(design.limits.pole_times_delay),
+            "least_peak_complementary": number(design.limits.least_peak_complementary),
+            "total_delay_s": number(design.limits.total_delay),
+        },
     }
 
 
@@ -60,8 +62,10 @@ def json_margins(margins: Margins) -> Tree:
         "disk": number(margins.disk),
         "peak_sensitivity": number(margins.peak_sensitivity),
         "peak_complementary": number(margins.peak_complementary),
-        "crossings": [{"kind": c.kind, "frequency_rad_s": number(c.frequency), **_crossing_value(c.kind, c.value)}
-                      for c in margins.crossings],
+        "crossings": [
+            {"kind": c.kind, "frequency_rad_s": number(c.frequency), **_crossing_value(c.kind, c.value)}
+            for c in margins.crossings
+        ],
     }
 
 

@@ -1,7 +1,7 @@
 """Numbers as strict JSON: no NaN and no Infinity, which JSON does not have.
 
-A value that is not defined (NaN) is `null`; one without bound is the string `"inf"` or `"-inf"`; a complex number is
-`{"re": …, "im": …}`.
+A value that is not defined (NaN) is `null`; one without bound is the string `"inf"` or `"-inf"`;
+a complex number is `{"re": …, "im": …}`.
 """
 
 from __future__ import annotations

@@ -25,23 +25,38 @@ def _stance(plant: Plant) -> Tree:
         "unstable_pole_rad_s": number(plant.unstable_pole),
         "doubling_time_s": number(plant.doubling_time),
         "balanced_lean_rad": number(plant.balanced_lean),
-        "line": {"from": stance.foot_from, "to": stance.foot_to, "direction": row(stance.e_W),
-                 "length_m": number(stance.length), "slope_rad": number(stance.slope)},
+        "line": {
+            "from": stance.foot_from,
+            "to": stance.foot_to,
+            "direction": row(stance.e_W),
+            "length_m": number(stance.length),
+            "slope_rad": number(stance.slope),
+        },
         "touch_down_lean_rad": None if stance.touch_down_lean is None else number(stance.touch_down_lean),
         "momentum_capacity_n_m_s": number(plant.momentum_capacity),
         "torque_limit_n_m": number(plant.torque_limit),
         "acts": plant.acts,
-        "best_possible": {"lean_rad": number(plant.bounds.lean), "lean_rate_rad_s": number(plant.bounds.lean_rate),
-                          "impulse_n_s": number(plant.bounds.impulse), "limited_by": plant.bounds.limited_by},
+        "best_possible": {
+            "lean_rad": number(plant.bounds.lean),
+            "lean_rate_rad_s": number(plant.bounds.lean_rate),
+            "impulse_n_s": number(plant.bounds.impulse),
+            "limited_by": plant.bounds.limited_by,
+        },
         "units": [_unit(u) for u in plant.units],
-        "model": {"states": list(plant.model.states), "inputs": list(plant.model.inputs),
-                  "A": matrix(plant.model.A), "B": matrix(plant.model.B)},
+        "model": {
+            "states": list(plant.model.states),
+            "inputs": list(plant.model.inputs),
+            "A": matrix(plant.model.A),
+            "B": matrix(plant.model.B),
+        },
     }
 
 
 def _unit(unit: Unit) -> Tree:
     return {
-        "name": unit.name, "kind": unit.kind, "drive": unit.drive,
+        "name": unit.name,
+        "kind": unit.kind,
+        "drive": unit.drive,
         "axis_share": number(unit.axis_share),
         "spin_inertia_kg_m2": number(unit.inertia),
         "momentum_capacity_n_m_s": number(unit.momentum_capacity),

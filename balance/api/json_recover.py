@@ -13,8 +13,11 @@ def json_recover(trials: tuple[TrialResult, ...]) -> Tree:
 
 def _trial(trial: TrialResult) -> Tree:
     return {
-        "name": trial.name, "stance": trial.stance, "toward": trial.toward,
-        "verdict": trial.verdict, "reason": trial.reason,
+        "name": trial.name,
+        "stance": trial.stance,
+        "toward": trial.toward,
+        "verdict": trial.verdict,
+        "reason": trial.reason,
         "peak_lean_rad": number(trial.peak_lean),
         "settling_time_s": number(trial.settling_time),
         "peak_torque_n_m": number(trial.peak_torque),

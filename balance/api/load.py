@@ -1,19 +1,24 @@
-"""Read a design file and the machine it names, and agree on the stances: free of numpy, so a typing error is answered at once."""
+"""Read a design file and the machine it names, and agree on the stances.
+
+Free of numpy, so that a mistake in a file is answered at once.
+"""
 
 from __future__ import annotations
 
-import difflib
+import math
 import os
 from dataclasses import dataclass
 
 from balance.base.errors import InputError, Problem
+from balance.base.words import listed, nearest
+from balance.files import document
 from balance.goal.goal import Goal
-from balance.goal.read import read_goal
+from balance.goal.read import EVERY, read_goal, stance_problem
 from balance.machine.machine import Machine
 from balance.machine.read import read_machine
 
-EVERY = "every"
-"""The word that stands for all stances of a machine."""
+FELL = math.pi / 6
+"""rad: lean beyond which a machine counts as fallen where no design file says otherwise."""
 
 
 @dataclass(frozen=True)
@@ -26,57 +31,108 @@ class Job:
 
 
 @dataclass(frozen=True)
-class Asked:
-    """Where a stance's name was asked for, so that an error can point there."""
+class Body:
+    """A machine and the stances asked for, without a design; `fell` in rad."""
 
-    name: str
-    where: str
-    line: int = 0
-    column: int = 0
-    key: str = "stance"
+    machine: Machine
+    stances: tuple[str, ...]
+    fell: float
 
 
 def load(path: str, stance: str = "") -> Job:
     """Read the design file at `path` and its machine.
 
-    `stance` (a name, or `every`) goes before the file's own.  Raises InputError for anything wrong in either file, for a
-    machine file that is not there and for a stance that the machine does not have.
+    `stance` (a name, or `every`) goes before the file's own.  Raises InputError for anything wrong in either
+    file, for a
+    machine file given in place of a design file and for a stance that the machine does not have.
     """
+    if _is(path, "machine"):
+        raise InputError(
+            [
+                Problem(
+                    path,
+                    1,
+                    1,
+                    "(file)",
+                    "a machine file",
+                    "a design file",
+                    "a design file names its machine under `machine:`; `balance new` writes a pair",
+                )
+            ]
+        )
     goal = read_goal(path)
     machine = read_machine(machine_path(goal))
-    line, column = goal.marks.get("stance", (0, 0))
-    asked = Asked(goal.stance, goal.source or path, line, column)
-    return Job(machine, goal, choose_stances(machine, from_shell(stance) if stance else asked))
+    problem = stance_problem(goal, machine.stance_names())
+    if problem and not stance:
+        raise InputError([problem])
+    return Job(machine, goal, choose_stances(machine, stance or goal.stance))
+
+
+def load_body(path: str, stance: str = "") -> Body:
+    """Read the machine file at `path`, or the machine that the design file at `path` names.
+
+    Without `stance`, a machine file means every stance and a design file those it asks for.  Raises
+    InputError as `load`.
+    """
+    if _is(path, "design"):
+        job = load(path, stance)
+        return Body(job.machine, job.stances, job.goal.fell)
+    machine = read_machine(path)
+    return Body(machine, choose_stances(machine, stance or EVERY), FELL)
 
 
 def machine_path(goal: Goal) -> str:
-    """Return the machine file of `goal`, resolved from the design file's folder; InputError when it is not there."""
+    """Return the machine file of `goal`, InputError when it is not there."""
     found = os.path.normpath(os.path.join(os.path.dirname(goal.source), goal.machine))
     if os.path.isfile(found):
         return found
     line, column = goal.marks.get("machine", (0, 0))
     folder = os.path.dirname(found) or "."
-    files = sorted(os.listdir(folder)) if os.path.isdir(folder) else []
-    near = difflib.get_close_matches(os.path.basename(found), files, 1)
-    hint = f"did you mean {os.path.join(os.path.dirname(goal.machine), near[0])}?" if near else \
-        "the path is taken from the design file's own folder"
-    raise InputError([Problem(goal.source, line, column, "machine", goal.machine,
-                              "the path of a machine file that exists", hint)])
+    near = nearest(os.path.basename(found), sorted(os.listdir(folder)) if os.path.isdir(folder) else [])
+    hint = f"did you mean `{os.path.join(os.path.dirname(goal.machine), near)}`?" if near else ""
+    raise InputError(
+        [
+            Problem(
+                goal.source,
+                line,
+                column,
+                "machine",
+                f"`{goal.machine}`, where there is no file",
+                "the path of a machine file, from this file's folder",
+                hint,
+            )
+        ]
+    )
 
 
-def from_shell(stance: str) -> Asked:
-    """Return a stance asked for on the command line."""
-    return Asked(stance, "command line", key="--stance")
-
-
-def choose_stances(machine: Machine, asked: Asked) -> tuple[str, ...]:
-    """Return the stances meant by `asked`: all of them in file order for `every`, else the one; InputError if unknown."""
+def choose_stances(machine: Machine, asked: str) -> tuple[str, ...]:
+    """Return the stances meant by `asked`: all in file order for `every`; InputError for an unknown name."""
     names = machine.stance_names()
-    if asked.name == EVERY:
+    if asked == EVERY:
         return names
-    if asked.name in names:
-        return (asked.name,)
-    near = difflib.get_close_matches(asked.name, (*names, EVERY), 1)
-    hint = f"did you mean {near[0]}?" if near else f"{machine.source} has no stance of that name"
-    raise InputError([Problem(asked.where, asked.line, asked.column, asked.key, asked.name,
-                              ", ".join((*names, EVERY)), hint)])
+    if asked in names:
+        return (asked,)
+    near = nearest(asked, (*names, EVERY))
+    raise InputError(
+        [
+            Problem(
+                "command line",
+                0,
+                0,
+                "--stance",
+                f"the stance `{asked}`",
+                f"{listed(names)} or `{EVERY}`",
+                f"did you mean `{near}`?" if near else "",
+            )
+        ]
+    )
+
+
+def _is(path: str, kind: str) -> bool:
+    """Tell a "machine" file or a "design" file by its top keys; a broken file is neither."""
+    try:
+        names = document.load(path).root.names()
+    except InputError:
+        return False
+    own, other = ("design", "stabilisers") if kind == "design" else ("stabilisers", "design")
+    return own in names and other not in names

@@ -2,16 +2,15 @@
 
 from __future__ import annotations
 
-import math
-
+from balance.api.load import FELL
 from balance.machine.machine import Machine
 from balance.plant.build import build_plant
 from balance.plant.record import Plant
 from balance.stance.build import build_stance
 
 
-def plant(machine: Machine, stances: tuple[str, ...], fell: float = math.pi / 6) -> tuple[Plant, ...]:
-    """Build the plant of each stance named; `fell` is the lean in rad beyond which the machine counts as fallen.
+def plant(machine: Machine, stances: tuple[str, ...], fell: float = FELL) -> tuple[Plant, ...]:
+    """Build the plant of each stance named; `fell` is the lean in rad beyond which the machine fell.
 
     Raises InputError where a leg cannot reach or two feet stand in one place.
     """

@@ -9,7 +9,9 @@ from balance.simulate.records import TrialResult
 from balance.simulate.run import run_trials
 
 
-def recover(job: Job, designs: tuple[Design, ...], record: bool = False, tell: Tell = quiet) -> tuple[TrialResult, ...]:
+def recover(
+    job: Job, designs: tuple[Design, ...], record: bool = False, tell: Tell = quiet
+) -> tuple[TrialResult, ...]:
     """Run the job's trials on every design that has a law; `record` keeps the time histories.
 
     A stance for which no law could be designed runs no trial: `balance.check` says why.
@@ -17,6 +19,6 @@ def recover(job: Job, designs: tuple[Design, ...], record: bool = False, tell: T
     results: list[TrialResult] = []
     for design in designs:
         if not design.refused:
-            tell(f"running the trials on stance {design.plant.stance.name} (the first run after installing compiles)")
+            tell(f"trials on stance {design.plant.stance.name} (the first run after installing compiles)")
             results.extend(run_trials(design, job.goal, job.machine, record))
     return tuple(results)

@@ -6,13 +6,13 @@ import os
 from typing import TextIO
 
 NOT_MET = "NOT MET"
-"""The words at the end of a line that stands for something not met; the words carry the meaning, colour only helps."""
+"""Mark of a line about something not met; the words carry the meaning, colour only helps."""
 
 BOLD_RED, PLAIN = "\x1b[1;31m", "\x1b[0m"
 
 
 def wants_colour(stream: TextIO) -> bool:
-    """Return whether `stream` is a terminal that may be coloured (https://no-color.org: any non-empty NO_COLOR forbids it)."""
+    """Return whether `stream` is a terminal that may be coloured; any non-empty NO_COLOR forbids it."""
     return stream.isatty() and not os.environ.get("NO_COLOR") and os.environ.get("TERM") != "dumb"
 
 

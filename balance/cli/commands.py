@@ -1,4 +1,7 @@
-"""One function per command: words in, Outcome out. What computes is imported inside, after the files have been read."""
+"""One function per command: words in, Outcome out.
+
+What computes is imported inside, after the files have been read.
+"""
 
 from __future__ import annotations
 
@@ -11,22 +14,28 @@ from balance.cli.progress import Progress
 
 def run(asked: argparse.Namespace) -> Outcome:
     """Run the command that was asked for."""
-    commands = {"check": run_check, "plant": run_plant, "gains": run_gains, "recover": run_recover,
-                "new": run_new, "schema": run_schema}
+    commands = {
+        "check": run_check,
+        "plant": run_plant,
+        "gains": run_gains,
+        "recover": run_recover,
+        "new": run_new,
+        "schema": run_schema,
+    }
     with Progress(asked.progress) as progress:
         return commands[asked.command](asked, progress)
 
 
 def run_plant(asked: argparse.Namespace, progress: Progress) -> Outcome:
     """`balance plant FILE`, where FILE is a machine file or a design file."""
-    from balance.api.load import load_machine
+    from balance.api.load import load_body
 
-    machine, stances, fell = load_machine(asked.file, asked.stance)
+    body = load_body(asked.file, asked.stance)
     from balance.api.json_plant import json_plant
     from balance.api.plant import plant
     from balance.cli.show_plant import show_plant
 
-    plants = plant(machine, stances, fell)
+    plants = plant(body.machine, body.stances, body.fell)
     code = MET if all(p.acts for p in plants) else UNMET
     return Outcome(code, show_plant(plants), json_plant(plants))
 
@@ -36,15 +45,20 @@ def run_gains(asked: argparse.Namespace, progress: Progress) -> Outcome:
     from balance.api.load import load
 
     job = load(asked.file, asked.stance)
-    from balance.api.check import verdicts_of_loop
     from balance.api.gains import gains
     from balance.api.json_check import json_verdicts
     from balance.api.json_gains import json_gains
+    from balance.api.judge import judge_loop
     from balance.cli.show_gains import show_gains
 
     designs = gains(job, progress.tell)
-    verdicts = verdicts_of_loop(job, designs)
-    answer = {"machine": job.machine.machine, "design": job.goal.design, **json_gains(designs), **json_verdicts(verdicts)}
+    verdicts = judge_loop(job, designs)
+    answer = {
+        "machine": job.machine.machine,
+        "design": job.goal.design,
+        **json_gains(designs),
+        **json_verdicts(verdicts),
+    }
     return Outcome(_code(answer), show_gains(designs, verdicts), answer)
 
 
@@ -53,17 +67,22 @@ def run_recover(asked: argparse.Namespace, progress: Progress) -> Outcome:
     from balance.api.load import load
 
     job = load(asked.file, asked.stance)
-    from balance.api.check import verdicts_of_trials
     from balance.api.gains import gains
     from balance.api.json_check import json_verdicts
     from balance.api.json_recover import json_recover
+    from balance.api.judge import judge_trials
     from balance.api.recover import recover
     from balance.cli.show_recover import show_recover
 
     designs = gains(job, progress.tell)
     trials = recover(job, designs, tell=progress.tell)
-    verdicts = verdicts_of_trials(job, designs, trials)
-    answer = {"machine": job.machine.machine, "design": job.goal.design, **json_recover(trials), **json_verdicts(verdicts)}
+    verdicts = judge_trials(job, designs, trials)
+    answer = {
+        "machine": job.machine.machine,
+        "design": job.goal.design,
+        **json_recover(trials),
+        **json_verdicts(verdicts),
+    }
     return Outcome(_code(answer), show_recover(designs, trials, verdicts), answer)
 
 
@@ -105,7 +124,11 @@ def run_schema(asked: argparse.Namespace, progress: Progress) -> Outcome:
 
 def output_folder(design_file: str) -> str:
     """Return the folder named like the design file, beside it."""
-    return os.path.splitext(design_file)[0] if design_file.endswith((".yaml", ".yml")) else design_file + "-report"
+    return (
+        os.path.splitext(design_file)[0]
+        if design_file.endswith((".yaml", ".yml"))
+        else design_file + "-report"
+    )
 
 
 def _code(answer: dict[str, object]) -> int:

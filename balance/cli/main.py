@@ -21,7 +21,10 @@ from balance.cli.parser import COMMANDS, read_words
 
 
 def main(argv: Sequence[str] | None = None) -> int:
-    """Run one command; `argv` are the words after `balance` (the shell's own by default). Returns the exit code."""
+    """Run one command; `argv` are the words after `balance` (the shell's own by default).
+
+    Returns the exit code.
+    """
     words = list(sys.argv[1:] if argv is None else argv)
     try:
         ended = attempt(words)
@@ -37,7 +40,7 @@ def main(argv: Sequence[str] | None = None) -> int:
 
 
 def attempt(words: Sequence[str]) -> Outcome | Failure:
-    """Run the command and turn whatever goes wrong into a Failure; with `--debug` unforeseen errors pass through."""
+    """Run the command; whatever goes wrong becomes a Failure, but for unforeseen errors with `--debug`."""
     try:
         asked = read_words(words)
         from balance.cli.commands import run
@@ -76,7 +79,7 @@ def _in_words(error: Exception) -> str:
 
 
 def _drop_stdout() -> None:
-    """Point the output at nothing, so that the interpreter's last flush does not complain about the closed pipe."""
+    """Point the output at nothing, lest the interpreter's last flush complain about the closed pipe."""
     try:
         os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
     except (OSError, ValueError):

@@ -28,7 +28,7 @@ class Outcome:
 
 @dataclass(frozen=True)
 class Failure:
-    """A command that gave no answer: exit code, one entry per error for programs, the same as lines for people."""
+    """A command that gave no answer: one entry per error for programs, the same as lines for people."""
 
     code: int
     lines: tuple[str, ...]
@@ -37,8 +37,11 @@ class Failure:
 
 def wrong_input(error: InputError) -> Failure:
     """Tell every problem of a wrong input."""
-    return Failure(WRONG_INPUT, tuple(problem_text(p) for p in error.problems),
-                   tuple(problem_entry(p) for p in error.problems))
+    return Failure(
+        WRONG_INPUT,
+        tuple(problem_text(p) for p in error.problems),
+        tuple(problem_entry(p) for p in error.problems),
+    )
 
 
 def plain_failure(code: int, line: str) -> Failure:
@@ -59,8 +62,16 @@ def problem_text(problem: Problem) -> str:
 
 def problem_entry(problem: Problem) -> dict[str, object]:
     """Write a problem as one entry of the envelope's `errors`."""
-    return {"file": problem.where, "line": problem.line, "column": problem.column, "key": problem.key,
-            "given": problem.given, "allowed": problem.allowed, "hint": problem.hint, "message": str(problem)}
+    return {
+        "file": problem.where,
+        "line": problem.line,
+        "column": problem.column,
+        "key": problem.key,
+        "given": problem.given,
+        "allowed": problem.allowed,
+        "hint": problem.hint,
+        "message": str(problem),
+    }
 
 
 def envelope(command: str, ended: Outcome | Failure) -> dict[str, object]:

@@ -1,4 +1,7 @@
-"""The words of the command line and what they mean. Imports nothing heavy: `balance --help` must be instant."""
+"""The words of the command line and what they mean.
+
+Imports nothing heavy: `balance --help` must be instant.
+"""
 
 from __future__ import annotations
 
@@ -45,15 +48,26 @@ class Parser(argparse.ArgumentParser):
 
 def build_parser() -> Parser:
     """Return the parser of every command."""
-    parser = Parser(prog="balance", description=ABOUT, epilog=CODES,
-                    formatter_class=argparse.RawDescriptionHelpFormatter, allow_abbrev=False)
+    parser = Parser(
+        prog="balance",
+        description=ABOUT,
+        epilog=CODES,
+        formatter_class=argparse.RawDescriptionHelpFormatter,
+        allow_abbrev=False,
+    )
     parser.add_argument("--version", action="version", version=f"balance-assist {__version__}")
     commands = parser.add_subparsers(dest="command", metavar="COMMAND", required=True)
     shared = _shared()
-    for name in COMMANDS:
-        made = commands.add_parser(name, help=COMMANDS[name], description=COMMANDS[name].capitalize() + ".",
-                                   epilog=CODES, parents=[shared], allow_abbrev=False,
-                                   formatter_class=argparse.RawDescriptionHelpFormatter)
+    for name, says in COMMANDS.items():
+        made = commands.add_parser(
+            name,
+            help=says,
+            description=says.capitalize() + ".",
+            epilog=CODES,
+            parents=[shared],
+            allow_abbrev=False,
+            formatter_class=argparse.RawDescriptionHelpFormatter,
+        )
         _own_words(name, made)
     return parser
 
@@ -61,25 +75,45 @@ def build_parser() -> Parser:
 def _shared() -> argparse.ArgumentParser:
     shared = argparse.ArgumentParser(add_help=False)
     shared.add_argument("--json", action="store_true", help="print one JSON object instead of text")
-    shared.add_argument("--progress", action="store_true", help="say each step on the error stream, even when it is a file")
+    shared.add_argument(
+        "--progress", action="store_true", help="say each step on the error stream, even when it is a file"
+    )
     shared.add_argument("--debug", action="store_true", help="show the whole traceback when something fails")
     return shared
 
 
 def _own_words(name: str, parser: argparse.ArgumentParser) -> None:
     if name == "new":
-        parser.add_argument("name", metavar="NAME", help="letters, digits and hyphens; becomes the name of both files")
-        parser.add_argument("--in", dest="folder", metavar="FOLDER", default=".",
-                            help="folder that gets plants/NAME.yaml and designs/NAME.yaml (default: this one)")
+        parser.add_argument(
+            "name", metavar="NAME", help="letters, digits and hyphens; becomes the name of both files"
+        )
+        parser.add_argument(
+            "--in",
+            dest="folder",
+            metavar="FOLDER",
+            default=".",
+            help="folder that gets plants/NAME.yaml and designs/NAME.yaml (default: this one)",
+        )
     elif name == "schema":
-        parser.add_argument("which", metavar="machine|design", choices=("machine", "design"), help="which kind of file")
+        parser.add_argument(
+            "which", metavar="machine|design", choices=("machine", "design"), help="which kind of file"
+        )
     else:
         what = "a machine file or a design file" if name == "plant" else "a design file"
         parser.add_argument("file", metavar="FILE", help=what)
-        parser.add_argument("--stance", metavar="NAME", default="", help="a stance's name, or every (default: as the file says)")
+        parser.add_argument(
+            "--stance",
+            metavar="NAME",
+            default="",
+            help="a stance's name, or every (default: as the file says)",
+        )
     if name == "check":
-        parser.add_argument("--out", metavar="FOLDER", default="",
-                            help="folder of the report (default: a folder named like the design file, beside it)")
+        parser.add_argument(
+            "--out",
+            metavar="FOLDER",
+            default="",
+            help="folder of the report (default: a folder named like the design file, beside it)",
+        )
 
 
 def read_words(words: Sequence[str]) -> argparse.Namespace:
@@ -87,5 +121,9 @@ def read_words(words: Sequence[str]) -> argparse.Namespace:
     first = next((w for w in words if not w.startswith("-")), "")
     if first and first not in COMMANDS:
         near = difflib.get_close_matches(first, COMMANDS, 1)
-        raise UsageError(first, ", ".join(COMMANDS), f"did you mean `balance {near[0]}`?" if near else "see `balance --help`")
+        raise UsageError(
+            first,
+            ", ".join(COMMANDS),
+            f"did you mean `balance {near[0]}`?" if near else "see `balance --help`",
+        )
     return build_parser().parse_args(list(words))

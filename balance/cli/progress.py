@@ -11,7 +11,7 @@ PATIENCE = 1.0
 
 
 class Progress:
-    """Hears each step; says it at once when `wanted`, else from the second second on when stderr is a terminal."""
+    """Hears each step; says it at once when `wanted`, else after a second when stderr is a terminal."""
 
     def __init__(self, wanted: bool) -> None:
         self.speaking = wanted
@@ -24,7 +24,9 @@ class Progress:
             self.timer.start()
         return self
 
-    def __exit__(self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None) -> None:
+    def __exit__(
+        self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None
+    ) -> None:
         self.timer.cancel()
 
     def begin(self) -> None:

@@ -1,0 +1,82 @@
+"""What `balance gains` prints: the laws, their margins, and what cannot be beaten at this delay."""
+
+from __future__ import annotations
+
+from balance.base.tables import text_table
+from balance.check.records import Verdict
+from balance.cli.words import closing, failures, folded, side_by_side, verdict_table
+from balance.design.records import Design
+from balance.report.amounts import amount, figure
+
+
+def show_gains(designs: tuple[Design, ...], verdicts: tuple[Verdict, ...]) -> str:
+    """Return the text of the answer."""
+    refused = [folded(f"{d.plant.stance.name}: no law: {d.refused}") for d in designs if d.refused]
+    made = tuple(d for d in designs if not d.refused)
+    parts = [_head(designs[0]), *refused]
+    if made:
+        parts += [_laws(made), _margins(made), MEANING]
+    if verdicts:
+        parts += [verdict_table(verdicts), failures(verdicts)]
+    return "\n\n".join(p for p in [*parts, closing(verdicts)] if p)
+
+
+MEANING = """\
+Margins are those of the loop broken at the physical torque, with sampling and
+delay in it. Times the gain may fall to, may rise to: factors at which
+stability is lost. Ms and Mt: the highest peaks of sensitivity and of
+complementary sensitivity; no law can bring Mt below the last line."""
+
+
+def _head(design: Design) -> str:
+    law = design.law
+    return folded(
+        f"{design.plant.machine}: {law.kind} every {amount(law.sample_time, 's')}, "
+        f"{amount(law.latency, 's')} from sample to command"
+    )
+
+
+def _laws(designs: tuple[Design, ...]) -> str:
+    law = designs[0].law
+    if law.kind == "pid":
+        title, rows = (
+            "gains (SI)",
+            [(name, lambda d, n=name: figure(d.law.gains[n], 5)) for name in law.gains],
+        )
+        return side_by_side(title, designs, lambda d: d.plant.stance.name, rows)
+    blocks = []
+    for d in designs:
+        rows = [[state, figure(gain, 6)] for state, gain in zip(d.law.states, d.law.K, strict=True)]
+        blocks.append(
+            f"{d.plant.stance.name}: u = -K x, u in {d.law.unit}, SI\n"
+            + text_table(["state", "K"], rows, "lr")
+        )
+    return "\n\n".join(blocks)
+
+
+def _margins(designs: tuple[Design, ...]) -> str:
+    return side_by_side(
+        "margin",
+        designs,
+        lambda d: d.plant.stance.name,
+        [
+            ("closed loop", lambda d: "stable" if d.margins.stable else "UNSTABLE"),
+            ("phase margin", lambda d: amount(d.margins.phase, "rad")),
+            ("  at", lambda d: amount(d.margins.phase_crossover, "1/s")),
+            ("times the gain may fall to", lambda d: figure(d.margins.gain_lower)),
+            ("times the gain may rise to", lambda d: figure(d.margins.gain_upper)),
+            ("delay margin", lambda d: amount(d.margins.delay, "s")),
+            ("modulus margin", lambda d: figure(d.margins.modulus)),
+            ("disk margin", lambda d: figure(d.margins.disk)),
+            ("Ms", lambda d: figure(d.margins.peak_sensitivity)),
+            ("Mt", lambda d: figure(d.margins.peak_complementary)),
+            ("phase margin, no delay", _ideal_phase),
+            ("pole × delay", lambda d: figure(d.limits.pole_times_delay)),
+            ("least Mt of any law", lambda d: figure(d.limits.least_peak_complementary)),
+        ],
+    )
+
+
+def _ideal_phase(design: Design) -> str:
+    """The phase margin of the continuous design: what sampling and delay have not yet taken."""
+    return amount(design.ideal.margins.phase, "rad") if design.ideal else ""

@@ -1,0 +1,95 @@
+"""What `balance plant` prints: every stance as its contact line sees it."""
+
+from __future__ import annotations
+
+from balance.base.tables import text_table
+from balance.cli.colour import NOT_MET
+from balance.cli.words import folded, side_by_side
+from balance.plant.record import Plant, Unit
+from balance.report.amounts import amount, share
+
+CANNOT = "cannot act about this line"
+
+
+def show_plant(plants: tuple[Plant, ...]) -> str:
+    """Return the text of the answer: the stances side by side, then each stabiliser about each line."""
+    head = f"{plants[0].machine}: standing on two feet, free to topple about the line through them"
+    notes = [
+        folded(f"{NOT_MET}: {p.stance.name}: the stabilisers {CANNOT} (every one is square to it)")
+        for p in plants
+        if not p.acts
+    ]
+    return "\n\n".join([folded(head), _stances(plants), _units(plants), *notes, SIGNS])
+
+
+SIGNS = """\
+Offsets and leans are positive outward, away from the lifted feet. The pole is
+how fast a fall grows: the lean multiplies by e every 1/pole. The largest lean
+and push are what no controller can beat with these stabilisers, by the closed
+forms; the simulator has the last word."""
+
+
+def _stances(plants: tuple[Plant, ...]) -> str:
+    return side_by_side(
+        "stance",
+        plants,
+        lambda p: p.stance.name,
+        [
+            ("contact line from", lambda p: p.stance.foot_from),
+            ("contact line to", lambda p: p.stance.foot_to),
+            ("its length", lambda p: amount(p.stance.length, "m") if p.stance.length else ""),
+            ("its slope", lambda p: amount(p.stance.slope, "rad") if p.stance.slope else ""),
+            ("mass", lambda p: amount(p.stance.mass, "kg", 4)),
+            ("centre of mass above the line", lambda p: amount(p.stance.height, "m", 4)),
+            ("centre of mass outward", lambda p: amount(p.stance.offset, "m")),
+            ("balanced lean", lambda p: amount(p.balanced_lean, "rad")),
+            ("inertia, rotors locked", lambda p: amount(p.inertia_locked, "kg*m^2", 4)),
+            ("inertia, rotors free", lambda p: amount(p.inertia_free, "kg*m^2", 4)),
+            ("toppling stiffness", lambda p: amount(p.stiffness, "N*m/rad", 4)),
+            ("pole", lambda p: amount(p.pole, "1/s", 4)),
+            ("time for a fall to double", lambda p: amount(p.doubling_time, "s")),
+            ("inward turn to the lifted foot", _touch_down),
+            ("torque limit about the line", lambda p: amount(p.torque_limit, "N*m")),
+            ("momentum capacity", lambda p: amount(p.momentum_capacity, "N*m*s")),
+            ("largest lean from standstill", lambda p: amount(p.bounds.lean, "rad") if p.acts else "none"),
+            ("largest push at mass height", lambda p: amount(p.bounds.impulse, "N*s") if p.acts else "none"),
+            ("set by", lambda p: p.bounds.limited_by if p.acts else ""),
+        ],
+    )
+
+
+def _touch_down(plant: Plant) -> str:
+    lean = plant.stance.touch_down_lean
+    return "nothing lifted" if lean is None else amount(lean, "rad")
+
+
+def _units(plants: tuple[Plant, ...]) -> str:
+    rows = [
+        [
+            plant.stance.name,
+            unit.name,
+            f"{unit.axis_share:+.4f}".replace("-", "−"),
+            _lost(unit),
+            amount(unit.torque_limit, "N*m"),
+            amount(unit.momentum_capacity, "N*m*s"),
+        ]
+        for plant in plants
+        for unit in plant.units
+    ]
+    head = ["stance", "stabiliser", "α", "cosine loss", "torque", "momentum"]
+    table = text_table(head, rows, "llrrrr")
+    return f"{table}\n\n{ALPHA}"
+
+
+ALPHA = """\
+α is the share of a wheel's axis that lies along the contact line (for a
+gimballed flywheel: of the torque its gimbal makes at angle zero). Torque and
+momentum are what is left of the unit's own about the line; the cosine loss
+goes into the feet."""
+
+
+def _lost(unit: Unit) -> str:
+    """Say how much of the unit's own torque does not act about the line."""
+    if unit.torque_limit <= 0.0:
+        return "all: square"
+    return share(1.0 - abs(unit.axis_share)) if abs(unit.axis_share) < 1.0 - 1e-12 else "none"
