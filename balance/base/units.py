@@ -19,10 +19,10 @@ from balance.base.expression import NAME, ExpressionError, Power, expression
 from balance.base.words import nearest
 
 # Reading a file must not wait for numpy (and scipy with it, where the package `uncertainties` is about), yet
-# pint takes numpy whenever it can be imported.  A None in sys.modules is Python's own documented way to make an
-# import fail.  It stands only while pint is imported, and only where numpy is not loaded already: whoever uses
-# numpy and pint together has numpy loaded and keeps the complete pint; the command line reads files first and
-# wants plain floats only.  (Twice as fast as well: 0.14 s against 0.30 s measured.)
+# pint takes numpy whenever it can be imported.  A None in sys.modules is Python's own documented way to
+# make an import fail.  It stands only while pint is imported, and only where numpy is not loaded already:
+# whoever uses numpy and pint together has numpy loaded and keeps the complete pint; the command line reads
+# files first and wants plain floats only.  (Twice as fast as well: 0.14 s against 0.30 s measured.)
 _HIDDEN = "numpy" not in sys.modules
 if _HIDDEN:
     sys.modules["numpy"] = None  # type: ignore[assignment]
@@ -43,9 +43,9 @@ _PREFIXES = (
     "n", "u", "\u00b5", "m", "c", "d", "k", "M", "nano", "micro", "milli", "centi", "deci", "kilo", "mega",
 )
 _PREFIXED = (
-    "meter", "second", "ampere", "radian", "gram", "rpm", "hertz", "g_n", "newton", "gram_force", "newton_meter",
-    "newton_meter_second", "newton_second", "joule", "watt", "pascal", "volt", "ohm", "farad", "henry",
-    "ampere_hour", "watt_hour",
+    "meter", "second", "ampere", "radian", "gram", "rpm", "hertz", "g_n", "newton", "gram_force",
+    "newton_meter", "newton_meter_second", "newton_second", "joule", "watt", "pascal", "volt", "ohm",
+    "farad", "henry", "ampere_hour", "watt_hour",
 )
 _COMMON = ("m", "g", "s", "A", "N", "Nm", "V", "W", "Hz", "ohm")
 _FORCES = {"kg": "kgf", "g": "gf", "lb": "lbf", "oz": "ozf"}
@@ -55,7 +55,7 @@ Content = tuple[tuple[str, float], ...]
 
 
 class UnitError(ValueError):
-    """A text that is no quantity of the dimension asked for: what was given, is allowed, and how to mend it."""
+    """A text that is no quantity of the dimension asked for: what was given, what is allowed, a hint."""
 
     def __init__(self, allowed: str, hint: str = "", given: str = "") -> None:
         self.allowed, self.hint, self.given = allowed, hint, given
@@ -115,7 +115,8 @@ def example(dimension: str) -> str:
 def _number(text: str, allowed: str) -> tuple[float, str]:
     """Split a text into its leading number and the rest."""
     if len(text) > LONGEST:
-        raise UnitError(f"{allowed}, at most {LONGEST} characters", given=f"`{text[:20]}…`, {len(text)} characters")
+        given = f"`{text[:20]}…`, {len(text)} characters"
+        raise UnitError(f"{allowed}, at most {LONGEST} characters", given=given)
     if re.match(r"\s*[+-]?[0-9]+,[0-9]", text):
         raise UnitError(allowed, "write the decimal point as `.`")
     found = _NUMBER.match(text)
@@ -163,7 +164,7 @@ def known_unit(name: str) -> tuple[float, Content] | None:
 
 
 def _spelled(name: str) -> bool:
-    """Admit what pint would stretch too far: no `kkg` or `mmin`, no plural of a symbol (`Vs` is not volts)."""
+    """Refuse what pint would stretch too far: `kkg`, `mmin`, the plural of a symbol (`Vs` is not volts)."""
     for known in _NAMES:
         prefixes = ("", *_PREFIXES) if _REGISTRY.get_name(known) in _PREFIXED else ("",)
         plural = f"{known}s" if len(known) > 3 else known

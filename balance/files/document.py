@@ -1,9 +1,10 @@
 """YAML text into a tree of nodes that know their line and column.
 
-Stricter than YAML allows, because a machine file is written by people and possibly sent by strangers: only the
-safe loader's events are used (no object is ever made from a tag), duplicate keys are refused (PyYAML keeps the last
-in silence), and size, depth and aliases are bounded.  Scalars stay text here; what they mean is decided by the
-record they are read into, so `on`, `off`, `yes` and `no` are words and `1e-3` is a number.
+Stricter than YAML allows, because a machine file is written by people and possibly sent by strangers: only
+the safe loader's events are used (no object is ever made from a tag), duplicate keys are refused (PyYAML
+keeps the last in silence), and size, depth and aliases are bounded.  Scalars stay text here; what they mean
+is decided by the record they are read into, so `on`, `off`, `yes` and `no` are words and `1e-3` is a
+number.
 """
 
 from __future__ import annotations
@@ -38,8 +39,9 @@ DEEPEST = 20
 class Node:
     """One value of the file.
 
-    `kind`: "scalar" (`text`, and `quoted` where it stood in quotes), "list" (`items`), "mapping" (`pairs`: name,
-    place of the name, value).  `line` and `column` count from 1.  `size`: values inside, itself included.
+    `kind`: "scalar" (`text`, and `quoted` where it stood in quotes), "list" (`items`), "mapping" (`pairs`:
+    name, place of the name, value).  `line` and `column` count from 1.  `size`: values inside, itself
+    included.
     """
 
     kind: str
@@ -58,6 +60,12 @@ class Node:
     def names(self) -> tuple[str, ...]:
         """Return a mapping's names in file order; empty where this is no mapping."""
         return tuple(key for key, _, _ in self.pairs)
+
+    def place(self, path: str) -> tuple[int, int]:
+        """Return line and column of the value at a dotted path of keys, as far down as it exists."""
+        name, _, rest = path.partition(".")
+        found = self.get(name)
+        return found.place(rest) if found else (self.line, self.column)
 
     def plain(self) -> object:
         """Return dicts, lists, texts, numbers and flags, as an editor's YAML 1.2 reader sees them."""
@@ -85,6 +93,12 @@ class _Open:
     children: list[Node] = field(default_factory=list)
     anchor: str | None = None
 
+    def last(self) -> str:
+        """Return the key or index of what is being read inside."""
+        if isinstance(self.start, SequenceStartEvent):
+            return f"[{len(self.children)}]"
+        return self.children[-1].text if len(self.children) % 2 else "(key)"
+
 
 def load(path: str) -> Tree:
     """Return the tree of a YAML file.
@@ -102,8 +116,9 @@ def load(path: str) -> Tree:
     except yaml.reader.ReaderError as error:
         line = text.count("\n", 0, error.position) + 1
         column = error.position - (text.rfind("\n", 0, error.position) + 1) + 1
-        raise InputError([Problem(path, line, column, "(file)", f"the character U+{ord(text[error.position]):04X}",
-                                  "printable text", "remove it")]) from None
+        given = f"the character U+{ord(text[error.position]):04X}"
+        problem = Problem(path, line, column, "(file)", given, "printable text", "remove it")
+        raise InputError([problem]) from None
 
 
 def _text(path: str) -> str:
@@ -151,7 +166,7 @@ class _Builder:
                 else:
                     root = node
         if root is None:
-            raise InputError([Problem(self.path, 1, 1, "(file)", "an empty file", "a mapping of keys to values")])
+            raise InputError([Problem(self.path, 1, 1, "(file)", "an empty file", "keys with their values")])
         return Tree(self.path, root, tuple(self.problems))
 
     def start(self, event: MappingStartEvent | SequenceStartEvent, open_: list[_Open]) -> None:
@@ -174,7 +189,7 @@ class _Builder:
             node, anchor = self.alias(event), None
         else:
             closed = open_.pop()
-            node, anchor = self.collection(closed), closed.anchor
+            node, anchor = self.collection(closed, open_), closed.anchor
         if anchor:
             self.anchors[anchor] = node
         return node
@@ -183,19 +198,19 @@ class _Builder:
         """Return the anchored node; its marks stay where the value is written."""
         known = self.anchors.get(event.anchor or "")
         if known is None:
-            inside = event.anchor in self.anchors
-            raise self.stop(event, f"`*{event.anchor}`, " + ("inside itself" if inside else "which is not defined"),
-                            "the name of an anchor defined above")
+            why = "inside itself" if event.anchor in self.anchors else "which is not defined"
+            raise self.stop(event, f"`*{event.anchor}`, {why}", "the name of an anchor defined above")
         self.count(event, known.size)
         return known
 
     def count(self, event: Event, size: int) -> None:
-        """Bound the whole tree, aliases expanded: a few lines of nested aliases can stand for billions of values."""
+        """Bound the tree with its aliases expanded: a few lines of nested aliases can stand for billions."""
         self.nodes += size
         if self.nodes > MOST_NODES:
             raise self.stop(event, f"more than {MOST_NODES} values", f"at most {MOST_NODES}, aliases counted")
 
-    def collection(self, closed: _Open) -> Node:
+    def collection(self, closed: _Open, above: list[_Open]) -> Node:
+        """Return the finished list or mapping; `above` are the levels it stands in."""
         size = 1 + sum(child.size for child in closed.children)
         place = _place(closed.start)
         if isinstance(closed.start, SequenceStartEvent):
@@ -203,23 +218,27 @@ class _Builder:
         pairs: dict[str, tuple[str, tuple[int, int], Node]] = {}
         for key, value in zip(closed.children[::2], closed.children[1::2], strict=True):
             if key.kind != "scalar":
-                self.problems.append(Problem(self.path, key.line, key.column, "(key)", f"a {key.kind} as a key",
-                                             "a name as a key"))
+                self.note(key, above, f"a {key.kind} as a key", "a name as a key")
             elif key.text in pairs:
-                first = pairs[key.text][1]
-                self.problems.append(Problem(
-                    self.path, key.line, key.column, key.text, f"the key `{key.text}` a second time",
-                    "each key once", f"it is first given in line {first[0]}; remove one of the two"))
+                hint = f"it is first given in line {pairs[key.text][1][0]}; remove one of the two"
+                self.note(key, above, f"the key `{key.text}` a second time", "each key once", hint)
             else:
                 pairs[key.text] = (key.text, (key.line, key.column), value)
         return Node("mapping", *place, pairs=tuple(pairs.values()), size=size)
+
+    def note(self, key: Node, above: list[_Open], given: str, allowed: str, hint: str = "") -> None:
+        """Note a problem with a key that need not stop the reading."""
+        path = [*(level.last() for level in above), key.text or "(key)"]
+        name = ".".join(path).replace(".[", "[")
+        self.problems.append(Problem(self.path, key.line, key.column, name, given, allowed, hint))
 
     def refuse_tag(self, event: MappingStartEvent | SequenceStartEvent | ScalarEvent) -> None:
         if event.tag is not None:
             raise self.stop(event, f"the tag `{event.tag}`", "values without tags", "remove the tag")
 
     def stop(self, event: Event, given: str, allowed: str, hint: str = "") -> InputError:
-        return InputError([*self.problems, Problem(self.path, *_place(event), "(file)", given, allowed, hint)])
+        problem = Problem(self.path, *_place(event), "(file)", given, allowed, hint)
+        return InputError([*self.problems, problem])
 
 
 def _place(event: Event) -> tuple[int, int]:
@@ -238,8 +257,8 @@ def _syntax(path: str, text: str, error: yaml.MarkedYAMLError) -> Problem:
     if "\\t" in (error.problem or "") or "\t" in (lines[line - 1] if line <= len(lines) else ""):
         return Problem(path, line, column, "(file)", "a tab", "spaces", "YAML is indented with spaces only")
     said = " ".join(part for part in (error.context, error.problem) if part)
-    return Problem(path, line, column, "(file)", given, "YAML: `key: value`, lists in [ ], nesting by indentation",
-                   f"the YAML parser says: {said}")
+    allowed = "YAML: `key: value`, lists in [ ], nesting by indentation"
+    return Problem(path, line, column, "(file)", given, allowed, f"the YAML parser says: {said}")
 
 
 def _core_scalar(text: str) -> object:
@@ -252,5 +271,6 @@ def _core_scalar(text: str) -> object:
             number = kind(text)
         except ValueError:
             continue
-        return number if "_" not in text and text.strip("+-.").lower() not in ("inf", "nan", "infinity") else text
+        special = "_" in text or text.strip("+-.").lower() in ("inf", "nan", "infinity")
+        return text if special else number
     return text

@@ -2,7 +2,8 @@
 
 A machine or design file has no schema beside its records: each frozen dataclass *is* the schema.  A field's
 metadata says what stands in the file (a quantity with a unit, a number, a choice, a section, a named table of
-sections); the reader (`files.reader`) and the published JSON Schema (`files.schema`) both walk the same metadata.
+sections); the reader (`files.reader`) and the published JSON Schema (`files.schema`) both walk the same
+metadata.
 """
 
 from __future__ import annotations
@@ -25,7 +26,8 @@ class Shape:
     - `dimension`: name in the project's table of dimensions (quantity)
     - `above`/`least`/`below`/`most`: open and closed bounds in SI (quantity, number)
     - `choices`: the allowed words (choice)
-    - `items`, `length`: shape and count of a list's members; `each`: their shapes one by one, where they differ
+    - `items`, `length`: shape and count of a list's members; `each`: their shapes one by one, where they
+    differ
     - `record`: the dataclass of a section, or of each entry of a table
     - `variants`: word -> dataclass, told apart by the key `by` (variant)
       or, with `by=""`, by which of the words is present as the single key

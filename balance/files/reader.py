@@ -1,8 +1,8 @@
 """A tree of nodes into a record, by the record's own description of its place in the file.
 
 One walk collects every problem of the file; nothing is raised before the end.  Rules that tie several values
-together (a mass or a density, never both) belong to the rooms that own the records and come in as `rules`: one
-function per record type, called on each record that was read whole.
+together (a mass or a density, never both) belong to the rooms that own the records and come in as `rules`:
+one function per record type, called on each record that was read whole.
 """
 
 from __future__ import annotations
@@ -16,7 +16,7 @@ from typing import Any, TypeVar
 
 from balance.base.errors import InputError, Problem
 from balance.base.units import UnitError, to_si
-from balance.base.words import listed, nearest
+from balance.base.words import did_you_mean, listed, nearest
 from balance.files.document import Node, Tree
 from balance.files.fields import Shape, key_of, shape_of
 from balance.files.wording import bounds, describe, expected
@@ -44,7 +44,7 @@ Rules = Mapping[type, Rule]
 
 @dataclass(frozen=True)
 class Reading:
-    """What a file gave: the record (None where something stopped it), its problems, and where every key stands."""
+    """What a file gave: the record (None: something stopped it), its problems, the place of every key."""
 
     record: Any
     problems: tuple[Problem, ...]
@@ -56,6 +56,8 @@ class _Bad:
 
 
 _BAD = _Bad()
+_MISSING = "nothing (the key is missing)"
+_LONGEST_TEXT = 300
 
 
 def read(tree: Tree, record_type: type[Record], rules: Rules | None = None) -> Record:
@@ -91,7 +93,8 @@ class _Walk:
         self.kinds: dict[str, Callable[[Node, Shape, str], Any]] = {
             "quantity": self.quantity, "number": self.number, "whole": self.number, "text": self.text,
             "flag": self.flag, "choice": self.choice, "list": self.list, "table": self.table,
-            "variant": self.variant, "section": lambda node, shape, key: self.section(node, shape.record, key),
+            "variant": self.variant,
+            "section": lambda node, shape, key: self.section(node, shape.record, key),
         }
 
     def value(self, node: Node, shape: Shape, key: str) -> Any:
@@ -132,9 +135,8 @@ class _Walk:
         faults = list(self.rules[record](made)) if record in self.rules else []
         for fault in faults:
             full = ".".join(part for part in (key, fault.key) if part)
-            line, column = self.marks.get(full, self.marks.get(key, (node.line, node.column)))
-            self.problems.append(Problem(self.path, line, column, full or "(file)", fault.given, fault.allowed,
-                                         fault.hint))
+            place = self.marks.get(full, self.marks.get(key, (node.line, node.column)))
+            self.note(place, full, fault.given, fault.allowed, fault.hint)
         return made
 
     def mark(self, key: str, name: str, place: tuple[int, int], node: Node) -> str:
@@ -144,23 +146,24 @@ class _Walk:
         return full
 
     def wrong(self, node: Node, key: str, given: str, allowed: str, hint: str = "") -> _Bad:
-        line, column = (node.line, node.column) if node.text else self.marks.get(key, (node.line, node.column))
-        self.problems.append(Problem(self.path, line, column, key or "(file)", given, allowed, hint))
+        own = (node.line, node.column)
+        self.note(own if node.text else self.marks.get(key, own), key, given, allowed, hint)
         return _BAD
+
+    def note(self, place: tuple[int, int], key: str, given: str, allowed: str, hint: str = "") -> None:
+        self.problems.append(Problem(self.path, *place, key or "(file)", given, allowed, hint))
 
     def unknown(self, name: str, place: tuple[int, int], members: Iterable[str], key: str) -> str:
         """Note an unknown key; return the known one it was probably meant to be."""
         near = nearest(name, members)
         full = f"{key}.{name}" if key else name
-        self.problems.append(Problem(self.path, *place, full, f"the unknown key `{name}`", listed(members),
-                                     f"did you mean `{near}`?" if near else ""))
+        self.note(place, full, f"the unknown key `{name}`", listed(members), did_you_mean(name, members))
         return near
 
     def missing(self, node: Node, key: str, name: str, shape: Shape) -> None:
-        line, column = self.marks.get(key, (node.line, node.column))
-        full = f"{key}.{name}" if key else name
-        self.problems.append(Problem(self.path, line, column, full, "nothing (the key is missing)", expected(shape),
-                                     f"add `{name}:`" + (f" to `{key}`" if key else "")))
+        place = self.marks.get(key, (node.line, node.column))
+        hint = f"add `{name}:`" + (f" to `{key}`" if key else "")
+        self.note(place, f"{key}.{name}" if key else name, _MISSING, expected(shape), hint)
 
     def quantity(self, node: Node, shape: Shape, key: str) -> Any:
         if node.kind != "scalar":
@@ -183,14 +186,15 @@ class _Walk:
         return int(bounded) if shape.kind == "whole" and bounded is not _BAD else bounded
 
     def bounded(self, value: float, node: Node, shape: Shape, key: str) -> Any:
-        inside = ((shape.above is None or value > shape.above) and (shape.least is None or value >= shape.least)
-                  and (shape.below is None or value < shape.below) and (shape.most is None or value <= shape.most))
-        if inside and math.isfinite(value):
+        over = (shape.above is None or value > shape.above) and (shape.least is None or value >= shape.least)
+        under = (shape.below is None or value < shape.below) and (shape.most is None or value <= shape.most)
+        if over and under and math.isfinite(value):
             return value
         return self.wrong(node, key, describe(node), f"{expected(shape)}, {bounds(shape)}".rstrip(", "))
 
     def text(self, node: Node, shape: Shape, key: str) -> Any:
-        if node.kind != "scalar" or not node.text.strip() or len(node.text) > 300 or not node.text.isprintable():
+        short = node.kind == "scalar" and node.text.strip() and len(node.text) <= _LONGEST_TEXT
+        if not short or not node.text.isprintable():
             return self.wrong(node, key, describe(node), expected(shape))
         return node.text.strip()
 
@@ -203,8 +207,7 @@ class _Walk:
     def choice(self, node: Node, shape: Shape, key: str) -> Any:
         if node.kind == "scalar" and node.text in shape.choices:
             return node.text
-        near = nearest(node.text, shape.choices)
-        return self.wrong(node, key, describe(node), expected(shape), f"did you mean `{near}`?" if near else "")
+        return self.wrong(node, key, describe(node), expected(shape), did_you_mean(node.text, shape.choices))
 
     def list(self, node: Node, shape: Shape, key: str) -> Any:
         wanted = shape.length
@@ -232,8 +235,8 @@ class _Walk:
         for name, place, inner in node.pairs:
             full = self.mark(key, name, place, inner)
             if not NAME.fullmatch(name):
-                self.problems.append(Problem(self.path, *place, key, f"the name `{name[:60]}`",
-                                             "up to 60 letters, digits, `-` and `_`, a letter first"))
+                allowed = "up to 60 letters, digits, `-` and `_`, a letter first"
+                self.note(place, key, f"the name `{name[:60]}`", allowed)
             values[name] = self.value(inner, entry, full)
         return _BAD if any(value is _BAD for value in values.values()) else values
 
@@ -245,15 +248,15 @@ class _Walk:
             present = [word for word in node.names() if word in words]
             if len(present) == 1:
                 return self.section(node, words[present[0]], key)
-            near = "" if present else nearest(next(iter(node.names()), ""), words)
-            return self.wrong(node, key, listed(node.names()) or "an empty mapping", expected(shape),
-                              f"did you mean `{near}`?" if near else "")
+            hint = "" if present else did_you_mean(next(iter(node.names()), ""), words)
+            return self.wrong(node, key, listed(node.names()) or "an empty mapping", expected(shape), hint)
         chosen = node.get(shape.by)
+        full, allowed = f"{key}.{shape.by}", f"one of {listed(words)}"
         if chosen is None:
-            return self.wrong(node, f"{key}.{shape.by}", "nothing (the key is missing)", f"one of {listed(words)}")
+            place = self.marks.get(key, (node.line, node.column))
+            self.note(place, full, _MISSING, allowed, f"add `{shape.by}:`")
+            return _BAD
+        self.marks[full] = (chosen.line, chosen.column)
         if chosen.kind != "scalar" or chosen.text not in words:
-            near = nearest(chosen.text, words)
-            return self.wrong(chosen, f"{key}.{shape.by}", describe(chosen), f"one of {listed(words)}",
-                              f"did you mean `{near}`?" if near else "")
-        self.marks[f"{key}.{shape.by}"] = (chosen.line, chosen.column)
+            return self.wrong(chosen, full, describe(chosen), allowed, did_you_mean(chosen.text, words))
         return self.section(node, words[chosen.text], key, skip=shape.by)

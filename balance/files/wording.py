@@ -29,7 +29,8 @@ def expected(shape: Shape) -> str:
 
 def bounds(shape: Shape) -> str:
     """Return the bounds of a quantity or number in words: "more than 0", "below 90 deg"."""
-    parts = ((shape.above, "more than"), (shape.least, "at least"), (shape.below, "less than"), (shape.most, "at most"))
+    low = ((shape.above, "more than"), (shape.least, "at least"))
+    parts = (*low, (shape.below, "less than"), (shape.most, "at most"))
     return " and ".join(f"{word} {_amount(value, shape)}" for value, word in parts if value is not None)
 
 
@@ -72,11 +73,12 @@ def _table(shape: Shape) -> str:
 
 def _variant(shape: Shape) -> str:
     words = listed(word for word, _ in shape.variants)
-    return f"a mapping with `{shape.by}:` one of {words}" if shape.by else f"a mapping with exactly one of {words}"
+    return f"a mapping with `{shape.by}:` one of {words}" if shape.by else f"a mapping with one of {words}"
 
 
 _EXPECTED: dict[str, Callable[[Shape], str]] = {
-    "quantity": _quantity, "number": _number, "whole": _number, "list": _list, "table": _table, "variant": _variant,
+    "quantity": _quantity, "number": _number, "whole": _number, "list": _list, "table": _table,
+    "variant": _variant,
     "text": lambda shape: "a short text in one line",
     "flag": lambda shape: "`true` or `false`",
     "choice": lambda shape: f"one of {listed(shape.choices)}",

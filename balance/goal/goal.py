@@ -8,6 +8,8 @@ from dataclasses import dataclass, field
 from balance.files.fields import Shape, number, place, quantity, section, table, text, variant
 from balance.goal.trials import Trial
 
+Marks = Mapping[str, tuple[int, int]]
+
 
 @dataclass(frozen=True)
 class Loop:
@@ -60,7 +62,8 @@ class PidControl:
 
     peak_sensitivity: float = number(above=1, default=1.7, says="largest Ms the computed gains may show")
     derivative_filter: float | None = quantity("frequency", above=0, default=None)
-    desaturation_time: float | None = quantity("time", above=0, default=None, says="in which stored momentum is brought back")
+    desaturation_time: float | None = quantity(
+        "time", above=0, default=None, says="in which stored momentum is brought back")
     gains: PidGains | None = section(PidGains, default=None)
 
 
@@ -80,7 +83,7 @@ class Complementary:
 class Kalman:
     """`kind: kalman`: steady-state filter from the IMU's noise densities."""
 
-    disturbance: float = quantity("torque", above=0, says="RMS of the unknown torque, to trust the model less")
+    disturbance: float = quantity("torque", above=0, says="RMS of the unknown torque: trusts the model less")
 
 
 @dataclass(frozen=True)
@@ -88,7 +91,7 @@ class Requirements:
     """What the design must meet; what is left out is not judged."""
 
     phase_margin: float | None = quantity("angle", above=0, default=None)
-    gain_margin_lower: float | None = number(above=0, below=1, default=None, says="a factor; passes at or below")
+    gain_margin_lower: float | None = number(above=0, below=1, default=None, says="a factor, met at or below")
     gain_margin_upper: float | None = number(above=1, default=None)
     delay_margin: float | None = quantity("time", above=0, default=None)
     modulus_margin: float | None = number(above=0, below=1, default=None)
@@ -116,7 +119,7 @@ class Goal:
     estimator: NoEstimator | Complementary | Kalman = variant(
         {"none": NoEstimator, "complementary": Complementary, "kalman": Kalman}, default=NoEstimator())
     require: Requirements = section(Requirements, default=Requirements())
-    fell: float = quantity("angle", above=0, default=0.5235987755982988, says="lean beyond which the machine fell")
+    fell: float = quantity("angle", above=0, default=0.5235987755982988, says="lean beyond which it fell")
+    # neither is a key of the file: its path, and dotted key -> (line, column) in it
     source: str = field(default="", metadata={"shape": None})
-    marks: Mapping[str, tuple[int, int]] = field(default_factory=dict, metadata={"shape": None}, compare=False)
-    """`source`: path of the file; `marks`: dotted key -> (line, column) in it; neither is a key of the file."""
+    marks: Marks = field(default_factory=dict, metadata={"shape": None}, compare=False)

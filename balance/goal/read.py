@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 from balance.base.errors import Problem
-from balance.base.words import listed, nearest
+from balance.base.words import did_you_mean, listed
 from balance.files.document import load
 from balance.files.reader import read
 from balance.goal.goal import Goal
@@ -29,10 +29,9 @@ def read_goal(path: str) -> Goal:
 
 
 def stance_problem(goal: Goal, stances: Sequence[str]) -> Problem | None:
-    """Return what is wrong with the goal's stance on a machine that has `stances`; None where it names one of them."""
+    """Return what is wrong with the goal's stance on a machine with these `stances`, or None."""
     if goal.stance == EVERY or goal.stance in stances:
         return None
-    near = nearest(goal.stance, (*stances, EVERY))
     line, column = goal.marks.get("stance", (0, 0))
     return Problem(goal.source, line, column, "stance", f"the stance `{goal.stance}`",
-                   f"{listed(stances)} or `{EVERY}`", f"did you mean `{near}`?" if near else "")
+                   f"{listed(stances)} or `{EVERY}`", did_you_mean(goal.stance, (*stances, EVERY)))

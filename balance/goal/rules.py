@@ -3,7 +3,9 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from itertools import pairwise
 
+from balance.base.words import listed
 from balance.files.reader import Fault, Rules
 from balance.goal.goal import Allow, Complementary, Goal, Loop, LqrControl
 from balance.goal.trials import Swing, Trial
@@ -28,40 +30,46 @@ def check_lqr(control: LqrControl) -> Iterator[Fault]:
     if len(given) != 1:
         yield Fault("weights" if given else "", " and ".join(f"`{word}`" for word in given) or "neither",
                     "exactly one of `allow` and `weights`",
-                    "`allow` states the largest acceptable excursions, as `{lean: 3 deg, lean_rate: 40 deg/s, …}`")
+                    "`allow` states the largest acceptable excursions, as `{lean: 3 deg, …}`")
 
 
 def check_allow(allow: Allow) -> Iterator[Fault]:
     """The effort of the unit's own input must be named."""
     if allow.torque is None and allow.gimbal_rate is None:
-        yield Fault("", "neither `torque` nor `gimbal_rate`", "`torque` for wheels and torque motors, `gimbal_rate` for servos")
+        yield Fault("", "neither `torque` nor `gimbal_rate`",
+                    "`torque` for wheels and torque motors, `gimbal_rate` for servos")
 
 
 def check_swing(swing: Swing) -> Iterator[Fault]:
     """One full sine by peak and duration, or a table of points."""
     whole = swing.peak is not None and swing.lasts is not None
     half = swing.peak is not None or swing.lasts is not None
-    if (swing.points is None and not whole) or (swing.points is not None and half):
-        yield Fault("", "neither a whole sine nor `points`" if swing.points is None else "both a sine and `points`",
-                    "`peak` and `for`, or `points`")
-    times = [time for time, _ in swing.points or ()]
-    if swing.points is not None and (len(times) < 2 or any(b <= a for a, b in zip(times, times[1:], strict=False))):
-        yield Fault("points", f"times {', '.join(f'{time:g}' for time in times)} s", "two or more times, each later than the last")
+    allowed = "`peak` and `for`, or `points`"
+    if swing.points is None:
+        if not whole:
+            yield Fault("", "neither a whole sine nor `points`", allowed)
+        return
+    if half:
+        yield Fault("points", "both a sine and `points`", allowed)
+    times = [time for time, _ in swing.points]
+    if len(times) < 2 or any(later <= earlier for earlier, later in pairwise(times)):
+        yield Fault("points", f"times {', '.join(f'{time:g}' for time in times)} s",
+                    "two or more times, each later than the last")
 
 
 def check_trial(trial: Trial) -> Iterator[Fault]:
     """Something happens, once, before the trial ends."""
     if all(getattr(trial, event) is None for event in EVENTS):
-        yield Fault("", "a trial in which nothing happens", "at least one of " + ", ".join(f"`{e}`" for e in EVENTS))
+        yield Fault("", "a trial in which nothing happens", f"at least one of {listed(EVENTS)}")
     if trial.start is not None and trial.lift_off is not None:
-        yield Fault("lift_off", "`start` and `lift_off` together", "one of them: both say how the trial begins")
+        yield Fault("lift_off", "`start` beside `lift_off`", "one of them: both say how the trial begins")
     if trial.lasts > LONGEST_TRIAL:
         yield Fault("for", f"{trial.lasts:g} s", f"at most {LONGEST_TRIAL:g} s")
-    for event, word in (("push", "start"), ("torque", "start"), ("swing", "start"), ("offset", "at"), ("lift_off", "at")):
-        section = getattr(trial, event)
-        if section is not None and getattr(section, word) >= trial.lasts:
-            key = "from" if word == "start" else word
-            yield Fault(f"{event}.{key}", f"{getattr(section, word):g} s", f"before the trial ends, {trial.lasts:g} s")
+    for event, section in ((event, getattr(trial, event)) for event in EVENTS if event != "start"):
+        word, key = ("at", "at") if event in ("offset", "lift_off") else ("start", "from")
+        begins = 0.0 if section is None else getattr(section, word)
+        if begins >= trial.lasts:
+            yield Fault(f"{event}.{key}", f"{begins:g} s", f"less than the trial's length, {trial.lasts:g} s")
 
 
 def check_goal(goal: Goal) -> Iterator[Fault]:
@@ -72,5 +80,6 @@ def check_goal(goal: Goal) -> Iterator[Fault]:
 
 
 RULES: Rules = {
-    Loop: check_loop, LqrControl: check_lqr, Allow: check_allow, Swing: check_swing, Trial: check_trial, Goal: check_goal,
+    Loop: check_loop, LqrControl: check_lqr, Allow: check_allow, Swing: check_swing, Trial: check_trial,
+    Goal: check_goal,
 }

@@ -1,7 +1,7 @@
 """What happens to the machine in a trial. Parts of one trial act together.
 
-Lean is measured from the balanced lean; `toward` says which way a push, torque, start, shift, release or swing
-goes: positive values in the file mean "in that direction", and `both` runs the trial twice.
+Lean is measured from the balanced lean; `toward` says which way a push, torque, start, shift, release or
+swing goes: positive values in the file mean "in that direction", and `both` runs the trial twice.
 """
 
 from __future__ import annotations
@@ -40,7 +40,7 @@ class Start:
 
     lean: float = quantity("angle", default=0.0)
     lean_rate: float = quantity("angular speed", default=0.0)
-    stored: float = quantity("momentum", default=0.0, says="momentum about the line already in the stabiliser")
+    stored: float = quantity("momentum", default=0.0, says="momentum about the line, already in the units")
     toward: str = choice(TOWARD, default="both")
 
 
@@ -57,8 +57,8 @@ class OffsetShift:
 class LiftOff:
     """The third foot lets go: until then it carries the machine, from then on the two feet do.
 
-    The machine is released with a lean error and a lean-rate error; `stored` is what the step before left behind.
-    Before release the controller runs but its output is held at zero.
+    The machine is released with a lean error and a lean-rate error; `stored` is what the step before left
+    behind. Before release the controller runs but its output is held at zero.
     """
 
     lean: float = quantity("angle", default=0.0)
@@ -70,7 +70,7 @@ class LiftOff:
 
 @dataclass(frozen=True)
 class Swing:
-    """Reaction of the swinging leg: one full sine of torque (out and back), or a table of [time, torque] points."""
+    """Reaction of the swinging leg: one full sine of torque (out and back), or [time, torque] points."""
 
     peak: float | None = quantity("torque", default=None)
     lasts: float | None = quantity("time", above=0, default=None, written="for")
@@ -92,4 +92,4 @@ class Trial:
     lift_off: LiftOff | None = section(LiftOff, default=None)
     swing: Swing | None = section(Swing, default=None)
     lasts: float = quantity("time", above=0, default=5.0, says="simulated time", written="for")
-    touch_down: str = choice(["refused", "allowed"], default="refused", says="may the lifted foot meet the ground")
+    touch_down: str = choice(["refused", "allowed"], default="refused", says="may the lifted foot touch")

@@ -10,11 +10,11 @@ from balance.machine.solids import Tensor, Vector
 
 @dataclass(frozen=True)
 class Link:
-    """One link: a thin rod unless centre and inertia are stated (link frame: x along the link from its upper joint)."""
+    """One link: a thin rod unless centre and inertia are stated (x along the link from its upper joint)."""
 
     length: float = quantity("length", above=0)
     mass: float = quantity("mass", above=0)
-    centre: float = number(least=0, most=1, default=0.5, says="of its mass, as a share of the length from the upper joint")
+    centre: float = number(least=0, most=1, default=0.5, says="of its mass, share of the length from above")
     inertia: Tensor | None = section(Tensor, default=None)
 
 

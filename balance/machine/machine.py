@@ -14,6 +14,8 @@ from balance.machine.stabilisers import STABILISERS, Stabiliser
 STANDARD_GRAVITY = 9.80665
 """m/s², standard gravity (CGPM 1901)."""
 
+Marks = Mapping[str, tuple[int, int]]
+
 
 @dataclass(frozen=True)
 class Lumped:
@@ -26,7 +28,7 @@ class Lumped:
     height: float = quantity("length", above=0)
     inertia: float = quantity("inertia", above=0, says="about the line, wheel free to spin")
     offset: float = quantity("length", default=0.0)
-    drag: float = quantity("angular damping", least=0, default=0.0, says="of the bench rig's bearings, about the line")
+    drag: float = quantity("angular damping", least=0, default=0.0, says="of the bearings, about the line")
 
 
 @dataclass(frozen=True)
@@ -51,13 +53,16 @@ class Pose:
     turn: Vector = vector("angle", default=(0.0, 0.0, 0.0))
 
 
+_POINT = Shape("list", items=Shape("quantity", "length"), length=3)
+
+
 @dataclass(frozen=True)
 class StancePlan:
     """Two feet down and the rest lifted to stated places: foot name -> contact point in the world."""
 
-    down: dict[str, Vector] = place(Shape("table", items=Shape("list", items=Shape("quantity", "length"), length=3)))
+    down: dict[str, Vector] = place(Shape("table", items=_POINT))
     trunk: Pose = section(Pose)
-    lifted: dict[str, Vector] = place(Shape("table", items=Shape("list", items=Shape("quantity", "length"), length=3)), None)
+    lifted: dict[str, Vector] = place(Shape("table", items=_POINT), None)
 
 
 @dataclass(frozen=True)
@@ -77,9 +82,9 @@ class Machine:
     supply: Supply | None = section(Supply, default=None)
     imu: Imu | None = section(Imu, default=None)
     stances: dict[str, StancePlan] | None = table(StancePlan, default=None)
+    # neither is a key of the file: its path, and dotted key -> (line, column) in it
     source: str = field(default="", metadata={"shape": None})
-    marks: Mapping[str, tuple[int, int]] = field(default_factory=dict, metadata={"shape": None}, compare=False)
-    """`source`: path of the file; `marks`: dotted key -> (line, column) in it; neither is a key of the file."""
+    marks: Marks = field(default_factory=dict, metadata={"shape": None}, compare=False)
 
     def stance_names(self) -> tuple[str, ...]:
         """Names of the stances in file order; a lumped machine has the one stance `line`."""

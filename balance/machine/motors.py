@@ -18,8 +18,8 @@ class Motor:
     rotor_inertia: float = quantity("inertia", least=0, default=0.0)
     inductance: float = quantity("inductance", least=0, default=0.0)
     bandwidth: float = quantity("frequency", above=0, default=300.0, says="of the current loop, in Hz")
-    values: str = choice(["line", "phase"], default="line", says="between two terminals, or terminal to star point")
-    amplitude: str = choice(["peak", "rms"], default="peak", says="of the current the torque constant is stated for")
+    values: str = choice(["line", "phase"], default="line", says="of two terminals, or to the star point")
+    amplitude: str = choice(["peak", "rms"], default="peak", says="of the current it is stated for")
 
 
 @dataclass(frozen=True)
@@ -29,7 +29,7 @@ class Gear:
     ratio: float = number(above=0, default=1.0)
     sense: str = choice(["same", "reversed"], default="same")
     efficiency: float = number(above=0, most=1, default=1.0)
-    includes_rotor: bool = flag(default=False, says="the wheel's stated inertia already holds the motor's rotor")
+    includes_rotor: bool = flag(default=False, says="the wheel's inertia already holds the rotor's")
 
 
 @dataclass(frozen=True)
@@ -41,5 +41,6 @@ class Supply:
     peak_current: float = quantity("current", above=0, default=float("inf"))
     regenerates: bool = flag(default=True, says="takes current back when a wheel brakes")
     capacitance: float = quantity("capacitance", least=0, default=0.0)
-    overvoltage: float = quantity("voltage", above=0, default=float("inf"), says="where the brake resistor or the fuse acts")
+    overvoltage: float = quantity(
+        "voltage", above=0, default=float("inf"), says="where the brake resistor or the fuse acts")
     brake_resistor: float = quantity("resistance", least=0, default=0.0, says="0 ohm: none fitted")

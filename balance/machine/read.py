@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 
 from balance.base.errors import InputError, Problem
-from balance.base.words import listed, nearest
+from balance.base.words import did_you_mean, listed
 from balance.files.document import Node, Tree, load
 from balance.files.reader import Fault, Marks, attempt
 from balance.machine.machine import Machine
@@ -33,8 +33,8 @@ def _across(tree: Tree, marks: Marks) -> Iterator[Problem]:
     """Rules across sections, read off the tree so that they speak up beside other problems of the file."""
     root = tree.root
     for fault in (*_kind_of_body(root), *_motors(root), *_rotors(root), *_legs(root)):
-        line, column = marks.get(fault.key, (root.line, root.column))
-        yield Problem(tree.path, line, column, fault.key or "(file)", fault.given, fault.allowed, fault.hint)
+        place = marks.get(fault.key) or root.place(fault.key)
+        yield Problem(tree.path, *place, fault.key or "(file)", fault.given, fault.allowed, fault.hint)
 
 
 def _kind_of_body(root: Node) -> Iterator[Fault]:
@@ -66,10 +66,9 @@ def _motors(root: Node) -> Iterator[Fault]:
         for word in ("motor", "spin_motor"):
             motor = node.get(word)
             if motor is not None and motor.text and motor.text not in names:
-                near = nearest(motor.text, names)
                 yield Fault(f"stabilisers.{unit}.{word}", f"the motor `{motor.text}`",
                             f"a name under `motors`: {listed(names)}" if names else "a name under `motors`",
-                            f"did you mean `{near}`?" if near else f"add `{motor.text}:` under `motors:`")
+                            did_you_mean(motor.text, names) or f"add `{motor.text}:` under `motors:`")
 
 
 def _rotors(root: Node) -> Iterator[Fault]:
@@ -80,7 +79,8 @@ def _rotors(root: Node) -> Iterator[Fault]:
         rotor = node.get("rotor")
         for word in ("mass", "transverse"):
             if rotor is not None and rotor.get("spin") and not rotor.get(word):
-                yield Fault(f"stabilisers.{unit}.rotor", f"`spin` without `{word}`", "`spin`, `transverse` and `mass`",
+                yield Fault(f"stabilisers.{unit}.rotor", f"`spin` without `{word}`",
+                            "`spin`, `transverse` and `mass`",
                             "the rotor is a part of the body too; only `lumped` holds it already")
 
 
@@ -95,10 +95,10 @@ def _legs(root: Node) -> Iterator[Fault]:
             for foot, _ in _entries(plan, word):
                 seen.add(foot)
                 if foot not in legs.names():
-                    near = nearest(foot, legs.names())
-                    yield Fault(f"stances.{stance}.{word}.{foot}", f"the foot `{foot}`",
-                                f"a name under `legs`: {listed(legs.names())}", f"did you mean `{near}`?" if near else "")
+                    allowed = f"a name under `legs`: {listed(legs.names())}"
+                    yield Fault(f"stances.{stance}.{word}.{foot}", f"the foot `{foot}`", allowed,
+                                did_you_mean(foot, legs.names()))
         for leg in legs.names():
             if leg not in seen and plan.get("down"):
-                yield Fault(f"stances.{stance}", f"no place for the leg `{leg}`", "every leg under `down` or `lifted`",
-                            f"add `{leg}:` to `lifted:`")
+                yield Fault(f"stances.{stance}", f"no place for the leg `{leg}`",
+                            "every leg under `down` or `lifted`", f"add `{leg}:` to `lifted:`")

@@ -6,6 +6,7 @@ import math
 from collections.abc import Iterator
 from itertools import combinations
 
+from balance.base.words import listed
 from balance.files.reader import Fault, Rules
 from balance.machine.machine import Lumped, StancePlan
 from balance.machine.motors import Motor, Supply
@@ -22,8 +23,9 @@ from balance.machine.solids import (
     TubeSize,
 )
 from balance.machine.stabilisers import GimballedFlywheel, Rotor, ScissoredPair
-from balance.machine.tensors import check_tensor
+from balance.machine.tensors import SLACK, check_tensor
 
+_ROUND = ("cylinder", "disc", "tube", "ring", "rim_and_web")
 CLOSEST = 1e-3
 """m: feet nearer than this, seen from above, are in one place: no line runs through them."""
 
@@ -31,9 +33,9 @@ CLOSEST = 1e-3
 def exactly_one(record: object, words: tuple[str, ...], hint: str = "") -> Iterator[Fault]:
     """Fault unless exactly one of the named members is given."""
     given = [word for word in words if getattr(record, word) is not None]
-    allowed = "exactly one of " + " and ".join(f"`{word}`" for word in words)
     if len(given) != 1:
-        yield Fault(given[1] if given else "", " and ".join(f"`{word}`" for word in given) or "neither", allowed, hint)
+        yield Fault(given[1] if given else "", " and ".join(f"`{word}`" for word in given) or "neither",
+                    "exactly one of " + " and ".join(f"`{word}`" for word in words), hint)
 
 
 def check_part(part: Part) -> Iterator[Fault]:
@@ -47,17 +49,17 @@ def check_part(part: Part) -> Iterator[Fault]:
 def check_tube(tube: TubeSize) -> Iterator[Fault]:
     """A wall must remain."""
     if tube.inner >= tube.outer:
-        yield Fault("inner", f"an inner diameter of {_mm(tube.inner)}", f"less than the outer, {_mm(tube.outer)}")
+        yield Fault("inner", f"inner diameter {_mm(tube.inner)}", f"less than the outer, {_mm(tube.outer)}")
 
 
 def check_rim(wheel: RimWebSize) -> Iterator[Fault]:
     """Bore, rim and web nest."""
     if wheel.inner >= wheel.outer:
-        yield Fault("inner", f"an inner diameter of {_mm(wheel.inner)}", f"less than the outer, {_mm(wheel.outer)}")
+        yield Fault("inner", f"inner diameter {_mm(wheel.inner)}", f"less than the outer, {_mm(wheel.outer)}")
     if wheel.bore >= wheel.inner:
-        yield Fault("bore", f"a bore of {_mm(wheel.bore)}", f"less than the rim's inner diameter, {_mm(wheel.inner)}")
+        yield Fault("bore", f"bore {_mm(wheel.bore)}", f"less than the rim's inner, {_mm(wheel.inner)}")
     if wheel.web > wheel.length:
-        yield Fault("web", f"a web of {_mm(wheel.web)}", f"at most the rim's axial length, {_mm(wheel.length)}")
+        yield Fault("web", f"web {_mm(wheel.web)}", f"at most the rim's axial length, {_mm(wheel.length)}")
 
 
 def check_rotor(rotor: Rotor) -> Iterator[Fault]:
@@ -70,18 +72,18 @@ def check_rotor(rotor: Rotor) -> Iterator[Fault]:
         yield from _round_about_z(rotor)
     elif rotor.density is not None:
         yield Fault("density", "`density` without `solid`", "`mass` beside `spin`")
-    if rotor.spin is not None and rotor.transverse is not None and rotor.spin > 2.0 * rotor.transverse * (1 + 1e-6):
-        yield Fault("transverse", f"{rotor.transverse:g} kg*m^2", f"at least half the spin inertia, {rotor.spin / 2:g} kg*m^2",
+    spin, transverse = rotor.spin or 0.0, rotor.transverse
+    if transverse is not None and spin > 2.0 * transverse * (1.0 + SLACK):
+        yield Fault("transverse", f"{transverse:g} kg*m^2", f"at least half of `spin`, {spin / 2:g} kg*m^2",
                     "a flat disc has exactly half (triangle inequality)")
 
 
 def _round_about_z(rotor: Rotor) -> Iterator[Fault]:
     solid = rotor.solid
     if not isinstance(solid, Cylinder | Disc | Tube | Ring | RimAndWeb | Sphere):
-        yield Fault("solid", "a solid that is not round", "a cylinder, disc, tube, ring, rim_and_web or sphere")
+        yield Fault("solid", "a solid that is not round", f"one of {listed((*_ROUND, 'sphere'))}")
         return
-    sizes = [getattr(solid, word) for word in ("cylinder", "disc", "tube", "ring", "rim_and_web") if hasattr(solid, word)]
-    for size in sizes:
+    for size in (getattr(solid, word) for word in _ROUND if hasattr(solid, word)):
         if size.along != "z":
             yield Fault("solid", f"a rotor along {size.along}", "along z, the rotor's own spin axis",
                         "turn the wheel with the stabiliser's axis")
@@ -91,8 +93,8 @@ def check_gimbal_axes(unit: GimballedFlywheel) -> Iterator[Fault]:
     """The spin axis turns in the plane square to the gimbal axis."""
     cosine = sum(s * g for s, g in zip(unit.spin_axis, unit.gimbal_axis, strict=True))
     if abs(cosine) > 1e-6:
-        yield Fault("gimbal_axis", f"{math.degrees(math.acos(max(-1.0, min(1.0, cosine)))):.4g} deg from the spin axis",
-                    "square to the spin axis")
+        angle = math.degrees(math.acos(max(-1.0, min(1.0, cosine))))
+        yield Fault("gimbal_axis", f"{angle:.4g} deg from the spin axis", "square to the spin axis")
 
 
 def check_motor(motor: Motor) -> Iterator[Fault]:
@@ -105,7 +107,7 @@ def check_motor(motor: Motor) -> Iterator[Fault]:
 def check_supply(supply: Supply) -> Iterator[Fault]:
     """The clamp acts above the working voltage."""
     if supply.overvoltage <= supply.voltage:
-        yield Fault("overvoltage", f"{supply.overvoltage:g} V", f"more than the voltage, {supply.voltage:g} V")
+        yield Fault("overvoltage", f"{supply.overvoltage:g} V", f"more than `voltage`, {supply.voltage:g} V")
 
 
 def check_lumped(body: Lumped) -> Iterator[Fault]:
@@ -123,7 +125,7 @@ def check_stance(plan: StancePlan) -> Iterator[Fault]:
         yield Fault("down", f"{len(plan.down)} feet ({', '.join(plan.down)})", "exactly two feet")
     for (a, p), (b, q) in combinations(plan.down.items(), 2):
         if math.dist(p[:2], q[:2]) < CLOSEST:
-            yield Fault(f"down.{b}", f"`{a}` and `{b}` in one place, seen from above", "two feet apart from each other",
+            yield Fault(f"down.{b}", f"`{a}` and `{b}` in one place, seen from above", "two feet apart",
                         "the contact line runs through both feet")
     for name in set(plan.lifted or {}) & set(plan.down):
         yield Fault(f"lifted.{name}", f"`{name}` both down and lifted", "each foot once")
@@ -135,6 +137,6 @@ def _mm(length: float) -> str:
 
 RULES: Rules = {
     Tensor: check_tensor, Part: check_part, TubeSize: check_tube, RimWebSize: check_rim, Rotor: check_rotor,
-    GimballedFlywheel: check_gimbal_axes, ScissoredPair: check_gimbal_axes, Motor: check_motor, Supply: check_supply,
-    Lumped: check_lumped, StancePlan: check_stance,
+    GimballedFlywheel: check_gimbal_axes, ScissoredPair: check_gimbal_axes, Motor: check_motor,
+    Supply: check_supply, Lumped: check_lumped, StancePlan: check_stance,
 }

@@ -20,7 +20,8 @@ class Rotor:
     density: float | None = quantity("density", above=0, default=None)
     solid: Solid | None = variant(SOLIDS, by="", default=None)
     spin: float | None = quantity("inertia", above=0, default=None, says="about the spin axis")
-    transverse: float | None = quantity("inertia", above=0, default=None, says="square to the spin axis, about the centre")
+    transverse: float | None = quantity(
+        "inertia", above=0, default=None, says="square to the spin axis, about the centre")
 
 
 @dataclass(frozen=True)
@@ -41,7 +42,8 @@ class ReactionWheel:
     at: Vector = vector("length", default=(0.0, 0.0, 0.0))
     gear: Gear | None = section(Gear, default=None)
     speed_limit: float = quantity("angular speed", above=0, default=float("inf"))
-    torque_limit: float = quantity("torque", above=0, default=float("inf"), says="at the wheel, on top of the motor's own")
+    torque_limit: float = quantity(
+        "torque", above=0, default=float("inf"), says="at the wheel, on top of the motor's own")
     drag: Drag | None = section(Drag, default=None)
 
 
@@ -61,7 +63,7 @@ class Mount:
 
 @dataclass(frozen=True)
 class Gimbal:
-    """What turns the flywheel's frame.  `inertia` is the frame's own about the gimbal axis (rotor not included)."""
+    """What turns the flywheel's frame.  `inertia` is the frame's own about the gimbal axis."""
 
     angle_limit: float = quantity("angle", above=0, below=1.5707963)
     rate_limit: float = quantity("angular speed", above=0)
@@ -86,17 +88,18 @@ class GimballedFlywheel:
     gimbal_axis: Vector = direction(default=(0.0, 1.0, 0.0))
     at: Vector = vector("length", default=(0.0, 0.0, 0.0))
     mount: Mount | None = section(Mount, default=None)
-    spin_motor: str | None = text(default=None, says="a name under `motors`: spins the flywheel up and holds its speed")
+    spin_motor: str | None = text(default=None, says="a name under `motors`: holds the flywheel's speed")
     frame_mass: float = quantity("mass", least=0, default=0.0)
-    frame_inertia: Tensor | None = section(Tensor, default=None, says="of the frame about its centre, at angle zero, trunk axes")
+    frame_inertia: Tensor | None = section(
+        Tensor, default=None, says="of the frame about its centre, at angle zero, trunk axes")
 
 
 @dataclass(frozen=True)
 class ScissoredPair(GimballedFlywheel):
     """`kind: scissored pair`: two equal flywheels, opposite spin and opposite gimbal angle.
 
-    Rotor, frame and gimbal inertia and the drive's torque limit are per flywheel; `at` is the pair's common centre and
-    `spacing` the distance between the two rotor centres along the gimbal axis.
+    Rotor, frame and gimbal inertia and the drive's torque limit are per flywheel; `at` is the pair's common
+    centre and `spacing` the distance between the two rotor centres along the gimbal axis.
     """
 
     spacing: float = quantity("length", least=0, default=0.0)

@@ -1,4 +1,4 @@
-"""Is a stated inertia tensor one a body can have?  In plain Python: reading a file must not wait for numpy."""
+"""Is a stated inertia tensor one a body can have?  Plain Python: reading a file does not wait for numpy."""
 
 from __future__ import annotations
 
@@ -9,18 +9,19 @@ from balance.files.reader import Fault
 from balance.machine.solids import Tensor
 
 SLACK = 1e-6
-"""Relative: what the rounding of a printed tensor may cost; a flat plate meets the triangle rule with equality."""
+"""Relative: what rounding a printed tensor may cost; a flat plate meets the triangle rule with equality."""
 
 
 def principal_moments(tensor: Tensor) -> tuple[float, float, float]:
     """Return the principal moments of inertia in kg·m², ascending.
 
-    Closed form for a symmetric 3×3 matrix by the angle of its characteristic cubic (O. K. Smith, Comm. ACM 4, 1961).
-    Accurate to about 1e-8 of the largest, as every form that goes through the cubic.
+    Closed form for a symmetric 3×3 matrix by the angle of its characteristic cubic (O. K. Smith, Comm. ACM
+    4, 1961). Accurate to about 1e-8 of the largest, as every form that goes through the cubic.
     """
     mean = (tensor.xx + tensor.yy + tensor.zz) / 3.0
     off = tensor.xy**2 + tensor.xz**2 + tensor.yz**2
-    spread = math.sqrt(((tensor.xx - mean)**2 + (tensor.yy - mean)**2 + (tensor.zz - mean)**2 + 2.0 * off) / 6.0)
+    square = (tensor.xx - mean)**2 + (tensor.yy - mean)**2 + (tensor.zz - mean)**2
+    spread = math.sqrt((square + 2.0 * off) / 6.0)
     if spread == 0.0:
         return mean, mean, mean
     a, b, c = ((moment - mean) / spread for moment in (tensor.xx, tensor.yy, tensor.zz))
@@ -41,7 +42,7 @@ def check_tensor(tensor: Tensor) -> Iterator[Fault]:
     given = f"principal moments {low:.4g}, {middle:.4g} and {high:.4g} kg*m^2"
     if high <= 0.0 or middle <= 0.0 or low < -SLACK * high:
         yield Fault("", given, "positive principal moments",
-                    "check the signs and the size of xy, xz, yz" if high > 0.0 else "a point mass is `solid: {point: 0 mm}`")
+                    "check xy, xz and yz" if high > 0.0 else "a point mass is `solid: {point: 0 mm}`")
     elif high > (low + middle) * (1.0 + SLACK):
         yield Fault("", given, "a largest moment of at most the sum of the other two (triangle inequality)",
                     f"{high:.4g} is more than {low + middle:.4g}; is one moment about another point?")
