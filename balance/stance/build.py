@@ -20,7 +20,7 @@ from balance.stance.lumped import lumped_stance
 from balance.stance.parts import trunk_bodies
 from balance.stance.problems import problem
 from balance.stance.record import Stance
-from balance.stance.rotors import stabiliser_bodies
+from balance.stance.rotors import check_rotors, stabiliser_bodies
 from balance.stance.standing import stand_legs
 
 Array = NDArray[np.float64]
@@ -40,6 +40,7 @@ def build_stance(machine: Machine, name: str) -> Stance:
         near = get_close_matches(name, machine.stance_names(), 1)
         raise InputError([problem(machine, "stances", name, ", ".join(machine.stance_names()),
                                   f"did you mean {near[0]}?" if near else "")])
+    check_rotors(machine)
     if machine.lumped is not None:
         return lumped_stance(machine, machine.lumped)
     plans = machine.stances or {}

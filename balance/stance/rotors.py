@@ -8,6 +8,8 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from balance.base.errors import InputError
+from balance.machine.machine import Machine
 from balance.machine.motors import Motor
 from balance.machine.stabilisers import GimballedFlywheel, ReactionWheel, Rotor, ScissoredPair, Stabiliser
 from balance.maths.inertia import axial, rotated
@@ -15,6 +17,7 @@ from balance.maths.rotations import unit
 from balance.stance.bodies import Body
 from balance.stance.facing import faced_axes
 from balance.stance.parts import solid_mass, stated_tensor
+from balance.stance.problems import problem
 
 Array = NDArray[np.float64]
 
@@ -107,3 +110,20 @@ def frame_tensor(unit_: GimballedFlywheel) -> Array:
     if unit_.frame_inertia is not None:
         return stated_tensor(unit_.frame_inertia)
     return unit_.gimbal.inertia * np.eye(3)
+
+
+def check_rotors(machine: Machine) -> None:
+    """Raise InputError for a wheel of less inertia than the motor's rotor it is said to hold."""
+    found = []
+    for name, unit_ in machine.stabilisers.items():
+        if isinstance(unit_, ReactionWheel):
+            drive = wheel_drive(unit_, machine.motors)
+            if drive.wheel <= 0.0:
+                held = drive.ratio**2 * drive.motor
+                found.append(problem(
+                    machine, f"stabilisers.{name}.gear.includes_rotor",
+                    f"a spin inertia of {drive.wheel + held:.4g} kg*m^2",
+                    f"more than the rotor as the wheel feels it, ratio² × rotor_inertia = {held:.4g} kg*m^2",
+                    "leave includes_rotor out if the wheel was weighed without its motor"))
+    if found:
+        raise InputError(found)
