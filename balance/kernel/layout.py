@@ -55,4 +55,5 @@ RATE_LIMIT = 11    # rad/s
 DRIVE_TORQUE = 12  # N·m per gimbal
 RATE_LAG = 13      # rad/s: bandwidth of the servo's rate loop
 COUNT = 14
+SPIN = 15          # kg·m²: I_s per rotor
 UNIT_SIZE = 20

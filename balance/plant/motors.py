@@ -1,0 +1,68 @@
+"""Motors as the wheel feels them: constants through the gear, corner and no-load speeds, the torque-speed line."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from math import inf, sqrt
+
+from balance.machine.motors import Gear, Motor, Supply
+
+DIRECT = Gear()
+
+
+@dataclass(frozen=True)
+class Drive:
+    """One motor with its gear and supply, referred to the wheel; current counted positive in the wheel's sense.
+
+    V = R i + K_e Ω,  τ = K_t i,  |i| ≤ i_max.
+    """
+
+    torque_per_amp: float    # N·m/A at the wheel: η N K_t
+    back_emf: float          # V·s/rad of wheel speed: N K_e
+    resistance: float        # ohm, line
+    voltage: float           # V, open circuit
+    current_limit: float     # A
+    bandwidth: float         # rad/s of the current loop
+
+    @property
+    def stall_torque(self) -> float:
+        """Largest torque at standstill in N·m: by the current limit or by V/R."""
+        return self.torque_per_amp * min(self.current_limit, self.voltage / self.resistance)
+
+    @property
+    def no_load_speed(self) -> float:
+        """Wheel speed in rad/s at which the motor's own voltage equals the supply's."""
+        return self.voltage / self.back_emf
+
+    @property
+    def corner_speed(self) -> float:
+        """Wheel speed in rad/s up to which the current limit, and beyond which the voltage, holds the torque."""
+        return max((self.voltage - self.resistance * self.current_limit) / self.back_emf, 0.0)
+
+    def torque_at(self, speed: float) -> float:
+        """Return the torque in N·m still available in the sense of turning at `speed` ≥ 0 (rad/s)."""
+        current = (self.voltage - self.back_emf * speed) / self.resistance
+        return self.torque_per_amp * min(max(current, 0.0), self.current_limit)
+
+
+def drive_of(motor: Motor, gear: Gear | None, supply: Supply | None) -> Drive:
+    """Refer a motor through its gear to the wheel.
+
+    K_t = K_e in SI.  Values stated per phase (star, sinusoidal): line K = √3 × phase, line R = 2 × phase.  Stated per
+    RMS ampere: K is per ampere of amplitude after division by √2, and the stated currents are multiplied by it.
+    Without a supply the voltage is no limit.
+    """
+    gear = gear or DIRECT
+    constant = motor.torque_constant * (sqrt(3.0) if motor.values == "phase" else 1.0)
+    resistance = motor.resistance * (2.0 if motor.values == "phase" else 1.0)
+    amplitude = sqrt(2.0) if motor.amplitude == "rms" else 1.0
+    constant /= amplitude
+    most = min(motor.peak_current * amplitude, supply.peak_current if supply else inf)
+    return Drive(
+        torque_per_amp=gear.efficiency * gear.ratio * constant,
+        back_emf=gear.ratio * constant,
+        resistance=resistance,
+        voltage=supply.voltage if supply else inf,
+        current_limit=most,
+        bandwidth=2.0 * 3.141592653589793 * motor.bandwidth,
+    )

@@ -1,0 +1,101 @@
+"""The stabilisers as the contact line sees them: the record for people and the kernel's row of numbers."""
+
+from __future__ import annotations
+
+from math import inf, log, sin
+
+import numpy as np
+from numpy.typing import NDArray
+
+from balance.kernel import layout as at
+from balance.machine.machine import Machine
+from balance.machine.stabilisers import GimballedFlywheel, ReactionWheel, ScissoredPair, Stabiliser
+from balance.maths.rotations import unit
+from balance.plant.limits import gimbal_discounted, wheel_discounted
+from balance.plant.motors import Drive, drive_of
+from balance.plant.record import Unit
+from balance.stance.facing import faced_axes
+from balance.stance.rotors import frame_tensor, rotor_mass, wheel_drive
+
+Array = NDArray[np.float64]
+
+SQUARE = 1e-9
+"""Shares of an axis along the line below this are rounding: the unit is square to the line."""
+
+
+def on_line(machine: Machine, name: str, stabiliser: Stabiliser, e_T: Array) -> tuple[Unit, Array]:
+    """Return one stabiliser's record and kernel row (UNIT_SIZE,) for the line direction `e_T` (3,), trunk frame."""
+    if isinstance(stabiliser, ReactionWheel):
+        return _wheel(machine, name, stabiliser, e_T)
+    return _gimballed(name, stabiliser, e_T)
+
+
+def _wheel(machine: Machine, name: str, wheel: ReactionWheel, e_T: Array) -> tuple[Unit, Array]:
+    inertia = wheel_drive(wheel, machine.motors)
+    drive = drive_of((machine.motors or {})[wheel.motor], wheel.gear, machine.supply)
+    axis = unit(wheel.axis)
+    share = float(axis @ e_T)
+    share = share if abs(share) > SQUARE else 0.0
+    row = np.zeros(at.UNIT_SIZE)
+    row[at.KIND], row[at.AXIS_SHARE] = at.WHEEL, share
+    row[at.COUPLING], row[at.OWN_INERTIA] = share * inertia.coupled, inertia.own
+    row[at.COULOMB] = wheel.drag.coulomb if wheel.drag else 0.0
+    row[at.VISCOUS] = wheel.drag.viscous if wheel.drag else 0.0
+    row[at.TORQUE_PER_AMP], row[at.BACK_EMF] = drive.torque_per_amp, drive.back_emf
+    row[at.RESISTANCE], row[at.BUS_VOLTAGE] = drive.resistance, drive.voltage
+    row[at.CURRENT_LIMIT], row[at.CURRENT_LAG] = drive.current_limit, drive.bandwidth
+    row[at.SPEED_LIMIT], row[at.TORQUE_LIMIT] = wheel.speed_limit, wheel.torque_limit
+    most = min(drive.stall_torque, wheel.torque_limit)
+    top = min(wheel.speed_limit, drive.no_load_speed)
+    return Unit(name, "reaction wheel", "torque", share, inertia.wheel + inertia.motor * inertia.ratio**2,
+                abs(row[at.COUPLING]) * top, abs(row[at.COUPLING]) / inertia.own * most, most, top, drive.bandwidth,
+                axis, None, np.array(wheel.at)), row
+
+
+def _gimballed(name: str, flywheel: GimballedFlywheel, e_T: Array) -> tuple[Unit, Array]:
+    s_T, g_T, R = faced_axes(flywheel, e_T)
+    rotor, gimbal = rotor_mass(flywheel.rotor), flywheel.gimbal
+    pair = isinstance(flywheel, ScissoredPair)
+    servo = gimbal.drive == "position servo"
+    acting = float(e_T @ np.cross(g_T, s_T))
+    acting = acting if abs(acting) > SQUARE else 0.0
+    row = np.zeros(at.UNIT_SIZE)
+    row[at.KIND] = at.GIMBAL_SERVO if servo else at.GIMBAL_TORQUE
+    row[at.E_S0], row[at.E_GXS0], row[at.KAPPA] = float(e_T @ s_T), acting, float(e_T @ g_T)
+    row[at.MOMENTUM], row[at.TRANSVERSE] = rotor.spin * flywheel.spin_speed, rotor.transverse
+    row[at.GIMBAL_INERTIA] = float(g_T @ (R @ frame_tensor(flywheel) @ R.T) @ g_T) + rotor.transverse
+    row[at.GIMBAL_DAMPING], row[at.GIMBAL_SPRING] = gimbal.damping, gimbal.spring
+    row[at.ANGLE_STOP], row[at.RATE_LIMIT] = gimbal.angle_limit, gimbal.rate_limit
+    row[at.DRIVE_TORQUE], row[at.RATE_LAG] = gimbal.torque_limit, 2.0 * np.pi * gimbal.bandwidth
+    row[at.COUNT] = 2 if pair else 1
+    row[at.SPIN] = rotor.spin
+    line_momentum = row[at.COUNT] * row[at.MOMENTUM] * abs(acting)
+    return Unit(name, "scissored pair" if pair else "gimballed flywheel", "rate" if servo else "torque", acting,
+                rotor.spin, line_momentum * sin(gimbal.angle_limit), line_momentum * gimbal.rate_limit,
+                gimbal.rate_limit if servo else gimbal.torque_limit, gimbal.angle_limit,
+                row[at.RATE_LAG] if servo else inf, s_T, g_T, np.array(flywheel.at)), row
+
+
+def discounted(row: Array, pole: float) -> float:
+    """Return ∫ e^{−ps} T(s) ds in N·m·s of one unit's all-out manoeuvre from rest (drag left out)."""
+    if row[at.KIND] != at.WHEEL:
+        momentum = row[at.COUNT] * row[at.MOMENTUM] * abs(row[at.E_GXS0])
+        return gimbal_discounted(momentum, row[at.RATE_LIMIT], row[at.ANGLE_STOP], pole)
+    drive = Drive(row[at.TORQUE_PER_AMP], row[at.BACK_EMF], row[at.RESISTANCE], row[at.BUS_VOLTAGE],
+                  row[at.CURRENT_LIMIT], row[at.CURRENT_LAG])
+    most = min(drive.stall_torque, row[at.TORQUE_LIMIT])
+    kink = (drive.voltage - drive.resistance * most / drive.torque_per_amp) / drive.back_emf
+    corner = kink * row[at.OWN_INERTIA] / most
+    decay = row[at.OWN_INERTIA] * drive.resistance / (drive.torque_per_amp * drive.back_emf)
+    return abs(row[at.COUPLING]) / row[at.OWN_INERTIA] * wheel_discounted(
+        most, corner, decay, _end(row, drive, most, kink, corner, decay), pole)
+
+
+def _end(row: Array, drive: Drive, most: float, kink: float, corner: float, decay: float) -> float:
+    """Return when the all-out wheel reaches its speed limit in s; inf where the voltage stops it first."""
+    top = row[at.SPEED_LIMIT]
+    if top <= kink:
+        return float(top * row[at.OWN_INERTIA] / most)
+    if top >= drive.no_load_speed:
+        return inf
+    return float(corner - decay * log(1.0 - (top - kink) / (drive.no_load_speed - kink)))
