@@ -48,7 +48,7 @@ Array = NDArray[np.float64]
 def gravity_torque(theta: float, body: Array) -> float:
     """Return M(θ) in N·m, rolling feet of radius r included: G_s − m g r in place of G_s."""
     rolled = body[STIFF_SIN] - body[MASS] * body[GRAVITY] * body[FOOT_RADIUS]
-    return rolled * np.sin(theta) + body[STIFF_COS] * np.cos(theta)
+    return float(rolled * np.sin(theta) + body[STIFF_COS] * np.cos(theta))
 
 
 @njit(cache=True, error_model="numpy")
@@ -72,8 +72,9 @@ def wheel_drag(speed: float, coulomb: float, viscous: float) -> float:
 
 
 @njit(cache=True, error_model="numpy")
-def gimbal_terms(i: int, gamma: float, gamma_dot: float, theta_dot: float, units: Array) -> tuple[float, float, float, float]:
-    """Return (own inertia added to the body row, torque on the body row, coupling κ I_γ, push on one gimbal) of unit i.
+def gimbal_terms(i: int, gamma: float, gamma_dot: float, theta_dot: float,
+                 units: Array) -> tuple[float, float, float, float]:
+    """Return unit i's (inertia added to the body row, torque on it, coupling κ I_γ, push on one gimbal).
 
     With D = I_t − I_s(held): body row + count·(I_t − D σ²) θ̈, torque −H σ' γ̇ + 2 D σ σ' γ̇ θ̇ per rotor; gimbal row
     H σ' θ̇ − D σ σ' θ̇² − b γ̇ − k γ. The second rotor of a pair stands at −γ with −H.
@@ -116,7 +117,7 @@ def lean_acceleration(X: Array, inputs: Array, disturbance: float, body: Array, 
             given = inputs[i] if units[i, KIND] != GIMBAL_SERVO else out[3 + 2 * i]
             mass -= coupling**2 / units[i, GIMBAL_INERTIA]
             torque -= coupling / units[i, GIMBAL_INERTIA] * (given + back)
-    return torque / mass
+    return float(torque / mass)
 
 
 @njit(cache=True, error_model="numpy")
@@ -149,7 +150,7 @@ def servo_torque(i: int, X: Array, rate: float, acceleration: float, units: Arra
     """Return the drive torque per gimbal in N·m that a servo needs to follow a commanded rate."""
     _, _, coupling, back = gimbal_terms(i, X[2 + 2 * i], X[3 + 2 * i], X[1], units)
     wanted = (rate - X[3 + 2 * i]) * units[i, RATE_LAG]
-    return units[i, GIMBAL_INERTIA] * wanted + coupling * acceleration - back
+    return float(units[i, GIMBAL_INERTIA] * wanted + coupling * acceleration - back)
 
 
 @njit(cache=True, error_model="numpy")

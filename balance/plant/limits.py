@@ -1,8 +1,8 @@
 """What no controller can beat: closed forms for z = lean + lean rate / p (`physics.md` of the agreement; all linear).
 
 One unstable mode ż = p z + (d − T)/(J_rest p): z can be brought back only while p-discounted torque suffices,
-|z| < (1/(J_rest p)) ∫ e^{−ps} T(s) ds along the all-out manoeuvre.  Null-controllable sets under bounded input: Hu & Lin
-(from memory); linear inverted pendulum plus flywheel: Pratt, Carff, Drakunov, Goswami 2006 (from memory).
+|z| < (1/(J_rest p)) ∫ e^{−ps} T(s) ds along the all-out manoeuvre.  Null-controllable sets under bounded input:
+Hu & Lin (from memory); linear inverted pendulum plus flywheel: Pratt, Carff, Drakunov, Goswami 2006 (from memory).
 """
 
 from __future__ import annotations

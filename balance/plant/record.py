@@ -17,8 +17,8 @@ class LinearModel:
     """ẋ = A x + B u about the balanced lean; SI, named; `u` are the units' own inputs.
 
     States: `lean`, `lean_rate`, then per unit `NAME.wheel_speed`, or `NAME.gimbal_angle`, `NAME.gimbal_rate`
-    (no `NAME.` prefix where there is one unit).  Inputs: wheel torque (N·m on the wheel), gimbal torque (N·m per gimbal) or
-    commanded gimbal rate (rad/s).  `disturbance` is the column of a torque about the line (+ outward).
+    (no `NAME.` prefix where there is one unit).  Inputs: wheel torque (N·m on the wheel), gimbal torque (N·m per
+    gimbal) or commanded gimbal rate (rad/s).  `disturbance` is the column of a torque about the line (+ outward).
     """
 
     states: tuple[str, ...]

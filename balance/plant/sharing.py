@@ -38,7 +38,8 @@ def allotment(units: tuple[Unit, ...], gains: Array) -> Array:
     able = np.array([u.torque_limit if g != 0.0 else 0.0 for u, g in zip(units, gains, strict=True)])
     if able.sum() == 0.0:
         return np.zeros(len(units))
-    return np.divide(able / able.sum(), gains, out=np.zeros(len(units)), where=gains != 0.0)
+    shares: Array = np.divide(able / able.sum(), gains, out=np.zeros(len(units)), where=gains != 0.0)
+    return shares
 
 
 def levelling(rows: Array, shares: Array, first: list[int], width: int) -> Array:

@@ -87,8 +87,9 @@ def discounted(row: Array, pole: float) -> float:
     kink = (drive.voltage - drive.resistance * most / drive.torque_per_amp) / drive.back_emf
     corner = kink * row[at.OWN_INERTIA] / most
     decay = row[at.OWN_INERTIA] * drive.resistance / (drive.torque_per_amp * drive.back_emf)
-    return abs(row[at.COUPLING]) / row[at.OWN_INERTIA] * wheel_discounted(
-        most, corner, decay, _end(row, drive, most, kink, corner, decay), pole)
+    end = _end(row, drive, most, kink, corner, decay)
+    share = float(abs(row[at.COUPLING]) / row[at.OWN_INERTIA])
+    return share * wheel_discounted(most, corner, decay, end, pole)
 
 
 def _end(row: Array, drive: Drive, most: float, kink: float, corner: float, decay: float) -> float:
