@@ -1,0 +1,132 @@
+"""What is measured while a trial runs: line torque and momentum, currents, bus power, feet, first limits."""
+
+from __future__ import annotations
+
+import numpy as np
+from numba import njit
+from numpy.typing import NDArray
+
+from balance.kernel import outcome
+from balance.kernel.drive import torque_available
+from balance.kernel.equations import gimbal_terms
+from balance.kernel.feet import foot_forces
+from balance.kernel.layout import (
+    BACK_EMF,
+    BALANCED,
+    COUNT,
+    COUPLING,
+    E_GXS0,
+    E_S0,
+    GIMBAL_INERTIA,
+    KIND,
+    MOMENTUM,
+    OWN_INERTIA,
+    RESISTANCE,
+    WHEEL,
+)
+
+Array = NDArray[np.float64]
+Flags = NDArray[np.int64]
+
+
+@njit(cache=True, error_model="numpy")
+def line_torque(X: Array, dX: Array, units: Array) -> float:
+    """Return T = dq/dt in N·m: the torque about the line all units take from the body."""
+    total = 0.0
+    for i in range(units.shape[0]):
+        if units[i, KIND] == WHEEL:
+            own = units[i, OWN_INERTIA] * dX[2 + 2 * i] + units[i, COUPLING] * dX[1]
+            total += units[i, COUPLING] / units[i, OWN_INERTIA] * own
+        else:
+            total += momentum_slope(X[2 + 2 * i], units, i) * X[3 + 2 * i]
+    return total
+
+
+@njit(cache=True, error_model="numpy")
+def line_momentum(X: Array, units: Array) -> float:
+    """Return q in N·m·s: the momentum about the line stored in all units (a gimbal at angle zero stores none)."""
+    total = 0.0
+    for i in range(units.shape[0]):
+        if units[i, KIND] == WHEEL:
+            own = units[i, OWN_INERTIA] * X[2 + 2 * i] + units[i, COUPLING] * X[1]
+            total += units[i, COUPLING] / units[i, OWN_INERTIA] * own
+        else:
+            lead = 0.0 if units[i, COUNT] > 1.5 else units[i, E_S0]
+            share = lead * (np.cos(X[2 + 2 * i]) - 1.0) + units[i, E_GXS0] * np.sin(X[2 + 2 * i])
+            total += units[i, COUNT] * units[i, MOMENTUM] * share
+    return total
+
+
+@njit(cache=True, error_model="numpy")
+def momentum_slope(angle: float, units: Array, i: int) -> float:
+    """Return dq/dγ in N·m·s/rad of all rotors of a gimballed unit; in a mirrored pair the e·s₀ parts cancel."""
+    lead = 0.0 if units[i, COUNT] > 1.5 else units[i, E_S0]
+    return units[i, COUNT] * units[i, MOMENTUM] * (units[i, E_GXS0] * np.cos(angle) - lead * np.sin(angle))
+
+
+@njit(cache=True, error_model="numpy")
+def available(X: Array, units: Array, sign: float) -> float:
+    """Return the torque about the line in N·m all units could give now toward `sign`."""
+    total = 0.0
+    for i in range(units.shape[0]):
+        if units[i, KIND] == WHEEL:
+            share = units[i, COUPLING] / units[i, OWN_INERTIA]
+            total += torque_available(units, i, X[2 + 2 * i], share, sign)
+        else:
+            total += torque_available(units, i, X[2 + 2 * i], momentum_slope(X[2 + 2 * i], units, i), sign)
+    return total
+
+
+@njit(cache=True, error_model="numpy")
+def bus_power(X: Array, dX: Array, units: Array) -> tuple[float, float]:
+    """Return (electrical power of wheels plus mechanical power of gimbal drives in W, largest |current| in A).
+
+    The steady power that holds the flywheels' spin is not in it.
+    """
+    power = 0.0
+    current = 0.0
+    for i in range(units.shape[0]):
+        a, b = X[2 + 2 * i], X[3 + 2 * i]
+        if units[i, KIND] == WHEEL:
+            power += b * (units[i, RESISTANCE] * b + units[i, BACK_EMF] * a)
+            current = max(current, abs(b))
+        else:
+            _, _, coupling, back = gimbal_terms(i, a, b, X[1], units)
+            drive = units[i, GIMBAL_INERTIA] * dX[3 + 2 * i] + coupling * dX[1] - back
+            power += units[i, COUNT] * max(drive * b, 0.0)
+    return power, current
+
+
+@njit(cache=True, error_model="numpy")
+def watch(t: float, h: float, X: Array, dX: Array, body: Array, units: Array, met: Flags, metrics: Array,
+          first: Array) -> None:
+    """Gather the metrics of one sub-step of length h that starts at t (h = 0: only the peaks)."""
+    torque = line_torque(X, dX, units)
+    stored = line_momentum(X, units)
+    power, current = bus_power(X, dX, units)
+    sideways, normal = foot_forces(X, dX, body)
+    metrics[outcome.PEAK_LEAN] = max(metrics[outcome.PEAK_LEAN], abs(X[0] - body[BALANCED]))
+    metrics[outcome.PEAK_TORQUE] = max(metrics[outcome.PEAK_TORQUE], abs(torque))
+    metrics[outcome.PEAK_MOMENTUM] = max(metrics[outcome.PEAK_MOMENTUM], abs(stored))
+    metrics[outcome.PEAK_CURRENT] = max(metrics[outcome.PEAK_CURRENT], current)
+    metrics[outcome.PEAK_POWER] = max(metrics[outcome.PEAK_POWER], power)
+    metrics[outcome.TORQUE_SQUARED] += h * torque * torque
+    if normal <= 0.0:
+        metrics[outcome.LIFTED] = 1.0
+    else:
+        metrics[outcome.FRICTION] = max(metrics[outcome.FRICTION], abs(sideways) / normal)
+    limited = False
+    for i in range(met.size):
+        if met[i] != outcome.NO_LIMIT:
+            limited = True
+            note(t, stored, i, met[i], first)
+    if limited:
+        metrics[outcome.SATURATED] += h
+
+
+@njit(cache=True, error_model="numpy")
+def note(t: float, stored: float, row: int, limit: int, first: Array) -> None:
+    """Keep the time and the stored momentum when a limit was met first."""
+    if t < first[row, limit, 0]:
+        first[row, limit, 0] = t
+        first[row, limit, 1] = stored

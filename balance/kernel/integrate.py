@@ -1,0 +1,166 @@
+"""How one sub-step is made: rates of the whole machine, and classic Runge-Kutta of order four.
+
+The arrays are handed in one by one: compiled code takes a bundle apart again at every call, and these are hot.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+from numba import njit
+from numpy.typing import NDArray
+
+from balance.kernel import outcome
+from balance.kernel.drive import LIMITER_GAIN, unit_input
+from balance.kernel.equations import derivative
+from balance.kernel.gauge import watch
+from balance.kernel.layout import (
+    ANGLE_STOP,
+    BALANCED,
+    CURRENT_LAG,
+    DRIVE_TORQUE,
+    FELL,
+    GIMBAL_SERVO,
+    KIND,
+    RATE_LAG,
+    TORQUE_PER_AMP,
+    TOUCH_DOWN,
+    WHEEL,
+)
+
+Array = NDArray[np.float64]
+Flags = NDArray[np.int64]
+
+LONGEST_STEP = 0.5e-3
+"""s: sub-step where no lag asks for a shorter one."""
+
+
+@njit(cache=True, error_model="numpy")
+def longest_step(units: Array) -> float:
+    """Return the longest sub-step in s: 0.5 ms, or a quarter of the fastest lag's time constant."""
+    h = min(LONGEST_STEP, 0.25 / LIMITER_GAIN)
+    for i in range(units.shape[0]):
+        lag = 0.0
+        if units[i, KIND] == WHEEL:
+            lag = units[i, CURRENT_LAG]
+        elif units[i, KIND] == GIMBAL_SERVO:
+            lag = units[i, RATE_LAG]
+        if np.isfinite(lag) and lag > 0.0:
+            h = min(h, 0.25 / lag)
+    return h
+
+
+@njit(cache=True, error_model="numpy")
+def disturbance_at(t: float, active: Array, count: int) -> float:
+    """Return the torque about the line in N·m at time t from the first `count` rows of `active`."""
+    total = 0.0
+    for i in range(count):
+        s = t - active[i, outcome.START]
+        total += active[i, outcome.LEVEL] + active[i, outcome.SLOPE] * s
+        if active[i, outcome.SWING] != 0.0:
+            total += active[i, outcome.SWING] * np.sin(active[i, outcome.TURN] * s)
+    return total
+
+
+@njit(cache=True, error_model="numpy")
+def rates(X: Array, torque: float, commands: Array, body: Array, live: Array, met: Flags, inputs: Array,
+          slopes: Array, out: Array) -> None:
+    """Fill `out` with dX/dt under held commands and a torque about the line; `met` with each unit's limit."""
+    for i in range(live.shape[0]):
+        inputs[i], slopes[i], met[i] = unit_input(live, i, X[2 + 2 * i], X[3 + 2 * i], X[1], commands[i])
+    derivative(X, inputs, torque, body, live, out)
+    for i in range(live.shape[0]):
+        if live[i, KIND] == WHEEL:
+            out[3 + 2 * i] = slopes[i]
+        elif live[i, KIND] == GIMBAL_SERVO:
+            wanted = (inputs[i] - X[3 + 2 * i]) * live[i, RATE_LAG]
+            if abs(out[3 + 2 * i] - wanted) > 1e-9 * (1.0 + abs(wanted)) and live[i, DRIVE_TORQUE] != np.inf:
+                met[i] = outcome.DRIVE
+
+
+@njit(cache=True, error_model="numpy")
+def march(X: Array, begin: float, h: float, steps: int, commands: Array, active: Array, count: int,
+          body: Array,
+          units: Array, live: Array, held: Flags, met: Flags, inputs: Array, slopes: Array, rate: Array,
+          total: Array, probe: Array, metrics: Array, first: Array) -> tuple[int, int]:
+    """Make at most `steps` sub-steps of h from `begin`; return (steps made, how the trial ended).
+
+    It stops short, with X at the end of the last whole step, where a free gimbal would pass its stop. Classic
+    Runge-Kutta of order four; one call site of `rates` in a loop, since four would be compiled four times.
+    """
+    for step in range(steps):
+        t = begin + step * h
+        for j in range(X.size):
+            probe[j] = X[j]
+            total[j] = X[j]
+        for stage in range(4):
+            reach = 0.0 if stage == 0 else (h if stage == 3 else 0.5 * h)
+            if stage > 0:
+                for j in range(X.size):
+                    probe[j] = X[j] + reach * rate[j]
+            torque = disturbance_at(t + reach, active, count)
+            rates(probe, torque, commands, body, live, met, inputs, slopes, rate)
+            if stage == 0:
+                settle_currents(X, inputs, live, met, held)
+                watch(t, h, X, rate, body, units, met, metrics, first)
+            weight = h / 3.0 if 0 < stage < 3 else h / 6.0
+            for j in range(X.size):
+                total[j] += weight * rate[j]
+        if beyond_stop(total, units, held) >= 0:
+            return step, outcome.RAN
+        for j in range(X.size):
+            X[j] = total[j]
+        end = ended(X, body)
+        if end != outcome.RAN:
+            return step + 1, end
+    return steps, outcome.RAN
+
+
+@njit(cache=True, error_model="numpy")
+def settle_currents(X: Array, inputs: Array, live: Array, met: Flags, held: Flags) -> None:
+    """Show the current of wheels without a current lag (no state of its own), and that a held gimbal is limited."""
+    for i in range(held.size):
+        if live[i, KIND] == WHEEL and live[i, CURRENT_LAG] == np.inf:
+            X[3 + 2 * i] = inputs[i] / live[i, TORQUE_PER_AMP]
+        if held[i] != 0:
+            met[i] = outcome.STOP
+
+
+@njit(cache=True, error_model="numpy")
+def beyond_stop(X: Array, units: Array, held: Flags) -> int:
+    """Return the first gimballed unit that is past its stop and not held there, or -1."""
+    for i in range(held.size):
+        if units[i, KIND] != WHEEL and held[i] == 0 and abs(X[2 + 2 * i]) > units[i, ANGLE_STOP]:
+            return i
+    return -1
+
+
+@njit(cache=True, error_model="numpy")
+def ended(X: Array, body: Array) -> int:
+    """Return how the trial has ended in this state (RAN: it has not)."""
+    lean = X[0] - body[BALANCED]
+    if X[0] <= -body[TOUCH_DOWN]:
+        return outcome.TOUCHED_DOWN
+    if lean > body[FELL]:
+        return outcome.FELL_OUTWARD
+    if lean < -body[FELL]:
+        return outcome.FELL_INWARD
+    return outcome.RAN
+
+
+@njit(cache=True, error_model="numpy")
+def jump(column: int, X: Array, body: Array, live: Array, inputs: Array, rest: Array, push: Array) -> None:
+    """Fill `push` with the change of all rates per impulse: about the line (column -1), or in input `column`.
+
+    Accelerations are affine in torques, so the difference of two of them is a column of M⁻¹,
+    geared rotors included.
+    """
+    for i in range(inputs.size):
+        inputs[i] = 0.0
+    derivative(X, inputs, 0.0, body, live, rest)
+    about = 1.0
+    if column >= 0:
+        inputs[column] = 1.0
+        about = 0.0
+    derivative(X, inputs, about, body, live, push)
+    for j in range(X.size):
+        push[j] -= rest[j]

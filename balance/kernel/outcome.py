@@ -1,0 +1,65 @@
+"""Where the trial loop puts what it measured: places in its flat arrays, and its small integers.
+
+`metrics` (METRIC_SIZE,), `first` (units + 1, LIMITS, 2): time and stored line momentum when unit i first met a limit,
+inf where it never did; the last row belongs to the law and the body. `trace` rows: TRACE_SIZE columns, then the units' states.
+"""
+
+# how a trial ended
+RAN = 0
+FELL_OUTWARD = 1
+FELL_INWARD = 2
+TOUCHED_DOWN = 3
+
+# metrics
+PEAK_LEAN = 0        # rad
+PEAK_TORQUE = 1      # N·m about the line
+SATURATED = 2        # s
+PEAK_MOMENTUM = 3    # N·m·s about the line
+TORQUE_SQUARED = 4   # N²·m²·s: ∫T²dt
+PEAK_CURRENT = 5     # A
+PEAK_POWER = 6       # W, from the bus
+FRICTION = 7         # largest |tangential| / normal
+LIFTED = 8           # 1: the sum of normal forces reached zero
+END_TIME = 9         # s
+END_LEAN = 10        # rad
+END_MOMENTUM = 11    # N·m·s
+SAMPLES = 12         # samples taken, the start included
+METRIC_SIZE = 16
+
+# limits
+NO_LIMIT = 0
+TORQUE = 1           # stated torque of the unit, or the law's own limit
+CURRENT = 2          # motor or driver current
+VOLTAGE = 3          # back-EMF leaves too little voltage
+SPEED = 4            # wheel speed limit
+RATE = 5             # gimbal rate limit
+DRIVE = 6            # gimbal drive's strength
+STOP = 7             # gimbal stop
+OUTPUT = 8           # the law's limit of its line command (last row)
+LIMITS = 9
+
+# columns of a recorded sample
+TIME = 0
+LEAN = 1
+LEAN_RATE = 2
+LINE_TORQUE = 3
+LINE_TORQUE_LIMIT = 4
+LINE_MOMENTUM = 5
+COMMAND = 6
+DISTURBANCE = 7
+TRACE_SIZE = 8
+
+# a torque about the line over time: START <= t < END: LEVEL + SLOPE (t - START) + SWING sin(TURN (t - START))
+START = 0
+END = 1
+LEVEL = 2
+SLOPE = 3
+SWING = 4
+TURN = 5
+TORQUE_SIZE = 6
+
+# a sudden change
+AT = 0               # s
+KICK = 1             # N·m·s of angular impulse about the line
+SHIFT = 2            # m of the centre of mass along w
+JUMP_SIZE = 3

@@ -1,0 +1,80 @@
+"""One tick of the law: measure, compute, limit, share out. The same arithmetic the firmware does."""
+
+from __future__ import annotations
+
+import numpy as np
+from numba import njit
+from numpy.typing import NDArray
+
+from balance.kernel.layout import BALANCED
+
+Array = NDArray[np.float64]
+Places = NDArray[np.int64]
+
+
+@njit(cache=True, error_model="numpy")
+def measure(X: Array, body: Array, places: Places, y: Array) -> None:
+    """Fill y with the states at `places`; place 0 is read as lean, θ - θ_b."""
+    for j in range(places.size):
+        y[j] = X[places[j]] - body[BALANCED] if places[j] == 0 else X[places[j]]
+
+
+@njit(cache=True, error_model="numpy")
+def law_tick(x: Array, y: Array, A: Array, B: Array, E: Array, C: Array, D: Array, most: float,
+             spare: Array) -> tuple[float, float]:
+    """Return (v, v' = clip(v, ±most)) and move the memory x on: v = C x + D y, x⁺ = A x + B y + E v'."""
+    v = 0.0
+    for j in range(x.size):
+        v += C[j] * x[j]
+    for j in range(y.size):
+        v += D[j] * y[j]
+    limited = min(max(v, -most), most)
+    for i in range(x.size):
+        s = E[i] * limited
+        for j in range(x.size):
+            s += A[i, j] * x[j]
+        for j in range(y.size):
+            s += B[i, j] * y[j]
+        spare[i] = s
+    for i in range(x.size):
+        x[i] = spare[i]
+    return v, limited
+
+
+@njit(cache=True, error_model="numpy")
+def share_out(v: float, y: Array, allotment: Array, levelling: Array, most: Array, line_share: Array,
+              out: Array) -> bool:
+    """Fill `out` with the units' inputs, allotment·v - levelling·y, each within ±most; return: was one limited.
+
+    What a limited unit cannot give about the line is offered to the units that still have room, in proportion
+    to the torque they have left. `line_share`: torque about the line per unit of input; 0: takes nothing over.
+    """
+    missing = 0.0
+    limited = False
+    for i in range(out.size):
+        u = allotment[i] * v
+        for j in range(y.size):
+            u -= levelling[i, j] * y[j]
+        out[i] = min(max(u, -most[i]), most[i])
+        if abs(u) > most[i] * (1.0 + 1e-9):
+            limited = True
+        missing += line_share[i] * (u - out[i])
+    if missing == 0.0 or out.size < 2:
+        return limited
+    room = 0.0
+    for i in range(out.size):
+        room += _room(missing, line_share[i], most[i], out[i])
+    if room > 0.0:
+        part = min(abs(missing) / room, 1.0)
+        for i in range(out.size):
+            given = part * _room(missing, line_share[i], most[i], out[i])
+            if given > 0.0:
+                out[i] += (given if missing > 0.0 else -given) / line_share[i]
+    return limited
+
+
+@njit(cache=True, error_model="numpy")
+def _room(missing: float, line_share: float, most: float, given: float) -> float:
+    """Return the torque about the line a unit can still add toward `missing`, as a magnitude."""
+    way = 1.0 if missing * line_share >= 0.0 else -1.0
+    return abs(line_share) * max(most - way * given, 0.0)

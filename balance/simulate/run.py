@@ -1,0 +1,109 @@
+"""Run the trials of a design file on one stance and say what happened."""
+
+from __future__ import annotations
+
+import math
+
+import numpy as np
+
+from balance.design.records import Design
+from balance.goal.goal import Goal
+from balance.goal.trials import Trial
+from balance.kernel import outcome
+from balance.kernel.bundles import Output
+from balance.kernel.integrate import longest_step
+from balance.kernel.layout import FELL, GRAVITY, MASS, STIFF_COS
+from balance.kernel.run import run_trial
+from balance.kernel.standing import standing_lean
+from balance.machine.machine import Machine
+from balance.plant.record import Plant
+from balance.simulate.events import Happening, directions, happening
+from balance.simulate.records import Trace, TrialResult
+from balance.simulate.setup import empty_output, law_arrays, start_state
+from balance.simulate.story import limit_story, settling_time, time_to_full
+
+FELL_WORDS = {
+    outcome.FELL_OUTWARD: "fell outward", outcome.FELL_INWARD: "fell inward", outcome.TOUCHED_DOWN: "touched down",
+}
+
+
+def run_trials(design: Design, goal: Goal, machine: Machine, record: bool) -> tuple[TrialResult, ...]:
+    """Run every trial of `goal` in every direction it asks for; none where the design was refused.
+
+    `record`: keep the time histories, one row per sample. The controller is never told what disturbs it.
+    """
+    if design.refused:
+        return ()
+    return tuple(run_one(design, goal, name, trial, toward, record)
+                 for name, trial in goal.trials.items() for toward in directions(trial))
+
+
+def run_one(design: Design, goal: Goal, name: str, trial: Trial, toward: str, record: bool) -> TrialResult:
+    """Run one trial in one direction."""
+    plant = design.plant
+    event = happening(trial, toward, longest_step(plant.unit_parameters))
+    samples = math.ceil(trial.lasts / design.law.sample_time - 1e-9)
+    output = empty_output(plant, samples, record)
+    body = plant.body_parameters.copy()
+    body[FELL] = goal.fell
+    ended = run_trial(start_state(plant, event), body, plant.unit_parameters, law_arrays(design.law, plant),
+                      event.events, output)
+    return _result(design, name, event, ended, output)
+
+
+def _result(design: Design, name: str, event: Happening, ended: int, output: Output) -> TrialResult:
+    """Return what the kernel measured, in words and numbers."""
+    plant, metrics = design.plant, output.metrics
+    taken = int(metrics[outcome.SAMPLES])
+    time = np.minimum(np.arange(taken) * design.law.sample_time, metrics[outcome.END_TIME])
+    lean, momentum = output.history[:taken, 0], output.history[:taken, 1]
+    settled = math.inf
+    if ended == outcome.RAN:
+        settled = settling_time(time, lean, end_lean(plant, event), event.quiet_from)
+    full_in = time_to_full(time, momentum, plant.momentum_capacity)
+    verdict = FELL_WORDS.get(ended, "recovered")
+    running_away = full_in < event.events.lasts
+    if ended == outcome.RAN and (math.isinf(settled) or running_away):
+        verdict = "did not settle"
+    command = "gimbal rate" if design.law.unit == "rad/s" else "torque"
+    reason = limit_story(output.first, [u.name for u in plant.units], plant.momentum_capacity, command)
+    if not reason and verdict.startswith("fell"):
+        reason = "no limit was met: the law itself did not hold it"
+    if verdict == "did not settle" and running_away and not math.isinf(settled):
+        reason = _and(reason, f"stored momentum still grows and would be full {full_in:.2g} s later")
+    return TrialResult(
+        name=name, stance=plant.stance.name, toward=event.toward, verdict=verdict, reason=reason,
+        peak_lean=float(metrics[outcome.PEAK_LEAN]), settling_time=settled,
+        peak_torque=float(metrics[outcome.PEAK_TORQUE]), torque_saturated=float(metrics[outcome.SATURATED]),
+        peak_momentum=float(metrics[outcome.PEAK_MOMENTUM]),
+        momentum_used=_share(float(metrics[outcome.PEAK_MOMENTUM]), plant.momentum_capacity),
+        rms_torque=math.sqrt(metrics[outcome.TORQUE_SQUARED] / metrics[outcome.END_TIME]),
+        peak_current=float(metrics[outcome.PEAK_CURRENT]), peak_bus_power=float(metrics[outcome.PEAK_POWER]),
+        friction_needed=float(metrics[outcome.FRICTION]), lift_off=bool(metrics[outcome.LIFTED] > 0.0),
+        end_lean=float(metrics[outcome.END_LEAN]), end_momentum=float(metrics[outcome.END_MOMENTUM]),
+        trace=_trace(output, taken))
+
+
+def end_lean(plant: Plant, event: Happening) -> float:
+    """Return the lean in rad at which gravity balances what stays on; NaN where nothing does."""
+    body = plant.body_parameters.copy()
+    body[STIFF_COS] += body[MASS] * body[GRAVITY] * event.end_shift
+    return float(standing_lean(body, plant.unit_parameters, event.end_torque))
+
+
+def _trace(output: Output, taken: int) -> Trace | None:
+    """Return the recorded histories by name; None where nothing was recorded."""
+    if output.trace.shape[0] == 0:
+        return None
+    rows = output.trace[:taken]
+    return Trace(*(rows[:, k].copy() for k in range(outcome.TRACE_SIZE)), units=rows[:, outcome.TRACE_SIZE:].copy())
+
+
+def _share(peak: float, capacity: float) -> float:
+    """Return the share of the capacity used."""
+    return peak / capacity if capacity > 0.0 else math.inf
+
+
+def _and(reason: str, more: str) -> str:
+    """Join two reasons."""
+    return f"{reason}; {more}" if reason else more

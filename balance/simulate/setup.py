@@ -1,0 +1,104 @@
+"""What the kernel's loop needs of a design: the law as flat arrays, the start state, empty output."""
+
+from __future__ import annotations
+
+import math
+
+import numpy as np
+from numpy.typing import NDArray
+
+from balance.design.law import Law
+from balance.kernel import outcome
+from balance.kernel.bundles import LawArrays, Output
+from balance.kernel.layout import (
+    BALANCED,
+    COUNT,
+    COUPLING,
+    E_GXS0,
+    E_S0,
+    GIMBAL_SERVO,
+    KIND,
+    MOMENTUM,
+    OWN_INERTIA,
+    WHEEL,
+)
+from balance.plant.record import Plant
+from balance.simulate.events import Happening
+
+Array = NDArray[np.float64]
+
+
+def law_arrays(law: Law, plant: Plant) -> LawArrays:
+    """Return the law as the kernel's tick reads it."""
+    return LawArrays(_flat(law.A), _flat(law.B), _flat(law.E), _flat(law.C), _flat(law.D), float(law.output_limit),
+                     _flat(law.allotment), _flat(law.levelling), _flat(law.input_limits), line_share(plant),
+                     places(law, plant), float(law.sample_time), float(law.latency))
+
+
+def places(law: Law, plant: Plant) -> NDArray[np.int64]:
+    """Return where each measurement stands in the kernel's state vector, (m,).
+
+    The kernel keeps two entries per unit; the model's states skip a wheel's motor current.
+    """
+    where: list[int] = [0, 1]
+    for i, unit in enumerate(plant.unit_parameters):
+        where += [2 + 2 * i] if unit[KIND] == WHEEL else [2 + 2 * i, 3 + 2 * i]
+    table = dict(zip(plant.model.states, where, strict=True))
+    return np.array([table[name] for name in law.measurements], dtype=np.int64)
+
+
+def line_share(plant: Plant) -> Array:
+    """Return the torque about the line per unit of each unit's input, (units,); zeros for a single unit.
+
+    A wheel: α(I + sNJ_r)/(I + N²J_r). A position servo: H σ' of all its rotors, at gimbal angle zero. A gimbal's own
+    torque is not torque about the line at once: 0, it takes nothing over from the others.
+    """
+    shares = np.zeros(len(plant.units))
+    if len(plant.units) < 2:
+        return shares
+    for i, unit in enumerate(plant.unit_parameters):
+        if unit[KIND] == WHEEL:
+            shares[i] = unit[COUPLING] / unit[OWN_INERTIA]
+        elif unit[KIND] == GIMBAL_SERVO:
+            shares[i] = unit[COUNT] * unit[MOMENTUM] * unit[E_GXS0]
+    return shares
+
+
+def start_state(plant: Plant, happening: Happening) -> Array:
+    """Return the kernel's state at the start, (2 + 2 units,); what is stored is split by momentum capacity.
+
+    Wheel: q = C Ω + C²/O θ̇ with C = α(I + sNJ_r), O = I + N²J_r, so that q is the stored value with the body moving.
+    Gimballed: q = n H (σ(γ) - σ(0)), solved for γ, at most to its largest q.
+    """
+    X = np.zeros(2 + 2 * len(plant.units))
+    X[0] = plant.body_parameters[BALANCED] + happening.lean
+    X[1] = 0.0 if happening.events.release > 0.0 else happening.lean_rate
+    capacity = sum(unit.momentum_capacity for unit in plant.units)
+    for i, (unit, row) in enumerate(zip(plant.units, plant.unit_parameters, strict=True)):
+        part = happening.stored * unit.momentum_capacity / capacity if capacity > 0.0 else 0.0
+        if row[KIND] == WHEEL and row[COUPLING] != 0.0:
+            X[2 + 2 * i] = part / row[COUPLING] - row[COUPLING] / row[OWN_INERTIA] * happening.lean_rate
+        elif row[KIND] != WHEEL and part != 0.0:
+            X[2 + 2 * i] = _gimbal_angle(part / (row[COUNT] * row[MOMENTUM]), row)
+    return X
+
+
+def empty_output(plant: Plant, samples: int, record: bool) -> Output:
+    """Return the arrays one trial fills."""
+    units = len(plant.units)
+    return Output(np.zeros((samples + 1, 2)),
+                  np.zeros((samples + 1 if record else 0, outcome.TRACE_SIZE + 2 * units)),
+                  np.zeros(outcome.METRIC_SIZE), np.full((units + 1, outcome.LIMITS, 2), math.inf))
+
+
+def _gimbal_angle(share: float, row: Array) -> float:
+    """Return γ with E_S0 (cos γ - 1) + E_GXS0 sin γ = share, the branch through zero; in a pair E_S0 cancels."""
+    along = 0.0 if row[COUNT] > 1.5 else row[E_S0]
+    size, lead = math.hypot(along, row[E_GXS0]), math.atan2(along, row[E_GXS0])
+    ratio = min(max((share + along) / size, -1.0), 1.0)
+    return math.asin(ratio) - lead if row[E_GXS0] > 0.0 else math.pi - math.asin(ratio) - lead
+
+
+def _flat(values: Array) -> Array:
+    """Return a contiguous float copy."""
+    return np.array(values, dtype=np.float64, order="C")
