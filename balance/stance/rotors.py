@@ -90,8 +90,9 @@ def stabiliser_bodies(name: str, unit_: Stabiliser, motors: Mapping[str, Motor] 
     rotor = rotor_mass(unit_.rotor)
     at = np.array(unit_.at)
     if isinstance(unit_, ReactionWheel):
-        spin = wheel_drive(unit_, motors).locked
-        return [Body(name, rotor.mass, at, axial(spin, rotor.transverse, unit(unit_.axis)))]
+        drive = wheel_drive(unit_, motors)
+        across = rotor.transverse + drive.motor / 2.0        # the motor's rotor as a thin disc: a tensor a body can have
+        return [Body(name, rotor.mass, at, axial(drive.locked, across, unit(unit_.axis)))]
     s_T, g_T, R = faced_axes(unit_, e_T)
     I_own = axial(rotor.spin, rotor.transverse, s_T) + rotated(frame_tensor(unit_), R)
     mass = rotor.mass + unit_.frame_mass
