@@ -11,6 +11,7 @@ from balance.design.law import Law
 from balance.plant.record import Plant
 
 Array = NDArray[np.float64]
+Complex = NDArray[np.complex128]
 
 
 @dataclass(frozen=True)
@@ -45,7 +46,7 @@ class Response:
     """Frequency response of the loop broken at the physical torque, for drawing."""
 
     frequency: Array          # (n,) rad/s, up to the Nyquist frequency
-    loop: Array               # (n,) complex128 L(e^{jωT}), negative feedback (1 + L)
+    loop: Complex             # (n,) L(e^{jωT}), negative feedback (1 + L)
 
 
 @dataclass(frozen=True)
@@ -62,7 +63,7 @@ class Ideal:
     """The continuous design without sampling or delay, reported beside the real one."""
 
     K: Array
-    poles: Array              # complex
+    poles: Complex
     margins: Margins
 
 
@@ -72,8 +73,8 @@ class Design:
 
     plant: Plant
     law: Law
-    poles: Array              # complex, discrete closed loop
-    equivalent: Array         # complex, ln(z)/T in rad/s
+    poles: Complex            # discrete closed loop
+    equivalent: Complex       # ln(z)/T in rad/s
     margins: Margins
     limits: LoopLimits
     ideal: Ideal | None

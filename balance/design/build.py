@@ -1,0 +1,77 @@
+"""One stance's design: the law, its poles and margins, the ideal beside it, and what cannot be beaten."""
+
+from __future__ import annotations
+
+import numpy as np
+from numpy.typing import NDArray
+
+from balance.design.ideal import ideal_lqr
+from balance.design.law import Law
+from balance.design.limits import loop_limits
+from balance.design.loop import SampledPlant, actuator_break, close, sample_plant
+from balance.design.lqr import command_unit, lqr_law
+from balance.design.margins import UNSTABLE, margins_of
+from balance.design.records import Design, Response
+from balance.design.sampled_margins import at_actuator
+from balance.goal.goal import Goal, LqrControl, PidControl
+from balance.plant.record import Plant
+
+Array = NDArray[np.float64]
+
+POINTS = 1200
+"""Frequencies of the recorded response: enough for a smooth Nyquist curve."""
+
+SQUARE = "cannot act about this line: every stabiliser is square to it"
+
+
+def design_stance(plant: Plant, goal: Goal) -> Design:
+    """Return the design; a machine that cannot be balanced is answered in `refused`, never by an exception."""
+    T = 1.0 / goal.loop.rate
+    sampled = sample_plant(plant, T, goal.loop.latency)
+    if not plant.acts:
+        return refusal(plant, sampled, SQUARE)
+    found = _law(plant, sampled, goal)
+    if isinstance(found, str):
+        return refusal(plant, sampled, found)
+    poles = np.linalg.eigvals(close(sampled, found)).astype(np.complex128)
+    ideal = ideal_lqr(plant, goal.control) if isinstance(goal.control, LqrControl) else None
+    return Design(plant, found, poles, equivalent(poles, T), margins_of(at_actuator(sampled, found)),
+                  loop_limits(plant, T, goal.loop.latency), ideal, response(sampled, found), "")
+
+
+def _law(plant: Plant, sampled: SampledPlant, goal: Goal) -> Law | str:
+    """Return the law or why there is none."""
+    if isinstance(goal.control, PidControl):
+        return "PID: not built yet"
+    limits = loop_limits(plant, sampled.sample_time, sampled.latency)
+    try:
+        return lqr_law(plant, sampled, goal.control)
+    except np.linalg.LinAlgError:
+        return (f"no gains stabilise this loop: the unstable pole times the delay is {limits.pole_times_delay:.2f}; "
+                "above about 0.3 little is left, above about 1.4 nothing")
+
+
+def equivalent(poles: NDArray[np.complex128], sample_time: float) -> NDArray[np.complex128]:
+    """Return ln(z)/T in rad/s; poles at z = 0 (pure delay) become −inf."""
+    with np.errstate(divide="ignore"):
+        return (np.log(poles) / sample_time).astype(np.complex128)
+
+
+def response(sampled: SampledPlant, law: Law) -> Response:
+    """Return the frequency response at the physical torque for drawing, up to Nyquist."""
+    view = at_actuator(sampled, law)
+    w = np.geomspace(max(view.lowest, 1e-4 * view.highest), view.highest, POINTS)
+    return Response(w, actuator_break(sampled, law).response(w))
+
+
+def refusal(plant: Plant, sampled: SampledPlant, why: str) -> Design:
+    """Return a design without a law: the open loop's poles, no margins, and the reason."""
+    n = len(plant.model.states)
+    none = np.zeros(0)
+    law = Law("none", sampled.sample_time, sampled.latency, plant.model.states, (), np.zeros((0, 0)),
+              np.zeros((0, n)), none, none, np.zeros(n), 0.0, np.zeros(len(plant.units)), np.zeros_like(plant.levelling),
+              np.array([unit.input_limit for unit in plant.units]), command_unit(plant), none, (), {})
+    poles = np.linalg.eigvals(sampled.A).astype(np.complex128)
+    return Design(plant, law, poles, equivalent(poles, sampled.sample_time), UNSTABLE,
+                  loop_limits(plant, sampled.sample_time, sampled.latency), None,
+                  Response(none, none.astype(np.complex128)), why)

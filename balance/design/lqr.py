@@ -1,0 +1,89 @@
+"""Discrete LQR that knows hold, latency and actuator lag: K from the Riccati equation of the sampled, delayed plant.
+
+Cost Σ(xᵀQx + vᵀRv) over samples, Q and R as given; lag and past-command states weigh nothing, but are fed back.
+Fails (a refusal, not an exception) where nothing can be stabilised.  Size: Riccati of order N ≈ 5 to 12, milliseconds.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+from numpy.typing import NDArray
+from scipy.linalg import solve_discrete_are
+
+from balance.design.law import Law
+from balance.design.loop import SampledPlant
+from balance.goal.goal import Allow, LqrControl
+from balance.plant.record import Plant
+
+Array = NDArray[np.float64]
+
+
+def lqr_gain(A: Array, B: Array, Q: Array, R: Array) -> tuple[Array, Array]:
+    """Return K (m, n) and the Riccati solution P (n, n); raises numpy.linalg.LinAlgError where there is none.
+
+    K = (R + BᵀPB)⁻¹BᵀPA (Anderson & Moore, "Optimal Control").
+    """
+    P = solve_discrete_are(A, B, Q, R)
+    return np.linalg.solve(R + B.T @ P @ B, B.T @ P @ A), P
+
+
+def riccati_residual(A: Array, B: Array, Q: Array, R: Array, P: Array) -> float:
+    """Return the largest entry of AᵀPA − P − AᵀPB(R + BᵀPB)⁻¹BᵀPA + Q relative to P's largest."""
+    K = np.linalg.solve(R + B.T @ P @ B, B.T @ P @ A)
+    return float(np.abs(A.T @ P @ A - P - A.T @ P @ B @ K + Q).max() / np.abs(P).max())
+
+
+def weights(plant: Plant, control: LqrControl) -> tuple[Array, float]:
+    """Return Q (n, n) on the model's states and R on the line command v.
+
+    From `allow` (Bryson's rule: 1/largest², momentum through the stored-momentum row) or from explicit diagonals, where
+    the input's weight counts for each unit's own input.
+    """
+    n = len(plant.model.states)
+    if control.weights is not None:
+        return np.diag(control.weights.states), control.weights.input * float(plant.allotment @ plant.allotment)
+    allow = control.allow
+    assert allow is not None
+    Q = np.zeros((n, n))
+    Q[0, 0], Q[1, 1] = allow.lean**-2, allow.lean_rate**-2
+    Q += np.outer(plant.momentum_row, plant.momentum_row) / allow.momentum**2
+    return Q, _input_weight(plant, allow, Q)
+
+
+def _input_weight(plant: Plant, allow: Allow, Q: Array) -> float:
+    """Return R on v; a torque-driven gimbal's allowed line torque weighs its gimbal rate in Q (changed in place)."""
+    torque = allow.torque if allow.torque is not None else plant.torque_limit
+    if len(plant.units) > 1:
+        return torque**-2
+    unit = plant.units[0]
+    if unit.kind == "reaction wheel":
+        return (torque * unit.input_limit / unit.torque_limit) ** -2
+    rate = allow.gimbal_rate if allow.gimbal_rate is not None else torque / abs(plant.momentum_row[2])
+    if unit.drive == "rate":
+        return rate**-2
+    Q[3, 3] += rate**-2
+    return unit.input_limit**-2
+
+
+def lqr_law(plant: Plant, sampled: SampledPlant, control: LqrControl) -> Law:
+    """Return the LQR law; raises numpy.linalg.LinAlgError where the loop cannot be stabilised."""
+    n, N = len(plant.model.states), len(sampled.states)
+    Q = np.zeros((N, N))
+    Q[:n, :n], R = weights(plant, control)
+    K = lqr_gain(sampled.A, sampled.B[:, None], Q, np.array([[R]]))[0][0]                # (N,)
+    return Law(
+        kind="lqr", sample_time=sampled.sample_time, latency=sampled.latency, measurements=plant.model.states,
+        memory=sampled.states[n:], A=sampled.A[n:, n:], B=sampled.A[n:, :n], E=sampled.B[n:], C=-K[n:], D=-K[:n],
+        output_limit=output_limit(plant), allotment=plant.allotment, levelling=plant.levelling,
+        input_limits=np.array([unit.input_limit for unit in plant.units]), unit=command_unit(plant), K=K,
+        states=sampled.states, gains={})
+
+
+def output_limit(plant: Plant) -> float:
+    """Return the limit of the line command: one unit's own input limit, or the torque of all units about the line."""
+    return float(plant.units[0].input_limit if len(plant.units) == 1 else plant.torque_limit)
+
+
+def command_unit(plant: Plant) -> str:
+    """Return the SI unit of the line command."""
+    return "rad/s" if len(plant.units) == 1 and plant.units[0].drive == "rate" else "N*m"
