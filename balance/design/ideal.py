@@ -22,7 +22,7 @@ Complex = NDArray[np.complex128]
 def continuous_lqr(A: Array, B: Array, Q: Array, R: Array) -> Array:
     """Return K (m, n) of ∫(xᵀQx + uᵀRu)dt; raises numpy.linalg.LinAlgError where there is no solution."""
     P = solve_continuous_are(A, B, Q, R)
-    return np.linalg.solve(R, B.T @ P)
+    return np.asarray(np.linalg.solve(R, B.T @ P), dtype=np.float64)
 
 
 def ideal_lqr(plant: Plant, control: LqrControl) -> Ideal:

@@ -23,8 +23,8 @@ def lqr_gain(A: Array, B: Array, Q: Array, R: Array) -> tuple[Array, Array]:
 
     K = (R + BᵀPB)⁻¹BᵀPA (Anderson & Moore, "Optimal Control").
     """
-    P = solve_discrete_are(A, B, Q, R)
-    return np.linalg.solve(R + B.T @ P @ B, B.T @ P @ A), P
+    P = np.asarray(solve_discrete_are(A, B, Q, R), dtype=np.float64)
+    return np.asarray(np.linalg.solve(R + B.T @ P @ B, B.T @ P @ A), dtype=np.float64), P
 
 
 def riccati_residual(A: Array, B: Array, Q: Array, R: Array, P: Array) -> float:

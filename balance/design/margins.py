@@ -22,7 +22,8 @@ Complex = NDArray[np.complex128]
 GRID = 3000
 """Points of the base grid, evenly spaced in log frequency."""
 
-UNSTABLE = Margins(False, *([float("nan")] * 10), crossings=())
+_NAN = float("nan")
+UNSTABLE = Margins(False, _NAN, _NAN, _NAN, _NAN, _NAN, _NAN, _NAN, _NAN, _NAN, _NAN, ())
 
 
 @dataclass(frozen=True)

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -16,13 +18,16 @@ Complex = NDArray[np.complex128]
 
 def at_actuator(sampled: SampledPlant, law: Law) -> BrokenView:
     """Return the loop broken at the physical torque, the law's memory closed; added delay is re-discretised."""
-    loop = actuator_break(sampled, law)
+    return view(actuator_break(sampled, law), lambda d: actuator_break(sampled.with_extra_delay(d), law))
+
+
+def view(loop: BrokenLoop, late: Callable[[float], BrokenLoop]) -> BrokenView:
+    """Return any sampled broken loop for `margins_of`; `late` gives the same loop with an added input delay (s)."""
+    form = triangular(loop.A, loop.b, loop.c)
 
     def growth(factor: float, delay: float) -> float:
-        met = sampled.with_extra_delay(delay) if delay else sampled
-        return float(np.abs(np.linalg.eigvals(actuator_break(met, law).closed(factor))).max()) - 1.0
-
-    form = triangular(loop.A, loop.b, loop.c)
+        met = late(delay) if delay else loop
+        return float(np.abs(np.linalg.eigvals(met.closed(factor))).max()) - 1.0
 
     def response(frequencies: Array) -> Complex:
         return respond(form, np.exp(1j * frequencies * loop.sample_time))[:, 0]
