@@ -28,9 +28,9 @@ def lqr_gain(A: Array, B: Array, Q: Array, R: Array) -> tuple[Array, Array]:
 
 
 def riccati_residual(A: Array, B: Array, Q: Array, R: Array, P: Array) -> float:
-    """Return the largest entry of AᵀPA − P − AᵀPB(R + BᵀPB)⁻¹BᵀPA + Q relative to P's largest."""
+    """Return the largest entry of AᵀPA − P − AᵀPB(R + BᵀPB)⁻¹BᵀPA + Q relative to Q's largest."""
     K = np.linalg.solve(R + B.T @ P @ B, B.T @ P @ A)
-    return float(np.abs(A.T @ P @ A - P - A.T @ P @ B @ K + Q).max() / np.abs(P).max())
+    return float(np.abs(A.T @ P @ A - P - A.T @ P @ B @ K + Q).max() / np.abs(Q).max())
 
 
 def weights(plant: Plant, control: LqrControl) -> tuple[Array, float]:
