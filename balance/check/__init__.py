@@ -1,0 +1,1 @@
+"""Verdicts: a number, its limit, passed or not, and why."""

@@ -7,6 +7,8 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
+from balance.kernel import outcome
+
 Array = NDArray[np.float64]
 Places = NDArray[np.int64]
 
@@ -51,26 +53,51 @@ class Output(NamedTuple):
 
 
 class Work(NamedTuple):
-    """Working arrays of one trial."""
+    """Working arrays of one trial. Few, since every array in a bundle costs time at each compilation and call."""
 
+    numbers: Array        # (NUMBERS, width) one purpose per row, see below
+    flags: Places         # (FLAGS, width)
     body: Array           # copy: an offset shift changes it
     live: Array           # copy of the units: a gimbal on its stop changes it
-    held: Places          # (u,) 1, -1: on its upper, lower stop
-    met: Places           # (u,) limit met in this sub-step
-    rate: Array           # (n,) rates at the stage at hand
-    total: Array          # (n,) the step's sum
-    probe: Array          # (n,) the stage's state
-    kept: Array           # (n,)
-    inputs: Array         # (u,) inputs of the equations of motion
-    slopes: Array         # (u,) rates of the motor currents
-    asked: Array          # (u,) what the law asks now
-    commands: Array       # (u,) the same, standing still for a gimbal on its stop
-    active: Array         # (s, TORQUE_SIZE) torques that act in this piece
-    at: Places            # next jump, next break, number of active torques, law limited in this period
-    x: Array              # (k,) the law's memory
-    spare: Array          # (k,)
-    y: Array              # (m,)
     queue: Array          # (whole periods of latency + 2, u) inputs computed, newest first
-    line: Array           # the law's limited line command, time reached
-    spare_metrics: Array  # for steps that only look ahead
-    spare_first: Array
+    active: Array         # (s, TORQUE_SIZE) torques that act in this piece
+    spare_first: Array    # like Output.first, for steps that only look ahead
+
+
+# rows of Work.numbers
+RATE = 0          # rates of the states at the stage at hand
+TOTAL = 1         # a step's sum
+PROBE = 2         # a stage's state
+KEPT = 3          # a state to come back to
+INPUTS = 4        # inputs of the equations of motion
+SLOPES = 5        # rates of the motor currents
+ASKED = 6         # what the law asks of each unit now
+COMMANDS = 7      # the same, standing still for a gimbal on its stop
+MEMORY = 8        # of the law
+SPARE = 9         # its next memory
+MEASURED = 10
+LINE = 11         # first: the law's limited line command; second: time reached
+SPARE_METRICS = 12
+NUMBERS = 13
+
+# rows of Work.flags
+HELD = 0          # 1, -1: the unit's gimbal is on its upper, lower stop
+MET = 1           # limit met in this sub-step
+AT = 2            # the four places below
+FLAGS = 3
+
+# places in Work.flags[AT]
+NEXT_JUMP = 0
+NEXT_BREAK = 1
+TORQUES_ON = 2    # how many rows of Work.active count
+CLIPPED = 3       # 1: the law's own limits were met at this sample
+
+
+def fresh_work(body: Array, units: Array, law: LawArrays, events: Events) -> Work:
+    """Return working arrays for one trial."""
+    n, count = 2 + 2 * units.shape[0], units.shape[0]
+    width = max(n, law.A.shape[0], law.D.size, outcome.METRIC_SIZE)
+    whole = int(np.floor(law.latency / law.sample_time + 1e-9))
+    return Work(np.zeros((NUMBERS, width)), np.zeros((FLAGS, width), np.int64), body.copy(), units.copy(),
+                np.zeros((whole + 2, count)), np.zeros((events.torques.shape[0], outcome.TORQUE_SIZE)),
+                np.full((count + 1, outcome.LIMITS, 2), np.inf))

@@ -43,7 +43,7 @@ SLACK = 1e-9
 @njit(cache=True, error_model="numpy")
 def limiter_gain(units: Array, i: int) -> float:
     """Return the speed limiter's gain in 1/s: a quarter of the current loop's bandwidth, at most LIMITER_GAIN."""
-    return min(0.25 * units[i, CURRENT_LAG], LIMITER_GAIN)
+    return float(min(0.25 * units[i, CURRENT_LAG], LIMITER_GAIN))
 
 
 @njit(cache=True, error_model="numpy")
@@ -152,8 +152,8 @@ def torque_available(units: Array, i: int, first: float, share: float, sign: flo
         cap = min(units[i, TORQUE_LIMIT], max(units[i, OWN_INERTIA] * limiter_gain(units, i) * room, 0.0))
         low, high = current_window(units, i, first)
         current = high if way * units[i, TORQUE_PER_AMP] > 0.0 else -low
-        return abs(share) * max(min(cap, current * abs(units[i, TORQUE_PER_AMP])), 0.0)
+        return float(abs(share) * max(min(cap, current * abs(units[i, TORQUE_PER_AMP])), 0.0))
     way = 1.0 if sign * share >= 0.0 else -1.0
     if way * first >= units[i, ANGLE_STOP]:
         return 0.0
-    return abs(share) * units[i, RATE_LIMIT]
+    return float(abs(share) * units[i, RATE_LIMIT])

@@ -61,7 +61,8 @@ def line_momentum(X: Array, units: Array) -> float:
 def momentum_slope(angle: float, units: Array, i: int) -> float:
     """Return dq/dγ in N·m·s/rad of all rotors of a gimballed unit; in a mirrored pair the e·s₀ parts cancel."""
     lead = 0.0 if units[i, COUNT] > 1.5 else units[i, E_S0]
-    return units[i, COUNT] * units[i, MOMENTUM] * (units[i, E_GXS0] * np.cos(angle) - lead * np.sin(angle))
+    slope = units[i, E_GXS0] * np.cos(angle) - lead * np.sin(angle)
+    return float(units[i, COUNT] * units[i, MOMENTUM] * slope)
 
 
 @njit(cache=True, error_model="numpy")
@@ -116,7 +117,7 @@ def watch(t: float, h: float, X: Array, dX: Array, body: Array, units: Array, me
     else:
         metrics[outcome.FRICTION] = max(metrics[outcome.FRICTION], abs(sideways) / normal)
     limited = False
-    for i in range(met.size):
+    for i in range(units.shape[0]):
         if met[i] != outcome.NO_LIMIT:
             limited = True
             note(t, stored, i, met[i], first)

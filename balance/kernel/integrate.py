@@ -118,7 +118,7 @@ def march(X: Array, begin: float, h: float, steps: int, commands: Array, active:
 @njit(cache=True, error_model="numpy")
 def settle_currents(X: Array, inputs: Array, live: Array, met: Flags, held: Flags) -> None:
     """Show the current of wheels without a current lag (no state of its own), and that a held gimbal is limited."""
-    for i in range(held.size):
+    for i in range(live.shape[0]):
         if live[i, KIND] == WHEEL and live[i, CURRENT_LAG] == np.inf:
             X[3 + 2 * i] = inputs[i] / live[i, TORQUE_PER_AMP]
         if held[i] != 0:
@@ -128,7 +128,7 @@ def settle_currents(X: Array, inputs: Array, live: Array, met: Flags, held: Flag
 @njit(cache=True, error_model="numpy")
 def beyond_stop(X: Array, units: Array, held: Flags) -> int:
     """Return the first gimballed unit that is past its stop and not held there, or -1."""
-    for i in range(held.size):
+    for i in range(units.shape[0]):
         if units[i, KIND] != WHEEL and held[i] == 0 and abs(X[2 + 2 * i]) > units[i, ANGLE_STOP]:
             return i
     return -1
@@ -154,7 +154,7 @@ def jump(column: int, X: Array, body: Array, live: Array, inputs: Array, rest: A
     Accelerations are affine in torques, so the difference of two of them is a column of M⁻¹,
     geared rotors included.
     """
-    for i in range(inputs.size):
+    for i in range(live.shape[0]):
         inputs[i] = 0.0
     derivative(X, inputs, 0.0, body, live, rest)
     about = 1.0

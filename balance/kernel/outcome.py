@@ -1,7 +1,7 @@
 """Where the trial loop puts what it measured: places in its flat arrays, and its small integers.
 
 `metrics` (METRIC_SIZE,), `first` (units + 1, LIMITS, 2): time and stored line momentum when unit i first met a limit,
-inf where it never did; the last row belongs to the law and the body. `trace` rows: TRACE_SIZE columns, then the units' states.
+inf where it never did; the last row belongs to the law. `trace` rows: TRACE_SIZE columns, then the units' states.
 """
 
 # how a trial ended

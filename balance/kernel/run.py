@@ -12,11 +12,29 @@ from numba import njit
 from numpy.typing import NDArray
 
 from balance.kernel import outcome
-from balance.kernel.bundles import Events, LawArrays, Output, Work
+from balance.kernel.bundles import (
+    ASKED,
+    AT,
+    CLIPPED,
+    INPUTS,
+    LINE,
+    MEASURED,
+    MEMORY,
+    NEXT_BREAK,
+    NEXT_JUMP,
+    PROBE,
+    RATE,
+    SPARE,
+    TORQUES_ON,
+    Events,
+    LawArrays,
+    Output,
+    Work,
+)
 from balance.kernel.gauge import available, line_momentum, line_torque, note
-from balance.kernel.integrate import disturbance_at, jump, rates
+from balance.kernel.integrate import jump
 from balance.kernel.layout import BALANCED, GRAVITY, KIND, MASS, OFFSET, STIFF_COS, WHEEL
-from balance.kernel.stops import release_stops, run_piece
+from balance.kernel.stops import rates_now, release_stops, run_piece
 from balance.kernel.tick import law_tick, measure, share_out
 
 Array = NDArray[np.float64]
@@ -26,18 +44,17 @@ TINY = 1e-9
 
 
 @njit(cache=True, error_model="numpy", nogil=True)
-def run_trial(X: Array, body: Array, units: Array, law: LawArrays, events: Events, output: Output) -> int:
+def run_trial(X: Array, units: Array, law: LawArrays, events: Events, work: Work, output: Output) -> int:
     """Run one trial from X (changed to the end state), fill `output`, return how it ended (`outcome`).
 
-    X: (2 + 2 units,), body and units: `layout`; they are not changed. The bundles are described in `bundles`.
+    X: (2 + 2 units,), units: `layout`, not changed; `work` fresh from `bundles.fresh_work`, which holds the body.
     """
-    work = make_work(body, units, law, events)
-    end, taken = outcome.RAN, 0
+    end, taken, until = outcome.RAN, 0, 0.0
     for sample in range(output.history.shape[0] - 1):
         start = sample * law.sample_time
         until = min(start + law.sample_time, events.lasts)
-        tick(X, start, sample, units, law, events, work, output)
-        end = run_period(X, start, until, sample, units, law, events, work, output)
+        tick(X, start, sample, events.release, units, law, work, output)
+        end = run_period(X, start, until, sample, law.sample_time, law.latency, units, events, work, output)
         taken += 1
         if end != outcome.RAN:
             break
@@ -46,116 +63,110 @@ def run_trial(X: Array, body: Array, units: Array, law: LawArrays, events: Event
 
 
 @njit(cache=True, error_model="numpy")
-def make_work(body: Array, units: Array, law: LawArrays, events: Events) -> Work:
-    """Return fresh working arrays of one trial."""
-    n, count, depth = 2 + 2 * units.shape[0], units.shape[0], law.A.shape[0]
-    whole = int(np.floor(law.latency / law.sample_time + TINY))
-    return Work(body.copy(), units.copy(), np.zeros(count, np.int64), np.zeros(count, np.int64), np.zeros(n),
-                np.zeros(n), np.zeros(n), np.zeros(n), np.zeros(count), np.zeros(count), np.zeros(count),
-                np.zeros(count), np.zeros((events.torques.shape[0], outcome.TORQUE_SIZE)), np.zeros(4, np.int64),
-                np.zeros(depth), np.zeros(depth), np.zeros(law.D.size), np.zeros((whole + 2, count)), np.zeros(2),
-                np.zeros(outcome.METRIC_SIZE), np.zeros((count + 1, outcome.LIMITS, 2)))
-
-
-@njit(cache=True, error_model="numpy")
-def tick(X: Array, start: float, sample: int, units: Array, law: LawArrays, events: Events, work: Work,
+def tick(X: Array, start: float, sample: int, release: float, units: Array, law: LawArrays, work: Work,
          output: Output) -> None:
     """Take a sample and compute the command that acts `latency` later; until the release it is held at zero."""
-    for i in range(work.queue.shape[0] - 1, 0, -1):
-        work.queue[i] = work.queue[i - 1]
-    measure(X, work.body, law.places, work.y)
+    numbers, queue = work.numbers, work.queue
+    for i in range(queue.shape[0] - 1, 0, -1):
+        for j in range(queue.shape[1]):
+            queue[i, j] = queue[i - 1, j]
+    measure(X, work.body, law.places, numbers[MEASURED])
     stored = line_momentum(X, units)
     output.history[sample, 0] = X[0] - work.body[BALANCED]
     output.history[sample, 1] = stored
-    if start < events.release - TINY * law.sample_time:
-        law_tick(work.x, work.y, law.A, law.B, law.E, law.C, law.D, 0.0, work.spare)
-        work.queue[0] = 0.0
-        work.line[0] = 0.0
-        return
-    v, work.line[0] = law_tick(work.x, work.y, law.A, law.B, law.E, law.C, law.D, law.output_limit,
-                               work.spare)
-    limited = share_out(work.line[0], work.y, law.allotment, law.levelling, law.input_limits, law.line_share,
-                        work.queue[0])
-    if abs(v) > law.output_limit * (1.0 + 1e-9):
-        limited = True
-    work.at[3] = 1 if limited else 0
-    if limited:
+    free = start >= release - TINY * law.sample_time
+    most = law.output_limit if free else 0.0
+    v, limited = law_tick(numbers[MEMORY], numbers[MEASURED], law.A, law.B, law.E, law.C, law.D, most,
+                          numbers[SPARE])
+    short = share_out(limited, numbers[MEASURED], law.allotment, law.levelling, law.input_limits, law.line_share,
+                      queue[0])
+    if not free:
+        for j in range(queue.shape[1]):
+            queue[0, j] = 0.0
+    numbers[LINE, 0] = limited
+    work.flags[AT, CLIPPED] = 0
+    if free and (short or abs(v) > most * (1.0 + 1e-9)):
+        work.flags[AT, CLIPPED] = 1
         note(start, stored, units.shape[0], outcome.OUTPUT, output.first)
 
 
 @njit(cache=True, error_model="numpy")
-def run_period(X: Array, start: float, stop: float, sample: int, units: Array, law: LawArrays, events: Events,
-               work: Work, output: Output) -> int:
+def run_period(X: Array, start: float, stop: float, sample: int, sample_time: float, latency: float, units: Array,
+               events: Events, work: Work, output: Output) -> int:
     """Integrate from one sample to the next, piece by piece between sudden changes; return how it ended."""
-    tiny = TINY * law.sample_time
+    tiny = TINY * sample_time
     whole = work.queue.shape[0] - 2
-    part = law.latency - whole * law.sample_time
+    part = latency - whole * sample_time
     saturated = output.metrics[outcome.SATURATED]
     t, end = start, outcome.RAN
     while t < stop - tiny and end == outcome.RAN:
         late = t >= start + part - tiny
         for i in range(units.shape[0]):
-            work.asked[i] = work.queue[whole if late else whole + 1, i]
+            work.numbers[ASKED, i] = work.queue[whole if late else whole + 1, i]
         change(X, t, tiny, events, work)
         until = stop if late else min(stop, start + part)
-        if work.at[1] < events.breaks.size:
-            until = min(until, events.breaks[work.at[1]])
+        if work.flags[AT, NEXT_BREAK] < events.breaks.size:
+            until = min(until, events.breaks[work.flags[AT, NEXT_BREAK]])
         if t == start and output.trace.shape[0] > 0:
-            write(X, t, sample, units, work, output)
+            write(X, t, units, work, output.trace[sample])
         if t >= events.release - tiny:
             end, t = run_piece(X, t, until, events.longest, units, work, output)
         if end == outcome.RAN:
             t = until
-    if work.at[3] == 1:
+    if work.flags[AT, CLIPPED] == 1:
         output.metrics[outcome.SATURATED] = saturated + t - start
-    work.line[1] = t
+    work.numbers[LINE, 1] = t
     return end
 
 
 @njit(cache=True, error_model="numpy")
 def change(X: Array, t: float, tiny: float, events: Events, work: Work) -> None:
-    """Apply what changes suddenly at t: release, kicks and shifts due, and which torques act from now on.
-
-    `work.at`: next jump, next break, number of active torques.
-    """
+    """Apply what changes suddenly at t: release, kicks and shifts due, and which torques act from now on."""
+    at = work.flags[AT]
     if events.release > 0.0 and abs(t - events.release) <= tiny:
         X[1] = events.release_rate
-    while work.at[0] < events.jumps.shape[0] and events.jumps[work.at[0], outcome.AT] <= t + tiny:
-        row = events.jumps[work.at[0]]
-        if row[outcome.KICK] != 0.0:
-            jump(np.int64(-1), X, work.body, work.live, work.inputs, work.probe, work.rate)
-            X[1] += row[outcome.KICK] * work.rate[1]
-            for i in range(work.inputs.size):
-                place = 2 + 2 * i if work.live[i, KIND] == WHEEL else 3 + 2 * i
-                X[place] += row[outcome.KICK] * work.rate[place]
-        work.body[OFFSET] += row[outcome.SHIFT]
-        work.body[STIFF_COS] += work.body[MASS] * work.body[GRAVITY] * row[outcome.SHIFT]
-        work.at[0] += 1
-    while work.at[1] < events.breaks.size and events.breaks[work.at[1]] <= t + tiny:
-        work.at[1] += 1
+    while at[NEXT_JUMP] < events.jumps.shape[0] and events.jumps[at[NEXT_JUMP], outcome.AT] <= t + tiny:
+        kick(X, events.jumps[at[NEXT_JUMP], outcome.KICK], work)
+        shift = events.jumps[at[NEXT_JUMP], outcome.SHIFT]
+        work.body[OFFSET] += shift
+        work.body[STIFF_COS] += work.body[MASS] * work.body[GRAVITY] * shift
+        at[NEXT_JUMP] += 1
+    while at[NEXT_BREAK] < events.breaks.size and events.breaks[at[NEXT_BREAK]] <= t + tiny:
+        at[NEXT_BREAK] += 1
     on = 0
     for i in range(events.torques.shape[0]):
         if events.torques[i, outcome.START] <= t + tiny and events.torques[i, outcome.END] > t + tiny:
-            work.active[on] = events.torques[i]
+            for j in range(outcome.TORQUE_SIZE):
+                work.active[on, j] = events.torques[i, j]
             on += 1
-    work.at[2] = on
+    at[TORQUES_ON] = on
 
 
 @njit(cache=True, error_model="numpy")
-def write(X: Array, t: float, row: int, units: Array, work: Work, output: Output) -> None:
-    """Record one sample."""
+def kick(X: Array, impulse: float, work: Work) -> None:
+    """Let an angular impulse about the line in N·m·s act at once: rates jump by M⁻¹·[impulse, 0, …]; 0: nothing."""
+    if impulse == 0.0:
+        return
+    step = work.numbers[RATE]
+    jump(np.int64(-1), X, work.body, work.live, work.numbers[INPUTS], work.numbers[PROBE], step)
+    X[1] += impulse * step[1]
+    for i in range(work.live.shape[0]):
+        place = 2 + 2 * i if work.live[i, KIND] == WHEEL else 3 + 2 * i
+        X[place] += impulse * step[place]
+
+
+@njit(cache=True, error_model="numpy")
+def write(X: Array, t: float, units: Array, work: Work, out: Array) -> None:
+    """Record one sample in the row `out`."""
     release_stops(X, t, units, work)
-    out = output.trace[row]
-    out[outcome.DISTURBANCE] = disturbance_at(t, work.active, work.at[2])
-    rates(X, out[outcome.DISTURBANCE], work.commands, work.body, work.live, work.met, work.inputs, work.slopes,
-          work.rate)
+    out[outcome.DISTURBANCE] = rates_now(X, t, work)
     out[outcome.TIME] = t
     out[outcome.LEAN] = X[0] - work.body[BALANCED]
     out[outcome.LEAN_RATE] = X[1]
-    out[outcome.LINE_TORQUE] = line_torque(X, work.rate, units)
+    out[outcome.LINE_TORQUE] = line_torque(X, work.numbers[RATE], units)
     out[outcome.LINE_TORQUE_LIMIT] = available(X, units, out[outcome.LINE_TORQUE])
     out[outcome.LINE_MOMENTUM] = line_momentum(X, units)
-    out[outcome.COMMAND] = work.line[0]
+    out[outcome.COMMAND] = work.numbers[LINE, 0]
     for i in range(2, X.size):
         out[outcome.TRACE_SIZE + i - 2] = X[i]
 
@@ -163,13 +174,14 @@ def write(X: Array, t: float, row: int, units: Array, work: Work, output: Output
 @njit(cache=True, error_model="numpy")
 def finish(X: Array, sample: int, units: Array, work: Work, output: Output) -> None:
     """Record the end state and the last peaks."""
-    t = work.line[1]
-    output.history[sample, 0] = X[0] - work.body[BALANCED]
-    output.history[sample, 1] = line_momentum(X, units)
+    metrics, lean, stored = output.metrics, X[0] - work.body[BALANCED], line_momentum(X, units)
+    output.history[sample, 0] = lean
+    output.history[sample, 1] = stored
     if output.trace.shape[0] > 0:
-        write(X, t, sample, units, work, output)
-    output.metrics[outcome.PEAK_LEAN] = max(output.metrics[outcome.PEAK_LEAN], abs(output.history[sample, 0]))
-    output.metrics[outcome.END_TIME] = t
-    output.metrics[outcome.END_LEAN] = output.history[sample, 0]
-    output.metrics[outcome.END_MOMENTUM] = output.history[sample, 1]
-    output.metrics[outcome.SAMPLES] = sample + 1
+        write(X, work.numbers[LINE, 1], units, work, output.trace[sample])
+    metrics[outcome.PEAK_LEAN] = max(metrics[outcome.PEAK_LEAN], abs(lean))
+    metrics[outcome.PEAK_MOMENTUM] = max(metrics[outcome.PEAK_MOMENTUM], abs(stored))
+    metrics[outcome.END_TIME] = work.numbers[LINE, 1]
+    metrics[outcome.END_LEAN] = lean
+    metrics[outcome.END_MOMENTUM] = stored
+    metrics[outcome.SAMPLES] = sample + 1

@@ -11,7 +11,23 @@ from numba import njit
 from numpy.typing import NDArray
 
 from balance.kernel import outcome
-from balance.kernel.bundles import Output, Work
+from balance.kernel.bundles import (
+    ASKED,
+    AT,
+    COMMANDS,
+    HELD,
+    INPUTS,
+    KEPT,
+    MET,
+    PROBE,
+    RATE,
+    SLOPES,
+    SPARE_METRICS,
+    TORQUES_ON,
+    TOTAL,
+    Output,
+    Work,
+)
 from balance.kernel.gauge import line_momentum, note
 from balance.kernel.integrate import beyond_stop, disturbance_at, jump, march, rates
 from balance.kernel.layout import ANGLE_STOP, DRIVE_TORQUE, GIMBAL_SERVO, GIMBAL_TORQUE, KIND, RATE_LAG
@@ -32,43 +48,48 @@ def run_piece(X: Array, begin: float, until: float, longest: float, units: Array
         h = (until - t) / steps
         if release_stops(X, t, units, work):
             steps = 1
-        made, end = march(X, t, h, steps, work.commands, work.active, work.at[2], work.body, units, work.live,
-                          work.held, work.met, work.inputs, work.slopes, work.rate, work.total, work.probe,
-                          output.metrics, output.first)
+        made, end = go(X, t, h, steps, units, work, output.metrics, output.first)
         t += made * h
         if made < steps and end == outcome.RAN:
-            t += max(run_to_stop(X, t, h, units, work, output), 1e-6 * h)
+            t += max(run_to_stop(X, t, h, units, work, output.metrics, output.first), 1e-6 * h)
     return end, t
 
 
 @njit(cache=True, error_model="numpy")
-def run_to_stop(X: Array, t: float, h: float, units: Array, work: Work, output: Output) -> float:
+def go(X: Array, t: float, h: float, steps: int, units: Array, work: Work, metrics: Array,
+       first: Array) -> tuple[int, int]:
+    """Take the bundle apart and march: the one place where it is done."""
+    numbers, flags = work.numbers, work.flags
+    return march(X, t, h, steps, numbers[COMMANDS], work.active, flags[AT, TORQUES_ON], work.body, units, work.live,
+                 flags[HELD], flags[MET], numbers[INPUTS], numbers[SLOPES], numbers[RATE], numbers[TOTAL],
+                 numbers[PROBE], metrics, first)
+
+
+@njit(cache=True, error_model="numpy")
+def run_to_stop(X: Array, t: float, h: float, units: Array, work: Work, metrics: Array, first: Array) -> float:
     """Move on from t to where a gimbal meets its stop, within the next h; hold it there; return the time moved.
 
-    The instant is found by bisection on the length of a single step: rare, and good to 1e-12 of the step.
-    Metrics of the trial steps go to spare arrays.
+    The instant is found by bisection on the length of a single step: rare, and good to 1e-12 of the step. Metrics of
+    the trial steps go to spare arrays.
     """
-    hit = beyond_stop(work.total, units, work.held)
-    work.kept[:] = X
+    kept, total, held = work.numbers[KEPT], work.numbers[TOTAL], work.flags[HELD]
+    hit = beyond_stop(total, units, held)
     low, high = 0.0, h
-    while True:
-        last = high - low <= 1e-12 * h
-        reach = low if last else 0.5 * (low + high)
-        metrics = output.metrics if last else work.spare_metrics
-        first = output.first if last else work.spare_first
-        made, _ = march(X, t, reach, np.int64(1), work.commands, work.active, work.at[2], work.body, units,
-                        work.live, work.held, work.met, work.inputs, work.slopes, work.rate, work.total,
-                        work.probe, metrics, first)
-        if last:
-            break
-        X[:] = work.kept
+    for j in range(X.size):
+        kept[j] = X[j]
+    while high - low > 1e-12 * h:
+        middle = 0.5 * (low + high)
+        made, _ = go(X, t, middle, np.int64(1), units, work, work.numbers[SPARE_METRICS], work.spare_first)
         if made == 0:
-            hit = beyond_stop(work.total, units, work.held)
-            high = reach
+            hit = beyond_stop(total, units, held)
+            high = middle
         else:
-            low = reach
+            low = middle
+        for j in range(X.size):
+            X[j] = kept[j]
+    go(X, t, low, np.int64(1), units, work, metrics, first)
     stop_gimbal(hit, X, units, work)
-    note(t + low, line_momentum(X, units), hit, outcome.STOP, output.first)
+    note(t + low, line_momentum(X, units), hit, outcome.STOP, first)
     return low
 
 
@@ -76,25 +97,36 @@ def run_to_stop(X: Array, t: float, h: float, units: Array, work: Work, output: 
 def release_stops(X: Array, t: float, units: Array, work: Work) -> bool:
     """Let go of each held gimbal that the law would turn away from its stop; return whether one is still held.
 
-    Also puts `work.commands`: what the law asks, but standing still for a gimbal on its stop.
+    Also puts the commands: what the law asks, but standing still for a gimbal on its stop.
     """
+    numbers, held = work.numbers, work.flags[HELD]
     any_held = False
     for i in range(units.shape[0]):
-        work.commands[i] = work.asked[i] if work.held[i] == 0 else 0.0
+        numbers[COMMANDS, i] = numbers[ASKED, i] if held[i] == 0 else 0.0
     for i in range(units.shape[0]):
-        if work.held[i] == 0:
+        if held[i] == 0:
             continue
-        work.live[i] = units[i]
-        work.commands[i] = work.asked[i]
-        rates(X, disturbance_at(t, work.active, work.at[2]), work.commands, work.body, work.live, work.met,
-              work.inputs, work.slopes, work.rate)
-        if work.rate[3 + 2 * i] * work.held[i] < 0.0:
-            work.held[i] = 0
+        for j in range(units.shape[1]):
+            work.live[i, j] = units[i, j]
+        numbers[COMMANDS, i] = numbers[ASKED, i]
+        rates_now(X, t, work)
+        if numbers[RATE, 3 + 2 * i] * held[i] < 0.0:
+            held[i] = 0
         else:
             any_held = True
             lock(i, work.live)
-            work.commands[i] = 0.0
+            numbers[COMMANDS, i] = 0.0
     return any_held
+
+
+@njit(cache=True, error_model="numpy")
+def rates_now(X: Array, t: float, work: Work) -> float:
+    """Put the rates at t into their row; return the disturbance in N·m."""
+    numbers = work.numbers
+    torque = disturbance_at(t, work.active, work.flags[AT, TORQUES_ON])
+    rates(X, torque, numbers[COMMANDS], work.body, work.live, work.flags[MET], numbers[INPUTS], numbers[SLOPES],
+          numbers[RATE])
+    return torque
 
 
 @njit(cache=True, error_model="numpy")
@@ -109,16 +141,16 @@ def lock(i: int, live: Array) -> None:
 def stop_gimbal(i: int, X: Array, units: Array, work: Work) -> None:
     """Unit i met its stop: its rate drops to zero, shared with the body by the mass matrix; it is held there.
 
-    The stop's impulse is internal to the machine: the jumps of lean rate and gimbal rate have the ratio
-    in which the gimbal's own torque changes the two accelerations.
+    The stop's impulse is internal to the machine: the jumps of lean rate and gimbal rate have the ratio in which
+    the gimbal's own torque changes the two accelerations.
     """
     side = 1 if X[2 + 2 * i] > 0.0 else -1
-    kind = work.live[i, KIND]
+    kind, change = work.live[i, KIND], work.numbers[RATE]
     work.live[i, KIND] = GIMBAL_TORQUE
-    jump(i, X, work.body, work.live, work.inputs, work.probe, work.rate)
+    jump(i, X, work.body, work.live, work.numbers[INPUTS], work.numbers[PROBE], change)
     work.live[i, KIND] = kind
-    X[1] -= work.rate[1] / work.rate[3 + 2 * i] * X[3 + 2 * i]
+    X[1] -= change[1] / change[3 + 2 * i] * X[3 + 2 * i]
     X[2 + 2 * i] = side * units[i, ANGLE_STOP]
     X[3 + 2 * i] = 0.0
-    work.held[i] = side
+    work.flags[HELD, i] = side
     lock(i, work.live)

@@ -24,19 +24,19 @@ def law_tick(x: Array, y: Array, A: Array, B: Array, E: Array, C: Array, D: Arra
              spare: Array) -> tuple[float, float]:
     """Return (v, v' = clip(v, ±most)) and move the memory x on: v = C x + D y, x⁺ = A x + B y + E v'."""
     v = 0.0
-    for j in range(x.size):
+    for j in range(C.size):
         v += C[j] * x[j]
-    for j in range(y.size):
+    for j in range(D.size):
         v += D[j] * y[j]
     limited = min(max(v, -most), most)
-    for i in range(x.size):
+    for i in range(C.size):
         s = E[i] * limited
-        for j in range(x.size):
+        for j in range(C.size):
             s += A[i, j] * x[j]
-        for j in range(y.size):
+        for j in range(D.size):
             s += B[i, j] * y[j]
         spare[i] = s
-    for i in range(x.size):
+    for i in range(C.size):
         x[i] = spare[i]
     return v, limited
 
@@ -51,22 +51,22 @@ def share_out(v: float, y: Array, allotment: Array, levelling: Array, most: Arra
     """
     missing = 0.0
     limited = False
-    for i in range(out.size):
+    for i in range(allotment.size):
         u = allotment[i] * v
-        for j in range(y.size):
+        for j in range(levelling.shape[1]):
             u -= levelling[i, j] * y[j]
         out[i] = min(max(u, -most[i]), most[i])
         if abs(u) > most[i] * (1.0 + 1e-9):
             limited = True
         missing += line_share[i] * (u - out[i])
-    if missing == 0.0 or out.size < 2:
+    if missing == 0.0 or allotment.size < 2:
         return limited
     room = 0.0
-    for i in range(out.size):
+    for i in range(allotment.size):
         room += _room(missing, line_share[i], most[i], out[i])
     if room > 0.0:
         part = min(abs(missing) / room, 1.0)
-        for i in range(out.size):
+        for i in range(allotment.size):
             given = part * _room(missing, line_share[i], most[i], out[i])
             if given > 0.0:
                 out[i] += (given if missing > 0.0 else -given) / line_share[i]

@@ -1,0 +1,1 @@
+"""Trials run on one stance: what happened, no verdict on requirements."""

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from balance.goal.trials import Swing, Trial
+from balance.goal.trials import LiftOff, OffsetShift, Push, Start, Swing, TorqueStep, Trial
 from balance.kernel import outcome
 from balance.kernel.bundles import Events
 
@@ -76,7 +76,7 @@ def happening(trial: Trial, toward: str, longest: float) -> Happening:
         quiet = max(quiet, trial.lift_off.at)
     if trial.swing:
         torques += swing_rows(trial.swing, _side(trial.swing.toward, toward))
-        quiet = max(quiet, max(row[outcome.END] for row in torques if math.isfinite(row[outcome.END])))
+        quiet = max([quiet] + [row[outcome.END] for row in torques if math.isfinite(row[outcome.END])])
     events = _events(torques, sorted(jumps), release, trial.lasts, longest)
     lasting = sum(row[outcome.LEVEL] for row in torques if math.isinf(row[outcome.END]))
     return Happening(toward, events, *start, quiet, lasting, shift)
@@ -97,7 +97,7 @@ def swing_rows(swing: Swing, side: float) -> list[list[float]]:
     return [[swing.start, swing.start + lasts, 0.0, 0.0, side * peak, 2.0 * math.pi / lasts]]
 
 
-def _parts(trial: Trial) -> list[object]:
+def _parts(trial: Trial) -> list[Push | TorqueStep | Start | OffsetShift | LiftOff | Swing]:
     """Return the parts of a trial that are given, in the order of the record."""
     parts = (trial.push, trial.torque, trial.start, trial.offset, trial.lift_off, trial.swing)
     return [part for part in parts if part is not None]

@@ -10,7 +10,7 @@ from balance.design.records import Design
 from balance.goal.goal import Goal
 from balance.goal.trials import Trial
 from balance.kernel import outcome
-from balance.kernel.bundles import Output
+from balance.kernel.bundles import Output, fresh_work
 from balance.kernel.integrate import longest_step
 from balance.kernel.layout import FELL, GRAVITY, MASS, STIFF_COS
 from balance.kernel.run import run_trial
@@ -46,8 +46,9 @@ def run_one(design: Design, goal: Goal, name: str, trial: Trial, toward: str, re
     output = empty_output(plant, samples, record)
     body = plant.body_parameters.copy()
     body[FELL] = goal.fell
-    ended = run_trial(start_state(plant, event), body, plant.unit_parameters, law_arrays(design.law, plant),
-                      event.events, output)
+    law = law_arrays(design.law, plant)
+    work = fresh_work(body, plant.unit_parameters, law, event.events)
+    ended = run_trial(start_state(plant, event), plant.unit_parameters, law, event.events, work, output)
     return _result(design, name, event, ended, output)
 
 
@@ -76,7 +77,7 @@ def _result(design: Design, name: str, event: Happening, ended: int, output: Out
         peak_lean=float(metrics[outcome.PEAK_LEAN]), settling_time=settled,
         peak_torque=float(metrics[outcome.PEAK_TORQUE]), torque_saturated=float(metrics[outcome.SATURATED]),
         peak_momentum=float(metrics[outcome.PEAK_MOMENTUM]),
-        momentum_used=_share(float(metrics[outcome.PEAK_MOMENTUM]), plant.momentum_capacity),
+        momentum_used=_share(float(metrics[outcome.PEAK_MOMENTUM]), float(plant.momentum_capacity)),
         rms_torque=math.sqrt(metrics[outcome.TORQUE_SQUARED] / metrics[outcome.END_TIME]),
         peak_current=float(metrics[outcome.PEAK_CURRENT]), peak_bus_power=float(metrics[outcome.PEAK_POWER]),
         friction_needed=float(metrics[outcome.FRICTION]), lift_off=bool(metrics[outcome.LIFTED] > 0.0),
@@ -96,7 +97,8 @@ def _trace(output: Output, taken: int) -> Trace | None:
     if output.trace.shape[0] == 0:
         return None
     rows = output.trace[:taken]
-    return Trace(*(rows[:, k].copy() for k in range(outcome.TRACE_SIZE)), units=rows[:, outcome.TRACE_SIZE:].copy())
+    columns = [rows[:, k].copy() for k in range(outcome.TRACE_SIZE)]
+    return Trace(*columns, *[rows[:, outcome.TRACE_SIZE:].copy()])
 
 
 def _share(peak: float, capacity: float) -> float:

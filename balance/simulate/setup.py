@@ -16,13 +16,13 @@ from balance.kernel.layout import (
     COUPLING,
     E_GXS0,
     E_S0,
-    GIMBAL_SERVO,
     KIND,
     MOMENTUM,
     OWN_INERTIA,
     WHEEL,
 )
 from balance.plant.record import Plant
+from balance.plant.sharing import line_torque_per_input
 from balance.simulate.events import Happening
 
 Array = NDArray[np.float64]
@@ -48,20 +48,8 @@ def places(law: Law, plant: Plant) -> NDArray[np.int64]:
 
 
 def line_share(plant: Plant) -> Array:
-    """Return the torque about the line per unit of each unit's input, (units,); zeros for a single unit.
-
-    A wheel: α(I + sNJ_r)/(I + N²J_r). A position servo: H σ' of all its rotors, at gimbal angle zero. A gimbal's own
-    torque is not torque about the line at once: 0, it takes nothing over from the others.
-    """
-    shares = np.zeros(len(plant.units))
-    if len(plant.units) < 2:
-        return shares
-    for i, unit in enumerate(plant.unit_parameters):
-        if unit[KIND] == WHEEL:
-            shares[i] = unit[COUPLING] / unit[OWN_INERTIA]
-        elif unit[KIND] == GIMBAL_SERVO:
-            shares[i] = unit[COUNT] * unit[MOMENTUM] * unit[E_GXS0]
-    return shares
+    """Return the torque about the line per unit of each unit's input, (units,); zeros for a single unit."""
+    return line_torque_per_input(plant.unit_parameters) if len(plant.units) > 1 else np.zeros(1)
 
 
 def start_state(plant: Plant, happening: Happening) -> Array:

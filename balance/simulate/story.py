@@ -75,6 +75,8 @@ def _one(first: Array, entry: tuple[float, int, int], names: Sequence[str], capa
     """Return the words for one limit."""
     when, unit, kind = entry
     whose = f"{names[unit]}: " if unit < len(names) and len(names) > 1 else ""
-    stored = abs(float(first[unit, kind, 1]))
     word = f"{command} limit" if kind == outcome.OUTPUT else WORDS[kind]
-    return f"{whose}{word} reached at {when:.2f} s: {stored:.3g} of {capacity:.3g} N·m·s used"
+    told = f"{whose}{word} reached at {when:.2f} s"
+    if kind in FULL:
+        told += f": {abs(float(first[unit, kind, 1])):.3g} of {capacity:.3g} N·m·s used"
+    return told

@@ -1,0 +1,88 @@
+"""Verdicts on the trials: each outcome, and the worst of each quantity asked for."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable, Sequence
+
+from balance.check.records import Verdict
+from balance.check.rescue import what_it_needs
+from balance.design.records import Design
+from balance.goal.goal import Goal
+from balance.simulate.records import TrialResult
+
+
+def judge_trials(goal: Goal, design: Design, trials: Sequence[TrialResult]) -> list[Verdict]:
+    """Return one verdict per trial and direction of one stance, then the worst case of each requirement on trials."""
+    verdicts = [judge_outcome(goal, design, result) for result in trials]
+    if trials:
+        verdicts += _worst_cases(goal, design, trials)
+    return verdicts
+
+
+def judge_outcome(goal: Goal, design: Design, result: TrialResult) -> Verdict:
+    """Return whether the machine was caught; a touch-down counts only where the trial allows it."""
+    trial = goal.trials[result.name]
+    may_touch = trial.touch_down == "allowed"
+    passed = result.verdict == "recovered" or (may_touch and result.verdict == "touched down")
+    limit = "recovered or touched down" if may_touch else "recovered"
+    reason = result.reason
+    if not passed:
+        more = what_it_needs(design, goal, result.name, trial, result.toward)
+        reason = f"{reason}; {more}" if reason else more
+    return Verdict(f"{result.name} {result.toward}", result.stance, result.verdict, "", limit, "is", passed, reason)
+
+
+def _worst_cases(goal: Goal, design: Design, trials: Sequence[TrialResult]) -> list[Verdict]:
+    """Return the verdicts on the worst trial. Friction is judged against the feet where the file names no limit."""
+    require, plant = goal.require, design.plant
+    friction = require.friction_needed
+    if friction is None and plant.stance.joints:
+        friction = plant.stance.friction
+    capacity = plant.momentum_capacity
+    verdicts: list[Verdict] = []
+    if require.momentum_used is not None:
+        verdicts.append(_worst("momentum_used", trials, lambda r: r.momentum_used, "", require.momentum_used,
+                               lambda r, v, lim: f"{_which(r)} stores {v * capacity:.3g} of {capacity:.3g} N·m·s, "
+                                                 f"{_percent(v / lim - 1.0)} more than asked for"))
+    if require.peak_lean is not None:
+        verdicts.append(_worst("peak_lean", trials, lambda r: r.peak_lean, "rad", require.peak_lean, lambda r, v, lim:
+                               f"{_which(r)} leans {math.degrees(v - lim):.2g}° too far"))
+    if require.settling_time is not None:
+        verdicts.append(_worst("settling_time", trials, lambda r: r.settling_time, "s", require.settling_time,
+                               _too_slow))
+    if friction is not None:
+        verdicts.append(_worst("friction_needed", trials, lambda r: r.friction_needed, "", friction, lambda r, v, lim:
+                               f"{_which(r)} needs {v:.2f} under the feet, {v - lim:.2f} too much: they would slip"))
+    if any(r.lift_off for r in trials):
+        lifted = next(r for r in trials if r.lift_off)
+        verdicts.append(Verdict("feet_on_ground", plant.stance.name, "lifted", "", "on the ground", "is", False,
+                                f"{_which(lifted)}: the feet carried no load at one moment"))
+    return verdicts
+
+
+def _worst(name: str, trials: Sequence[TrialResult], value_of: Callable[[TrialResult], float], unit: str, limit: float,
+           why: Callable[[TrialResult, float, float], str]) -> Verdict:
+    """Return the verdict on the largest value; the reason names the trial, met or not."""
+    worst = max(trials, key=value_of)
+    value = float(value_of(worst))
+    passed = value <= limit
+    return Verdict(name, worst.stance, value, unit, limit, "at most", passed,
+                   f"worst: {_which(worst)}" if passed else why(worst, value, limit))
+
+
+def _too_slow(result: TrialResult, value: float, limit: float) -> str:
+    """Return why the settling time is not met."""
+    if math.isinf(value):
+        return f"{_which(result)} never settles ({result.verdict})"
+    return f"{_which(result)} takes {value - limit:.2g} s too long"
+
+
+def _which(result: TrialResult) -> str:
+    """Return a trial and its direction in words."""
+    return f"{result.name} {result.toward}"
+
+
+def _percent(part: float) -> str:
+    """Return a share as a percentage."""
+    return f"{100.0 * part:.0f} %"
