@@ -27,7 +27,8 @@ class Problem:
 
     def __str__(self) -> str:
         place = f"{self.where}:{self.line}:{self.column}" if self.line else self.where
-        text = f"{place} {self.key}: given {self.given}; allowed: {self.allowed}"
+        named = f"{place} {self.key}" if self.key else place
+        text = f"{named}: given {self.given}; allowed: {self.allowed}"
         return f"{text}. Hint: {self.hint}" if self.hint else text
 
 

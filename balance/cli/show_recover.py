@@ -37,8 +37,17 @@ def trial_table(design: Design, trials: tuple[TrialResult, ...]) -> str:
         ]
         for t in trials
     ]
-    notes = [folded(f"{t.name} {t.toward}: {t.reason}") for t in trials if t.reason]
+    notes = [folded(f"{', '.join(names)}: {reason}") for reason, names in _met_on_the_way(trials).items()]
     return "\n".join([f"stance {name}", text_table(head, rows, "lllrrrr"), *notes])
+
+
+def _met_on_the_way(trials: tuple[TrialResult, ...]) -> dict[str, list[str]]:
+    """Limits met in trials that recovered all the same -> those trials; why the others failed is said further down."""
+    met: dict[str, list[str]] = {}
+    for trial in trials:
+        if trial.reason and trial.verdict == "recovered":
+            met.setdefault(trial.reason, []).append(f"{trial.name} {trial.toward}")
+    return met
 
 
 def _settled(trial: TrialResult) -> str:
