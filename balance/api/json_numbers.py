@@ -22,7 +22,7 @@ def number(value: float) -> Number:
         return None
     if math.isinf(value):
         return "inf" if value > 0 else "-inf"
-    return float(value)
+    return float(value) + 0.0  # turns -0.0 into 0.0
 
 
 def row(values: Iterable[float]) -> list[Number]:

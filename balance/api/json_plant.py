@@ -35,7 +35,7 @@ def _stance(plant: Plant) -> Tree:
         "touch_down_lean_rad": None if stance.touch_down_lean is None else number(stance.touch_down_lean),
         "momentum_capacity_n_m_s": number(plant.momentum_capacity),
         "torque_limit_n_m": number(plant.torque_limit),
-        "acts": plant.acts,
+        "acts": bool(plant.acts),
         "best_possible": {
             "lean_rad": number(plant.bounds.lean),
             "lean_rate_rad_s": number(plant.bounds.lean_rate),

@@ -6,8 +6,10 @@ import json
 import os
 import sys
 from collections.abc import Sequence
+from typing import TextIO
 
 from balance.base.errors import InputError
+from balance.cli.colour import painted
 from balance.cli.outcome import (
     FAILED,
     INTERRUPTED,
@@ -21,14 +23,11 @@ from balance.cli.parser import COMMANDS, read_words
 
 
 def main(argv: Sequence[str] | None = None) -> int:
-    """Run one command; `argv` are the words after `balance` (the shell's own by default).
-
-    Returns the exit code.
-    """
+    """Run one command; `argv` are the words after `balance` (the shell's own by default). Returns the exit code."""
     words = list(sys.argv[1:] if argv is None else argv)
     try:
-        ended = attempt(words)
-        show(words, ended)
+        ended, text = attempt(words)
+        show(text, sys.stdout if isinstance(ended, Outcome) or "--json" in words else sys.stderr)
     except BrokenPipeError:
         _drop_stdout()
         return FAILED
@@ -39,37 +38,38 @@ def main(argv: Sequence[str] | None = None) -> int:
     return ended.code
 
 
-def attempt(words: Sequence[str]) -> Outcome | Failure:
-    """Run the command; whatever goes wrong becomes a Failure, but for unforeseen errors with `--debug`."""
+def attempt(words: Sequence[str]) -> tuple[Outcome | Failure, str]:
+    """Run the command and write its answer; with `--debug`, errors that nobody foresaw pass through."""
     try:
         asked = read_words(words)
         from balance.cli.commands import run
 
-        return run(asked)
+        ended: Outcome | Failure = run(asked)
+        return ended, written(words, ended)
     except InputError as error:
-        return wrong_input(error)
+        ended = wrong_input(error)
     except KeyboardInterrupt:
-        return plain_failure(INTERRUPTED, "interrupted; no half-written file is left")
+        ended = plain_failure(INTERRUPTED, "interrupted; no half-written file is left")
     except BrokenPipeError:
         raise
     except Exception as error:
         if "--debug" in words:
             raise
-        return plain_failure(FAILED, f"{_in_words(error)} (--debug shows where)")
+        ended = plain_failure(FAILED, f"{_in_words(error)} (--debug shows where)")
+    return ended, written(words, ended)
 
 
-def show(words: Sequence[str], ended: Outcome | Failure) -> None:
-    """Print the answer: one JSON object, or text on the output and errors on the error stream."""
+def written(words: Sequence[str], ended: Outcome | Failure) -> str:
+    """Return the answer as one JSON object, or as text for people."""
     if "--json" in words:
         command = next((w for w in words if w in COMMANDS), "")
-        print(json.dumps(envelope(command, ended), allow_nan=False, ensure_ascii=False, indent=1))
-    elif isinstance(ended, Failure):
-        print("\n".join(ended.lines), file=sys.stderr)
-    else:
-        from balance.cli.colour import painted
+        return json.dumps(envelope(command, ended), allow_nan=False, ensure_ascii=False, indent=1)
+    return "\n".join(ended.lines) if isinstance(ended, Failure) else ended.text
 
-        print(painted(ended.text, sys.stdout))
-    sys.stdout.flush()
+
+def show(text: str, stream: TextIO) -> None:
+    """Print the answer at once."""
+    print(painted(text, stream), file=stream, flush=True)
 
 
 def _in_words(error: Exception) -> str:

@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import argparse
 import difflib
+import textwrap
 from collections.abc import Sequence
 from typing import NoReturn
 
@@ -62,7 +63,7 @@ def build_parser() -> Parser:
         made = commands.add_parser(
             name,
             help=says,
-            description=says.capitalize() + ".",
+            description=textwrap.fill(f"{says[0].upper()}{says[1:]}.", 78),
             epilog=CODES,
             parents=[shared],
             allow_abbrev=False,
@@ -72,8 +73,8 @@ def build_parser() -> Parser:
     return parser
 
 
-def _shared() -> argparse.ArgumentParser:
-    shared = argparse.ArgumentParser(add_help=False)
+def _shared() -> Parser:
+    shared = Parser(add_help=False)
     shared.add_argument("--json", action="store_true", help="print one JSON object instead of text")
     shared.add_argument(
         "--progress", action="store_true", help="say each step on the error stream, even when it is a file"

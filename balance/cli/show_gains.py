@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+from functools import partial
+
 from balance.base.tables import text_table
 from balance.check.records import Verdict
 from balance.cli.words import closing, failures, folded, side_by_side, verdict_table
 from balance.design.records import Design
-from balance.report.amounts import amount, figure
+from balance.report.amounts import amount, figure, spelt
 
 
 def show_gains(designs: tuple[Design, ...], verdicts: tuple[Verdict, ...]) -> str:
@@ -39,19 +41,20 @@ def _head(design: Design) -> str:
 def _laws(designs: tuple[Design, ...]) -> str:
     law = designs[0].law
     if law.kind == "pid":
-        title, rows = (
-            "gains (SI)",
-            [(name, lambda d, n=name: figure(d.law.gains[n], 5)) for name in law.gains],
-        )
-        return side_by_side(title, designs, lambda d: d.plant.stance.name, rows)
-    blocks = []
-    for d in designs:
-        rows = [[state, figure(gain, 6)] for state, gain in zip(d.law.states, d.law.K, strict=True)]
-        blocks.append(
-            f"{d.plant.stance.name}: u = -K x, u in {d.law.unit}, SI\n"
-            + text_table(["state", "K"], rows, "lr")
-        )
-    return "\n\n".join(blocks)
+        rows = [(f"{name} (SI)", partial(_pid_gain, name)) for name in law.gains]
+        return side_by_side("gain", designs, lambda d: d.plant.stance.name, rows)
+    return "\n\n".join(_feedback(d) for d in designs)
+
+
+def _pid_gain(name: str, design: Design) -> str:
+    return figure(design.law.gains[name], 5)
+
+
+def _feedback(design: Design) -> str:
+    law = design.law
+    rows = [[state, figure(gain, 6)] for state, gain in zip(law.states, law.K, strict=True)]
+    title = f"{design.plant.stance.name}: u = −K x, u in {spelt(law.unit)}, SI"
+    return f"{title}\n{text_table(['state', 'K'], rows, 'lr')}"
 
 
 def _margins(designs: tuple[Design, ...]) -> str:
