@@ -1,7 +1,8 @@
 """The only place where rooms are joined: one module per verb, a few short functions each.
 
     from balance.api.load import load
-    from balance.api.check import check, report
+    from balance.api.check import check
+    from balance.api.report import report
 
     job = load("designs/scout-wheels.yaml")
     result = check(job)

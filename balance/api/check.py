@@ -1,4 +1,4 @@
-"""The main job: build, design, try, judge; and its report."""
+"""The main job: build, design, try, judge."""
 
 from __future__ import annotations
 
@@ -8,7 +8,6 @@ from balance.api.recover import recover
 from balance.api.tell import Tell, quiet
 from balance.check.judge import judge
 from balance.check.records import CheckResult
-from balance.report.write import write_report
 
 
 def check(job: Job, tell: Tell = quiet) -> CheckResult:
@@ -19,9 +18,3 @@ def check(job: Job, tell: Tell = quiet) -> CheckResult:
     designs = gains(job, tell)
     trials = recover(job, designs, record=True, tell=tell)
     return CheckResult(job.machine, job.goal, designs, trials, judge(job.goal, designs, trials))
-
-
-def report(result: CheckResult, folder: str, tell: Tell = quiet) -> str:
-    """Write the report of `result` into `folder`, made if it is not there; return the path of its page."""
-    tell("drawing the report")
-    return write_report(result, folder)

@@ -91,8 +91,9 @@ def run_check(asked: argparse.Namespace, progress: Progress) -> Outcome:
     from balance.api.load import load
 
     job = load(asked.file, asked.stance)
-    from balance.api.check import check, report
+    from balance.api.check import check
     from balance.api.json_check import json_check
+    from balance.api.report import report
     from balance.cli.show_check import show_check
 
     result = check(job, progress.tell)
