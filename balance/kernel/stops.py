@@ -60,9 +60,10 @@ def go(X: Array, t: float, h: float, steps: int, units: Array, work: Work, metri
        first: Array) -> tuple[int, int]:
     """Take the bundle apart and march: the one place where it is done."""
     numbers, flags = work.numbers, work.flags
-    return march(X, t, h, steps, numbers[COMMANDS], work.active, flags[AT, TORQUES_ON], work.body, units, work.live,
-                 flags[HELD], flags[MET], numbers[INPUTS], numbers[SLOPES], numbers[RATE], numbers[TOTAL],
-                 numbers[PROBE], metrics, first)
+    made, end = march(X, t, h, steps, numbers[COMMANDS], work.active, flags[AT, TORQUES_ON], work.body, units,
+                      work.live, flags[HELD], flags[MET], numbers[INPUTS], numbers[SLOPES], numbers[RATE],
+                      numbers[TOTAL], numbers[PROBE], metrics, first)
+    return int(made), int(end)
 
 
 @njit(cache=True, error_model="numpy")
@@ -126,7 +127,7 @@ def rates_now(X: Array, t: float, work: Work) -> float:
     torque = disturbance_at(t, work.active, work.flags[AT, TORQUES_ON])
     rates(X, torque, numbers[COMMANDS], work.body, work.live, work.flags[MET], numbers[INPUTS], numbers[SLOPES],
           numbers[RATE])
-    return torque
+    return float(torque)
 
 
 @njit(cache=True, error_model="numpy")
