@@ -1,0 +1,173 @@
+"""Trials of the shipped machines: verdicts, numbers that have a closed form, and twins that fail."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import replace
+
+import numpy as np
+import pytest
+
+from balance.design.build import design_stance
+from balance.goal.read import read_goal
+from balance.goal.trials import LiftOff, OffsetShift, Push, Start, TorqueStep, Trial
+from balance.kernel import layout as at
+from balance.machine.read import read_machine
+from balance.plant.build import build_plant
+from balance.simulate.run import run_one, run_trials
+from balance.simulate.setup import start_state
+from balance.stance.build import build_stance
+
+
+@pytest.fixture(scope="module")
+def rig():
+    machine, goal = read_machine("plants/bench-rig.yaml"), read_goal("designs/bench-rig.yaml")
+    return machine, goal, design_stance(build_plant(machine, build_stance(machine, "line")), goal)
+
+
+@pytest.fixture(scope="module")
+def quay():
+    machine, goal = read_machine("plants/quay-carrier.yaml"), read_goal("designs/quay-gyros.yaml")
+    return machine, goal, design_stance(build_plant(machine, build_stance(machine, "on-left-right")), goal)
+
+
+def ran(case, trial, toward="outward", record=False, design=None):
+    return run_one(design or case[2], case[1], "it", trial, toward, record)
+
+
+def test_every_trial_runs_in_every_direction_it_asks_for(rig):
+    machine, goal, design = rig
+    results = run_trials(design, goal, machine, False)
+    assert [(r.name, r.toward) for r in results] == [(n, t) for n in goal.trials for t in ("outward", "inward")]
+    assert all(r.verdict == "recovered" for r in results)
+    assert all(r.trace is None for r in results)
+
+
+def test_a_refused_design_runs_nothing(rig):
+    machine, goal, design = rig
+    assert run_trials(replace(design, refused="no law"), goal, machine, False) == ()
+
+
+def test_mirror_image(rig):
+    """The rig is symmetric: inward is outward with the sign changed."""
+    out, into = (ran(rig, Trial(push=Push(0.25, 0.3)), way, True) for way in ("outward", "inward"))
+    np.testing.assert_allclose(out.trace.lean, -into.trace.lean, atol=1e-12)
+    assert out.peak_lean == pytest.approx(into.peak_lean, rel=1e-9)
+
+
+def test_the_push_is_the_jump_of_the_lean_rate(rig):
+    """Δθ̇ = P ℓ/J_rest (`physics.md`), J_rest as the plant reports it."""
+    trace = ran(rig, Trial(push=Push(0.25, 0.3, start=0.1)), record=True).trace
+    k = int(np.searchsorted(trace.time, 0.1 - 1e-9))
+    assert trace.lean_rate[k] == pytest.approx(0.25 * 0.3 / rig[2].plant.inertia_free, rel=1e-9)
+    assert trace.lean_rate[k - 1] == pytest.approx(0.0, abs=1e-12)
+
+
+def test_a_short_push_does_nearly_what_an_impulse_does(rig):
+    sudden = ran(rig, Trial(push=Push(0.25, 0.3)))
+    short = ran(rig, Trial(push=Push(0.25, 0.3, lasts=0.004)))
+    long = ran(rig, Trial(push=Push(0.25, 0.3, lasts=0.2)))
+    assert short.peak_lean == pytest.approx(sudden.peak_lean, rel=0.05)
+    assert long.peak_lean < 0.9 * sudden.peak_lean                # the twin
+
+
+def test_where_it_stands_after_a_shift_gravity_balances(rig):
+    """tan(lean) = -shift/h; the wheel keeps a standing speed."""
+    result = ran(rig, Trial(offset=OffsetShift(0.003), lasts=10.0))
+    assert result.verdict == "recovered"
+    assert result.end_lean == pytest.approx(-math.atan(0.003 / 0.28), abs=2e-4)   # wheel drag 3.4 mN·m: 4e-4 rad at most
+    assert abs(result.end_momentum) > 0.05
+
+
+def test_where_it_stands_under_a_lasting_torque(rig):
+    """sin(lean) = -d/G."""
+    result = ran(rig, Trial(torque=TorqueStep(0.1), lasts=10.0))
+    assert result.verdict == "recovered"
+    assert result.end_lean == pytest.approx(-math.asin(0.1 / rig[2].plant.stiffness), abs=5e-4)
+
+
+def test_a_law_blind_to_the_wheel_runs_away_and_is_told(rig):
+    """Trap 4: no momentum feedback under a lasting torque: lean looks settled, the wheel does not stop gaining speed."""
+    law = rig[2].law
+    D = law.D.copy()
+    D[2:] = 0.0
+    blind = replace(rig[2], law=replace(law, D=D))
+    result = ran(rig, Trial(torque=TorqueStep(0.02), lasts=6.0), design=blind)
+    assert result.verdict == "did not settle" or result.verdict.startswith("fell")
+    assert result.momentum_used > 2.0 * ran(rig, Trial(torque=TorqueStep(0.02), lasts=6.0)).momentum_used
+
+
+def test_ten_times_less_torque_falls_and_says_why(rig):
+    """The twin of every recovery here."""
+    rows = rig[2].plant.unit_parameters.copy()
+    rows[:, at.TORQUE_LIMIT] *= 0.1
+    rows[:, at.CURRENT_LIMIT] *= 0.1
+    weak = replace(rig[2], plant=replace(rig[2].plant, unit_parameters=rows))
+    result = ran(rig, Trial(start=Start(math.radians(2.5))), design=weak)
+    assert result.verdict == "fell outward"
+    assert result.reason.startswith("torque limit reached at 0.00 s") or "current limit" in result.reason
+    assert math.isinf(result.settling_time)
+    assert ran(rig, Trial(start=Start(math.radians(2.5))), "inward", design=weak).verdict == "fell inward"
+
+
+def test_inward_the_lifted_foot_catches_it(quay):
+    trial = Trial(start=Start(math.radians(9.0)))
+    assert ran(quay, trial, "outward").verdict == "fell outward"
+    assert ran(quay, trial, "inward").verdict == "touched down"
+
+
+@pytest.mark.parametrize("stored", [0.1, -0.2])
+def test_stored_momentum_at_the_start(rig, stored):
+    trace = ran(rig, Trial(start=Start(0.01, 0.3, stored)), record=True).trace
+    assert trace.momentum[0] == pytest.approx(stored, rel=1e-12)
+    assert trace.lean_rate[0] == 0.3
+
+
+def test_stored_momentum_of_a_pair_is_its_gimbal_angle(quay):
+    trace = ran(quay, Trial(start=Start(0.0, 0.0, 1.5)), record=True).trace
+    assert trace.momentum[0] == pytest.approx(1.5, rel=1e-12)
+    row = quay[2].plant.unit_parameters[0]
+    expected = math.asin(1.5 / (2 * row[at.MOMENTUM] * row[at.E_GXS0]))
+    assert trace.units[0, 0] == pytest.approx(expected, rel=1e-12)
+
+
+def test_stored_momentum_is_shared_by_capacity():
+    machine = read_machine("plants/trellis-scout.yaml")
+    plant = build_plant(machine, build_stance(machine, "on-fore-right"))
+    from balance.simulate.events import happening
+    X = start_state(plant, happening(Trial(start=Start(0.0, 0.0, 0.4)), "outward", 1e-4))
+    speeds = X[2::2]
+    assert plant.unit_parameters[:, at.COUPLING] @ speeds == pytest.approx(0.4, rel=1e-12)
+    assert abs(speeds[0]) == pytest.approx(abs(speeds[1]), rel=1e-9)              # equal wheels: equal speeds
+
+
+def test_lift_off_waits(quay):
+    trace = ran(quay, Trial(lift_off=LiftOff(0.02, 0.05, 0.5, 0.1)), record=True).trace
+    held = trace.time < 0.1 - 1e-9
+    np.testing.assert_array_equal(trace.lean[held], trace.lean[0])
+    np.testing.assert_array_equal(trace.command[held], 0.0)
+    assert np.abs(trace.lean[~held] - trace.lean[0]).max() > 1e-3
+
+
+def test_torque_is_the_rate_of_the_stored_momentum(rig):
+    """T = dq/dt: the recorded torque integrates to the recorded momentum (trapezoids of 2 ms: 1 % of the peak)."""
+    trace = ran(rig, Trial(torque=TorqueStep(0.2, 0.1, 0.3)), record=True).trace
+    summed = np.concatenate([[0.0], np.cumsum(0.5 * (trace.torque[1:] + trace.torque[:-1]) * np.diff(trace.time))])
+    assert np.abs(summed - trace.momentum).max() < 0.01 * np.abs(trace.momentum).max()
+    assert np.all(trace.torque_limit > 0.0)
+
+
+def test_momentum_of_the_whole_machine_is_balanced(rig):
+    """J_rest Δθ̇ + Δq = ∫(M + d − drag) dt over a recorded run, from the recorded histories alone."""
+    plant = rig[2].plant
+    trace = ran(rig, Trial(torque=TorqueStep(0.2, 0.1, 0.3)), record=True).trace
+    outer = plant.stiffness * np.sin(trace.lean) + trace.disturbance - plant.stance.drag * trace.lean_rate
+    gained = np.cumsum(0.5 * (outer[1:] + outer[:-1]) * np.diff(trace.time))
+    held = plant.inertia_free * trace.lean_rate[1:] + trace.momentum[1:]
+    assert np.abs(gained - held).max() < 0.01 * np.abs(trace.momentum).max()      # the step's edge: one sample's trapezoid
+
+
+def test_results_do_not_depend_on_recording(rig):
+    trial = Trial(push=Push(0.25, 0.3))
+    plain, recorded = ran(rig, trial), ran(rig, trial, record=True)
+    assert replace(recorded, trace=None) == plain
