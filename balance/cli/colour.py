@@ -8,6 +8,7 @@ from typing import TextIO
 NOT_MET = "NOT MET"
 """Mark of a line about something not met; the words carry the meaning, colour only helps."""
 
+NBSP = "\u00a0"
 BOLD_RED, PLAIN = "\x1b[1;31m", "\x1b[0m"
 
 
@@ -19,8 +20,10 @@ def wants_colour(stream: TextIO) -> bool:
 def painted(text: str, stream: TextIO) -> str:
     """Return `text` with its not-met lines in bold red where the stream wants colour, else as it is.
 
-    Characters that the stream's encoding lacks become question marks rather than an error.
+    Blanks that held a number to its unit while lines were broken become common ones, for whoever searches or copies;
+    characters that the stream's encoding lacks become question marks rather than an error.
     """
+    text = text.replace(NBSP, " ")
     encoding = stream.encoding or "utf-8"
     safe = text.encode(encoding, "replace").decode(encoding)
     if not wants_colour(stream):

@@ -125,11 +125,7 @@ def run_schema(asked: argparse.Namespace, progress: Progress) -> Outcome:
 
 def output_folder(design_file: str) -> str:
     """Return the folder named like the design file, beside it."""
-    return (
-        os.path.splitext(design_file)[0]
-        if design_file.endswith((".yaml", ".yml"))
-        else design_file + "-report"
-    )
+    return os.path.splitext(design_file)[0] if design_file.endswith((".yaml", ".yml")) else design_file + "-report"
 
 
 def _code(answer: dict[str, object]) -> int:

@@ -76,18 +76,14 @@ def build_parser() -> Parser:
 def _shared() -> Parser:
     shared = Parser(add_help=False)
     shared.add_argument("--json", action="store_true", help="print one JSON object instead of text")
-    shared.add_argument(
-        "--progress", action="store_true", help="say each step on the error stream, even when it is a file"
-    )
+    shared.add_argument("--progress", action="store_true", help="say each step on the error stream, even when it is a file")
     shared.add_argument("--debug", action="store_true", help="show the whole traceback when something fails")
     return shared
 
 
 def _own_words(name: str, parser: argparse.ArgumentParser) -> None:
     if name == "new":
-        parser.add_argument(
-            "name", metavar="NAME", help="letters, digits and hyphens; becomes the name of both files"
-        )
+        parser.add_argument("name", metavar="NAME", help="letters, digits and hyphens; becomes the name of both files")
         parser.add_argument(
             "--in",
             dest="folder",
@@ -96,9 +92,7 @@ def _own_words(name: str, parser: argparse.ArgumentParser) -> None:
             help="folder that gets plants/NAME.yaml and designs/NAME.yaml (default: this one)",
         )
     elif name == "schema":
-        parser.add_argument(
-            "which", metavar="machine|design", choices=("machine", "design"), help="which kind of file"
-        )
+        parser.add_argument("which", metavar="machine|design", choices=("machine", "design"), help="which kind of file")
     else:
         what = "a machine file or a design file" if name == "plant" else "a design file"
         parser.add_argument("file", metavar="FILE", help=what)

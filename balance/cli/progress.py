@@ -24,9 +24,7 @@ class Progress:
             self.timer.start()
         return self
 
-    def __exit__(
-        self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None
-    ) -> None:
+    def __exit__(self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None) -> None:
         self.timer.cancel()
 
     def begin(self) -> None:

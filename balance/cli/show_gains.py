@@ -10,6 +10,9 @@ from balance.cli.words import closing, failures, folded, side_by_side, verdict_t
 from balance.design.records import Design
 from balance.report.amounts import amount, figure, spelt
 
+ROUNDING = 1e-12
+"""Share of the largest gain below which a gain is the arithmetic's own rounding, not a gain."""
+
 
 def show_gains(designs: tuple[Design, ...], verdicts: tuple[Verdict, ...]) -> str:
     """Return the text of the answer."""
@@ -41,8 +44,8 @@ def _head(design: Design) -> str:
 def _laws(designs: tuple[Design, ...]) -> str:
     law = designs[0].law
     if law.kind == "pid":
-        rows = [(f"{name} (SI)", partial(_pid_gain, name)) for name in law.gains]
-        return side_by_side("gain", designs, lambda d: d.plant.stance.name, rows)
+        rows = [(name, partial(_pid_gain, name)) for name in law.gains]
+        return side_by_side("gain (SI)", designs, lambda d: d.plant.stance.name, rows)
     return "\n\n".join(_feedback(d) for d in designs)
 
 
@@ -52,7 +55,8 @@ def _pid_gain(name: str, design: Design) -> str:
 
 def _feedback(design: Design) -> str:
     law = design.law
-    rows = [[state, figure(gain, 6)] for state, gain in zip(law.states, law.K, strict=True)]
+    dust = ROUNDING * max((abs(gain) for gain in law.K), default=0.0)
+    rows = [[state, figure(gain, 6) if abs(gain) > dust else "0"] for state, gain in zip(law.states, law.K, strict=True)]
     title = f"{design.plant.stance.name}: u = −K x, u in {spelt(law.unit)}, SI"
     return f"{title}\n{text_table(['state', 'K'], rows, 'lr')}"
 

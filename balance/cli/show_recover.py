@@ -10,9 +10,7 @@ from balance.report.amounts import amount, share
 from balance.simulate.records import TrialResult
 
 
-def show_recover(
-    designs: tuple[Design, ...], trials: tuple[TrialResult, ...], verdicts: tuple[Verdict, ...]
-) -> str:
+def show_recover(designs: tuple[Design, ...], trials: tuple[TrialResult, ...], verdicts: tuple[Verdict, ...]) -> str:
     """Return the text of the answer."""
     parts = [folded(f"{designs[0].plant.machine}: recovery trials, {len(trials)} in all")]
     parts += [trial_table(d, tuple(t for t in trials if t.stance == d.plant.stance.name)) for d in designs]

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 import textwrap
 from collections.abc import Callable, Sequence
 from typing import TypeVar
@@ -38,25 +39,21 @@ def side_by_side(
 
 def verdict_table(verdicts: Sequence[Verdict]) -> str:
     """Return every requirement with stance, value, limit and whether it is met."""
-    rows = [
-        [
-            spoken(v.name),
-            v.stance,
-            value_words(v.value, v.limit, v.unit),
-            limit_words(v),
-            "yes" if v.passed else NOT_MET,
-        ]
-        for v in verdicts
-    ]
+    rows = [[spoken(v.name), v.stance, _value(v), limit_words(v), "yes" if v.passed else NOT_MET] for v in verdicts]
     return text_table(["requirement", "stance", "value", "limit", "met?"], rows, "llrrl")
+
+
+def _value(verdict: Verdict) -> str:
+    """Write a value; a time without end is one that never comes."""
+    if verdict.unit == "s" and verdict.value == math.inf and not verdict.passed:
+        return "never"
+    return value_words(verdict.value, verdict.limit, verdict.unit)
 
 
 def failures(verdicts: Sequence[Verdict]) -> str:
     """Return one sentence for each requirement not met; empty when there is none."""
     lines = [
-        f"{NOT_MET}: {spoken(v.name)} ({v.stance})" + (f": {v.reason}" if v.reason else "")
-        for v in verdicts
-        if not v.passed
+        f"{NOT_MET}: {spoken(v.name)} ({v.stance})" + (f": {v.reason}" if v.reason else "") for v in verdicts if not v.passed
     ]
     return "\n".join(folded(line) for line in lines)
 

@@ -44,3 +44,7 @@ def test_when_there_is_colour(monkeypatch, terminal: bool, no_color: str, term: 
 def test_a_stream_without_the_letters_gets_question_marks() -> None:
     shown = painted("α −1 °", Screen(False, "ascii"))
     assert shown == "? ?1 ?"
+
+
+def test_units_stay_searchable() -> None:
+    assert painted("12\u00a0N·m", Screen(False)) == "12 N·m"
