@@ -5,10 +5,11 @@ from __future__ import annotations
 import os
 from typing import TextIO
 
+from balance.report.amounts import NBSP
+
 NOT_MET = "NOT MET"
 """Mark of a line about something not met; the words carry the meaning, colour only helps."""
 
-NBSP = "\u00a0"
 BOLD_RED, PLAIN = "\x1b[1;31m", "\x1b[0m"
 
 
