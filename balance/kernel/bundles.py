@@ -26,7 +26,7 @@ class LawArrays(NamedTuple):
     levelling: Array      # (u, m)
     input_limits: Array   # (u,)
     line_share: Array     # (u,) torque about the line per input; 0: takes nothing over
-    places: Places        # (m,) where each measurement stands in X; 0 is read as lean
+    places: Places        # (m,) where each measurement stands in X, 0 is read as lean; below 0: `sensing`
     sample_time: float    # s
     latency: float        # s
 
@@ -41,6 +41,8 @@ class Events(NamedTuple):
     release_rate: float   # rad/s at release
     lasts: float          # s
     longest: float        # s: longest sub-step
+    sensor: Array         # (SENSOR_SIZE,) layout: `sensing`
+    seed: int             # of the sensor noise
 
 
 class Output(NamedTuple):

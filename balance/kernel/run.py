@@ -35,7 +35,7 @@ from balance.kernel.gauge import available, line_momentum, line_torque, note
 from balance.kernel.integrate import jump
 from balance.kernel.layout import BALANCED, GRAVITY, KIND, MASS, OFFSET, STIFF_COS, WHEEL
 from balance.kernel.stops import rates_now, release_stops, run_piece
-from balance.kernel.tick import law_tick, measure, share_out
+from balance.kernel.tick import law_tick, measure, reads_sensor, share_out
 
 Array = NDArray[np.float64]
 
@@ -53,7 +53,7 @@ def run_trial(X: Array, units: Array, law: LawArrays, events: Events, work: Work
     for sample in range(output.history.shape[0] - 1):
         start = sample * law.sample_time
         until = min(start + law.sample_time, events.lasts)
-        tick(X, start, sample, events.release, units, law, work, output)
+        tick(X, start, sample, units, law, events, work, output)
         end = run_period(X, start, until, sample, law.sample_time, law.latency, units, events, work, output)
         taken += 1
         if end != outcome.RAN:
@@ -63,18 +63,23 @@ def run_trial(X: Array, units: Array, law: LawArrays, events: Events, work: Work
 
 
 @njit(cache=True, error_model="numpy")
-def tick(X: Array, start: float, sample: int, release: float, units: Array, law: LawArrays, work: Work,
+def tick(X: Array, start: float, sample: int, units: Array, law: LawArrays, events: Events, work: Work,
          output: Output) -> None:
     """Take a sample and compute the command that acts `latency` later; until the release it is held at zero."""
     numbers, queue = work.numbers, work.queue
     for i in range(queue.shape[0] - 1, 0, -1):
         for j in range(queue.shape[1]):
             queue[i, j] = queue[i - 1, j]
-    measure(X, work.body, law.places, numbers[MEASURED])
+    free = start >= events.release - TINY * law.sample_time
+    acceleration = 0.0
+    if free and reads_sensor(law.places):
+        release_stops(X, start, units, work)
+        rates_now(X, start, work)
+        acceleration = numbers[RATE, 1]
+    measure(X, acceleration, work.body, law.places, events.sensor, events.seed, sample, numbers[MEASURED])
     stored = line_momentum(X, units)
     output.history[sample, 0] = X[0] - work.body[BALANCED]
     output.history[sample, 1] = stored
-    free = start >= release - TINY * law.sample_time
     most = law.output_limit if free else 0.0
     v, limited = law_tick(numbers[MEMORY], numbers[MEASURED], law.A, law.B, law.E, law.C, law.D, most,
                           numbers[SPARE])

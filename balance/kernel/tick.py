@@ -7,16 +7,32 @@ from numba import njit
 from numpy.typing import NDArray
 
 from balance.kernel.layout import BALANCED
+from balance.kernel.sensing import GYRO, TILT, read_gyro, read_tilt
 
 Array = NDArray[np.float64]
 Places = NDArray[np.int64]
 
 
 @njit(cache=True, error_model="numpy")
-def measure(X: Array, body: Array, places: Places, y: Array) -> None:
-    """Fill y with the states at `places`; place 0 is read as lean, θ - θ_b."""
+def measure(X: Array, acceleration: float, body: Array, places: Places, sensor: Array, seed: int, sample: int,
+            y: Array) -> None:
+    """Fill y with the states at `places`: place 0 is read as lean, θ - θ_b; TILT and GYRO are read by the sensor."""
     for j in range(places.size):
-        y[j] = X[places[j]] - body[BALANCED] if places[j] == 0 else X[places[j]]
+        if places[j] == TILT:
+            y[j] = read_tilt(X, acceleration, body, sensor, seed, sample)
+        elif places[j] == GYRO:
+            y[j] = read_gyro(X[1], sensor, seed, sample)
+        else:
+            y[j] = X[places[j]] - body[BALANCED] if places[j] == 0 else X[places[j]]
+
+
+@njit(cache=True, error_model="numpy")
+def reads_sensor(places: Places) -> bool:
+    """Return whether any measurement is the inertial sensor's."""
+    found = False
+    for j in range(places.size):
+        found = found or places[j] < 0
+    return found
 
 
 @njit(cache=True, error_model="numpy")

@@ -12,6 +12,7 @@ from balance.machine.machine import Machine
 from balance.plant.limits import impulsive, limited_by, torque_only
 from balance.plant.linear import linear_model
 from balance.plant.record import Bounds, Plant, Unit
+from balance.plant.sensor import sensor_parameters
 from balance.plant.sharing import allotment, levelling, line_torque_per_input, momentum_row
 from balance.plant.units import discounted, on_line
 from balance.stance.record import Stance
@@ -43,7 +44,8 @@ def build_plant(machine: Machine, stance: Stance, fell: float = pi / 6.0) -> Pla
         momentum_capacity=sum(u.momentum_capacity for u in units), torque_limit=sum(u.torque_limit for u in units),
         bounds=_bounds(units, rows, stance.height, stiffness, free, pole), model=model,
         momentum_row=momentum_row(rows, first, len(model.states)), allotment=shares,
-        levelling=levelling(rows, shares, first, len(model.states)), body_parameters=body, unit_parameters=rows)
+        levelling=levelling(rows, shares, first, len(model.states)), body_parameters=body, unit_parameters=rows,
+        sensor_parameters=sensor_parameters(machine, stance))
 
 
 def _body(stance: Stance, rows: Array, fell: float) -> Array:

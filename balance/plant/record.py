@@ -82,6 +82,7 @@ class Plant:
     levelling: Array             # (m, n): inputs += -levelling · x; moves no torque about the line, levels wheel speeds
     body_parameters: Array       # kernel.layout, (BODY_SIZE,)
     unit_parameters: Array       # kernel.layout, (units, UNIT_SIZE)
+    sensor_parameters: Array     # kernel.sensing, (SENSOR_SIZE,)
 
     @property
     def acts(self) -> bool:

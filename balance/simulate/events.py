@@ -39,10 +39,11 @@ def directions(trial: Trial) -> tuple[str, ...]:
     return (said[0],)
 
 
-def happening(trial: Trial, toward: str, longest: float) -> Happening:
+def happening(trial: Trial, toward: str, longest: float, sensor: Array, seed: int) -> Happening:
     """Return what happens in `trial` run toward `toward`; parts that name their own direction keep it.
 
     A push is a horizontal force at its height on the leaning machine; its lever is taken as that height.
+    `sensor`, `seed`: as `kernel.sensing` reads them.
     """
     torques: list[list[float]] = []
     jumps: list[list[float]] = []
@@ -77,7 +78,7 @@ def happening(trial: Trial, toward: str, longest: float) -> Happening:
     if trial.swing:
         torques += swing_rows(trial.swing, _side(trial.swing.toward, toward))
         quiet = max([quiet] + [row[outcome.END] for row in torques if math.isfinite(row[outcome.END])])
-    events = _events(torques, sorted(jumps), release, trial.lasts, longest)
+    events = _events(torques, sorted(jumps), release, trial.lasts, longest)._replace(sensor=sensor, seed=seed)
     lasting = sum(row[outcome.LEVEL] for row in torques if math.isinf(row[outcome.END]))
     return Happening(toward, events, *start, quiet, lasting, shift)
 
@@ -116,4 +117,4 @@ def _events(torques: list[list[float]], jumps: list[list[float]], release: tuple
     breaks = sorted(t for t in instants if 0.0 < t < lasts)
     return Events(np.array(torques, dtype=float).reshape(-1, outcome.TORQUE_SIZE),
                   np.array(jumps, dtype=float).reshape(-1, outcome.JUMP_SIZE), np.array(breaks, dtype=float),
-                  release[0], release[1], lasts, longest)
+                  release[0], release[1], lasts, longest, np.zeros(0), 0)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from zlib import crc32
 
 import numpy as np
 
@@ -39,9 +40,10 @@ def run_trials(design: Design, goal: Goal, machine: Machine, record: bool) -> tu
 
 
 def run_one(design: Design, goal: Goal, name: str, trial: Trial, toward: str, record: bool) -> TrialResult:
-    """Run one trial in one direction."""
+    """Run one trial in one direction. Sensor noise is drawn from the trial's name and direction: every run is alike."""
     plant = design.plant
-    event = happening(trial, toward, longest_step(plant.unit_parameters))
+    event = happening(trial, toward, longest_step(plant.unit_parameters), plant.sensor_parameters,
+                      crc32(f"{name} {toward}".encode()))
     samples = math.ceil(trial.lasts / design.law.sample_time - 1e-9)
     output = empty_output(plant, samples, record)
     body = plant.body_parameters.copy()

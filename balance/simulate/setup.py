@@ -21,6 +21,7 @@ from balance.kernel.layout import (
     OWN_INERTIA,
     WHEEL,
 )
+from balance.kernel.sensing import GYRO, TILT
 from balance.plant.record import Plant
 from balance.plant.sharing import line_torque_per_input
 from balance.simulate.events import Happening
@@ -43,7 +44,7 @@ def places(law: Law, plant: Plant) -> NDArray[np.int64]:
     where: list[int] = [0, 1]
     for i, unit in enumerate(plant.unit_parameters):
         where += [2 + 2 * i] if unit[KIND] == WHEEL else [2 + 2 * i, 3 + 2 * i]
-    table = dict(zip(plant.model.states, where, strict=True))
+    table = {**dict(zip(plant.model.states, where, strict=True)), "tilt": TILT, "gyro": GYRO}
     return np.array([table[name] for name in law.measurements], dtype=np.int64)
 
 

@@ -7,7 +7,7 @@ from dataclasses import dataclass, field
 import numpy as np
 
 from balance.kernel import layout as at
-from balance.kernel import outcome
+from balance.kernel import outcome, sensing
 from balance.kernel.bundles import MEMORY, Events, LawArrays, Output, fresh_work
 from balance.kernel.run import run_trial
 
@@ -53,12 +53,20 @@ def law(gains=(0.0, 0.0, 0.0), sample_time=0.002, latency=0.0, limit=np.inf, pla
                      latency)
 
 
-def events(lasts, torques=(), jumps=(), release=(0.0, 0.0), longest=1e-4):
+def ideal_sensor():
+    """Return a sensor at the line without any error."""
+    out = np.zeros(sensing.SENSOR_SIZE)
+    out[[sensing.GYRO_RANGE, sensing.ACCEL_RANGE]] = np.inf
+    return out
+
+
+def events(lasts, torques=(), jumps=(), release=(0.0, 0.0), longest=1e-4, sensor=None, seed=1):
     """Return what happens; breaks are gathered here."""
     times = {r[0] for r in torques} | {r[1] for r in torques} | {r[0] for r in jumps} | {release[0]}
     breaks = sorted(t for t in times if 0 < t < lasts)
     return Events(np.array(torques, float).reshape(-1, outcome.TORQUE_SIZE),
-                  np.array(jumps, float).reshape(-1, outcome.JUMP_SIZE), np.array(breaks, float), *release, lasts, longest)
+                  np.array(jumps, float).reshape(-1, outcome.JUMP_SIZE), np.array(breaks, float), *release, lasts, longest,
+                  ideal_sensor() if sensor is None else sensor, seed)
 
 
 @dataclass

@@ -135,7 +135,7 @@ def test_stored_momentum_is_shared_by_capacity():
     machine = read_machine("plants/trellis-scout.yaml")
     plant = build_plant(machine, build_stance(machine, "on-fore-right"))
     from balance.simulate.events import happening
-    X = start_state(plant, happening(Trial(start=Start(0.0, 0.0, 0.4)), "outward", 1e-4))
+    X = start_state(plant, happening(Trial(start=Start(0.0, 0.0, 0.4)), "outward", 1e-4, np.zeros(0), 0))
     speeds = X[2::2]
     assert plant.unit_parameters[:, at.COUPLING] @ speeds == pytest.approx(0.4, rel=1e-12)
     assert abs(speeds[0]) == pytest.approx(abs(speeds[1]), rel=1e-9)              # equal wheels: equal speeds
