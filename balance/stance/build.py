@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-from difflib import get_close_matches
 from math import atan2, cos, hypot
 
 import numpy as np
 from numpy.typing import NDArray
 
 from balance.base.errors import InputError
+from balance.base.words import did_you_mean, listed
 from balance.machine.legs import Feet
 from balance.machine.machine import Machine, StancePlan
 from balance.maths.contact_line import line_axes
@@ -37,9 +37,8 @@ def build_stance(machine: Machine, name: str) -> Stance:
         ground.
     """
     if name not in machine.stance_names():
-        near = get_close_matches(name, machine.stance_names(), 1)
-        raise InputError([problem(machine, "stances", name, ", ".join(machine.stance_names()),
-                                  f"did you mean {near[0]}?" if near else "")])
+        names = machine.stance_names()
+        raise InputError([problem(machine, "stances", name, listed(names), did_you_mean(name, names))])
     check_rotors(machine)
     if machine.lumped is not None:
         return lumped_stance(machine, machine.lumped)

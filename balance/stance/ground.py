@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-from difflib import get_close_matches
 from math import atan2
 
 import numpy as np
 from numpy.typing import NDArray
 
 from balance.base.errors import InputError, Problem
+from balance.base.words import did_you_mean, listed
 from balance.machine.machine import Machine, StancePlan
 from balance.maths.contact_line import is_outward_reversed, line_axes
 from balance.stance.problems import millimetres, problem
@@ -97,9 +97,8 @@ def _names(machine: Machine, name: str, plan: StancePlan) -> list[Problem]:
     for place, feet in (("down", plan.down), ("lifted", lifted)):
         for foot in feet:
             if legs and foot not in legs:
-                near = get_close_matches(foot, legs, 1)
-                hint = f"did you mean {near[0]}?" if near else "every foot belongs to a leg of its name"
-                found.append(problem(machine, f"stances.{name}.{place}.{foot}", foot, ", ".join(legs), hint))
+                hint = did_you_mean(foot, legs) or "every foot belongs to a leg of its name"
+                found.append(problem(machine, f"stances.{name}.{place}.{foot}", foot, listed(legs), hint))
     found += [problem(machine, f"stances.{name}.lifted.{foot}", foot, "a foot that is not down",
                       "a foot stands or is lifted")
               for foot in lifted if foot in plan.down]
