@@ -87,3 +87,27 @@ def test_levelling_moves_no_torque_about_the_line():
     out, _ = shared(0.3, [0.5, 1.0], [9.0, 9.0], line, levelling, y)
     assert line @ out == pytest.approx(0.3, rel=1e-12)
     assert out[0] != pytest.approx(0.15)
+
+
+def test_back_calculation_stands_at_its_closed_form():
+    """Reference 8.04: u = u_sat + T_t K_i e = 4.8 while saturated. Åström & Hägglund, "PID Controllers" (from memory).
+
+    u = K_p e + I, I' = K_i e + (sat(u) - u)/T_t as a law of ours at 1 ms: x = I, v = x + K_p e, and the memory moves by
+    T (K_i e + (v' - v)/T_t); the standing value does not depend on T.
+    """
+    kp, ki, tt, e, T = 72.8, 72.0, 0.25, 0.1, 1e-3
+    A, B, E = np.array([[1.0 - T / tt]]), np.array([[T * ki - T / tt * kp]]), np.array([T / tt])
+    x, spare, v = np.zeros(1), np.zeros(1), 0.0
+    for _ in range(5000):                                         # 20 T_t: e^{-20} = 2e-9 of the way left
+        v, cut = law_tick(x, np.array([e]), A, B, E, np.ones(1), np.array([kp]), 3.0, spare)
+    assert v == pytest.approx(4.8, rel=1e-8)
+    assert cut == 3.0
+
+
+def test_without_back_calculation_it_winds_up():
+    """The twin: the same integrator that does not see the limit grows for ever."""
+    x, v = np.zeros(1), 0.0
+    for _ in range(5000):
+        v, _ = law_tick(x, np.array([0.1]), np.ones((1, 1)), np.array([[72e-3]]), np.zeros(1), np.ones(1),
+                        np.array([72.8]), 3.0, np.zeros(1))
+    assert v > 40.0
