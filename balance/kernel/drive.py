@@ -40,7 +40,7 @@ SLACK = 1e-9
 """Relative excess below which a command that equals its limit does not count as limited."""
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", forceinline=True)
 def limiter_gain(units: Array, i: int) -> float:
     """Return the speed limiter's gain in 1/s: a quarter of the current loop's bandwidth, at most LIMITER_GAIN."""
     return float(min(0.25 * units[i, CURRENT_LAG], LIMITER_GAIN))
@@ -60,7 +60,7 @@ def current_window(units: Array, i: int, speed: float) -> tuple[float, float]:
     return min(max(low, -most), most), min(max(high, -most), most)
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", forceinline=True)
 def current_target(units: Array, i: int, speed: float, command: float) -> tuple[float, int]:
     """Return the current in A the loop heads for under a torque command in N·m, and the limit that cut it."""
     met = outcome.NO_LIMIT
@@ -111,7 +111,7 @@ def gimbal_torque(units: Array, i: int, angle: float, rate: float, lean_rate: fl
     return torque, met
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", forceinline=True)
 def gimbal_rate(units: Array, i: int, command: float) -> tuple[float, int]:
     """Return the rate in rad/s a position servo is asked for, and the limit that cut it."""
     most = units[i, RATE_LIMIT]
@@ -119,7 +119,7 @@ def gimbal_rate(units: Array, i: int, command: float) -> tuple[float, int]:
     return min(max(command, -most), most), met
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", forceinline=True)
 def unit_input(units: Array, i: int, first: float, second: float, lean_rate: float,
                command: float) -> tuple[float, float, int]:
     """Return (input of the equations of motion, rate of the second state, limit met) of one unit.

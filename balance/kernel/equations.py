@@ -44,14 +44,14 @@ from balance.kernel.layout import (
 Array = NDArray[np.float64]
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", forceinline=True)
 def gravity_torque(theta: float, body: Array) -> float:
     """Return M(θ) in N·m, rolling feet of radius r included: G_s − m g r in place of G_s."""
     rolled = body[STIFF_SIN] - body[MASS] * body[GRAVITY] * body[FOOT_RADIUS]
     return float(rolled * np.sin(theta) + body[STIFF_COS] * np.cos(theta))
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", forceinline=True)
 def rolling(theta: float, theta_dot: float, body: Array) -> tuple[float, float]:
     """Return (what a foot ball adds to J(θ), what it adds to the torque); both 0 for point feet.
 
@@ -65,7 +65,7 @@ def rolling(theta: float, theta_dot: float, body: Array) -> tuple[float, float]:
     return -2.0 * m * r * (h * (1.0 - c) + d * s), m * r * (h * s + d * c) * theta_dot**2
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", forceinline=True)
 def wheel_drag(speed: float, coulomb: float, viscous: float) -> float:
     """Return f(Ω) in N·m. Coulomb drag fades linearly below 1 rad/s: no stiction, no chatter."""
     return coulomb * min(max(speed, -1.0), 1.0) + viscous * speed
@@ -96,7 +96,7 @@ def gimbal_terms(i: int, gamma: float, gamma_dot: float, theta_dot: float,
     return added, torque, coupling, push
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", forceinline=True)
 def lean_acceleration(X: Array, inputs: Array, disturbance: float, body: Array, units: Array, out: Array) -> float:
     """Return θ̈; `out[3 + 2i]` in: NaN, or ±torque of a servo at its limit; out: the gimbals' drive torque."""
     added, push = rolling(X[0], X[1], body)
@@ -120,7 +120,7 @@ def lean_acceleration(X: Array, inputs: Array, disturbance: float, body: Array, 
     return float(torque / mass)
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", forceinline=True)
 def derivative(X: Array, inputs: Array, disturbance: float, body: Array, units: Array, out: Array) -> None:
     """Fill `out` with dX/dt. inputs (units,): wheel torque, torque per gimbal, or commanded gimbal rate.
 
@@ -145,7 +145,7 @@ def derivative(X: Array, inputs: Array, disturbance: float, body: Array, units: 
         unit_rates(i, X, inputs[i], acceleration, units, out)
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", forceinline=True)
 def servo_torque(i: int, X: Array, rate: float, acceleration: float, units: Array) -> float:
     """Return the drive torque per gimbal in N·m that a servo needs to follow a commanded rate."""
     _, _, coupling, back = gimbal_terms(i, X[2 + 2 * i], X[3 + 2 * i], X[1], units)
@@ -153,7 +153,7 @@ def servo_torque(i: int, X: Array, rate: float, acceleration: float, units: Arra
     return float(units[i, GIMBAL_INERTIA] * wanted + coupling * acceleration - back)
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", forceinline=True)
 def unit_rates(i: int, X: Array, given: float, acceleration: float, units: Array, out: Array) -> None:
     """Fill the two rates of unit i. A wheel's second state, its current, belongs to the drive: rate 0 here."""
     if units[i, KIND] == WHEEL:

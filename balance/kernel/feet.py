@@ -11,7 +11,7 @@ from balance.kernel.layout import GRAVITY, HEIGHT, MASS, OFFSET
 Array = NDArray[np.float64]
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", forceinline=True)
 def foot_forces(X: Array, dX: Array, body: Array) -> tuple[float, float]:
     """Return (force across the line along w, sum of the normal forces) on the whole machine in N, point feet.
 

@@ -29,7 +29,7 @@ Array = NDArray[np.float64]
 Flags = NDArray[np.int64]
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", forceinline=True)
 def line_torque(X: Array, dX: Array, units: Array) -> float:
     """Return T = dq/dt in N·m: the torque about the line all units take from the body."""
     total = 0.0
@@ -42,7 +42,7 @@ def line_torque(X: Array, dX: Array, units: Array) -> float:
     return total
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", forceinline=True)
 def line_momentum(X: Array, units: Array) -> float:
     """Return q in N·m·s: the momentum about the line stored in all units (a gimbal at angle zero stores none)."""
     total = 0.0
@@ -78,7 +78,7 @@ def available(X: Array, units: Array, sign: float) -> float:
     return total
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", forceinline=True)
 def bus_power(X: Array, dX: Array, units: Array) -> tuple[float, float]:
     """Return (electrical power of wheels plus mechanical power of gimbal drives in W, largest |current| in A).
 
@@ -98,7 +98,7 @@ def bus_power(X: Array, dX: Array, units: Array) -> tuple[float, float]:
     return power, current
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", forceinline=True)
 def watch(t: float, h: float, X: Array, dX: Array, body: Array, units: Array, met: Flags, metrics: Array,
           first: Array) -> None:
     """Gather the metrics of one sub-step of length h that starts at t (h = 0: only the peaks)."""
@@ -125,7 +125,7 @@ def watch(t: float, h: float, X: Array, dX: Array, body: Array, units: Array, me
         metrics[outcome.SATURATED] += h
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", forceinline=True)
 def note(t: float, stored: float, row: int, limit: int, first: Array) -> None:
     """Keep the time and the stored momentum when a limit was met first."""
     if t < first[row, limit, 0]:

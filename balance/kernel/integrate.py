@@ -1,6 +1,7 @@
 """How one sub-step is made: rates of the whole machine, and classic Runge-Kutta of order four.
 
-The arrays are handed in one by one: compiled code takes a bundle apart again at every call, and these are hot.
+The arrays are handed in one by one: compiled code takes a bundle apart again at every call, and these are hot. So is
+`forceinline` here and in what is called from here: a call between compiled functions counts references of every array.
 """
 
 from __future__ import annotations
@@ -52,7 +53,7 @@ def longest_step(units: Array) -> float:
     return h
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", forceinline=True)
 def disturbance_at(t: float, active: Array, count: int) -> float:
     """Return the torque about the line in N·m at time t from the first `count` rows of `active`."""
     total = 0.0
@@ -64,7 +65,7 @@ def disturbance_at(t: float, active: Array, count: int) -> float:
     return total
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", forceinline=True)
 def rates(X: Array, torque: float, commands: Array, body: Array, live: Array, met: Flags, inputs: Array,
           slopes: Array, out: Array) -> None:
     """Fill `out` with dX/dt under held commands and a torque about the line; `met` with each unit's limit."""
@@ -118,7 +119,7 @@ def march(X: Array, begin: float, h: float, steps: int, commands: Array, active:
     return steps, outcome.RAN
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", forceinline=True)
 def settle_currents(X: Array, inputs: Array, live: Array, met: Flags, held: Flags) -> None:
     """Show the current of wheels without a current lag (no state of its own), and that a held gimbal is limited."""
     for i in range(live.shape[0]):
@@ -128,7 +129,7 @@ def settle_currents(X: Array, inputs: Array, live: Array, met: Flags, held: Flag
             met[i] = outcome.STOP
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", forceinline=True)
 def beyond_stop(X: Array, units: Array, held: Flags) -> int:
     """Return the first gimballed unit that is past its stop and not held there, or -1."""
     for i in range(units.shape[0]):
@@ -137,7 +138,7 @@ def beyond_stop(X: Array, units: Array, held: Flags) -> int:
     return -1
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", forceinline=True)
 def ended(X: Array, body: Array) -> int:
     """Return how the trial has ended in this state (RAN: it has not)."""
     lean = X[0] - body[BALANCED]
