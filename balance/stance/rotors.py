@@ -102,6 +102,23 @@ def stabiliser_bodies(name: str, unit_: Stabiliser, motors: Mapping[str, Motor] 
     return [Body(name, mass, at, I_own)]
 
 
+def spin_about_line(machine: Machine, e_T: Array) -> float:
+    """Return what locking the rotors adds to an inertia about the line `e_T` (3,) with them free to spin (kg·m²).
+
+    A wheel α²(I + sN J_r)²/(I + N² J_r) — I α² where nothing is geared — and I_s σ² per gimballed rotor.
+    """
+    added = 0.0
+    for unit_ in machine.stabilisers.values():
+        if isinstance(unit_, ReactionWheel):
+            drive = wheel_drive(unit_, machine.motors)
+            added += float(unit(unit_.axis) @ e_T) ** 2 * drive.coupled**2 / drive.own
+        else:
+            s_T, _, _ = faced_axes(unit_, e_T)
+            count = 2 if isinstance(unit_, ScissoredPair) else 1
+            added += count * rotor_mass(unit_.rotor).spin * float(s_T @ e_T) ** 2
+    return added
+
+
 def frame_tensor(unit_: GimballedFlywheel) -> Array:
     """Return one gimbal frame's tensor (3, 3) at angle zero, in the axes of the file.
 
