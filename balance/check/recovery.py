@@ -28,9 +28,19 @@ def judge_outcome(goal: Goal, design: Design, result: TrialResult) -> Verdict:
     limit = "recovered or touched down" if may_touch else "recovered"
     reason = result.reason
     if not passed:
-        more = what_it_needs(design, goal, result.name, trial, result.toward)
+        more = _advice(goal, design, result)
         reason = f"{reason}; {more}" if reason else more
     return Verdict(f"{result.name} {result.toward}", result.stance, result.verdict, "", limit, "is", passed, reason)
+
+
+def _advice(goal: Goal, design: Design, result: TrialResult) -> str:
+    """Return what a trial that is not passed would have needed."""
+    if not design.margins.stable:
+        return "the closed loop is unstable: no stabiliser is large enough for this law"
+    if result.verdict == "did not settle" and not result.reason:
+        return (f"still at {math.degrees(result.end_lean):.2g}° and {result.end_momentum:.2g} N·m·s at the end, no limit "
+                "met: the law is too slow for the time the trial lasts, or swings")
+    return what_it_needs(design, goal, result.name, goal.trials[result.name], result.toward)
 
 
 def _worst_cases(goal: Goal, design: Design, trials: Sequence[TrialResult]) -> list[Verdict]:

@@ -215,3 +215,24 @@ def _without_drag(rows):
     rows = rows.copy()
     rows[:, at.COULOMB] = rows[:, at.VISCOUS] = 0.0
     return rows
+
+
+def test_a_trial_of_an_unstable_loop_blames_the_law(rig):
+    _, goal, design = rig
+    unstable = replace(design, margins=replace(design.margins, stable=False))
+    fallen = run_one(design, goal, "shove", Trial(start=Start(math.radians(29.0))), "outward", False)
+    verdict = next(v for v in judge(goal, [unstable], [fallen]) if v.name == "shove outward")
+    assert "the closed loop is unstable" in verdict.reason
+    assert "found by running" not in verdict.reason
+
+
+def test_too_short_a_trial_is_not_answered_with_a_larger_wheel(rig):
+    """Half a second is not enough to settle in; more momentum would not help, and is not advised."""
+    _, goal, design = rig
+    trial = Trial(start=Start(math.radians(1.0)), lasts=0.5)
+    asked = replace(goal, trials={"brief": trial}, require=Requirements())
+    result = run_one(design, asked, "brief", trial, "outward", False)
+    assert (result.verdict, result.reason) == ("did not settle", "")
+    verdict = judge(asked, [design], [result])[1]
+    assert not verdict.passed
+    assert "too slow for the time the trial lasts" in verdict.reason
