@@ -11,6 +11,7 @@ from balance.design.limits import loop_limits
 from balance.design.loop import SampledPlant, actuator_break, close, sample_plant
 from balance.design.lqr import command_unit, lqr_law
 from balance.design.margins import UNSTABLE, margins_of
+from balance.design.pid import design_pid
 from balance.design.records import Design, Response
 from balance.design.sampled_margins import at_actuator
 from balance.goal.goal import Goal, LqrControl, PidControl
@@ -42,7 +43,7 @@ def design_stance(plant: Plant, goal: Goal) -> Design:
 def _law(plant: Plant, sampled: SampledPlant, goal: Goal) -> Law | str:
     """Return the law or why there is none."""
     if isinstance(goal.control, PidControl):
-        return "PID: not built yet"
+        return design_pid(plant, sampled, goal)
     limits = loop_limits(plant, sampled.sample_time, sampled.latency)
     try:
         return lqr_law(plant, sampled, goal.control)
@@ -54,7 +55,8 @@ def _law(plant: Plant, sampled: SampledPlant, goal: Goal) -> Law | str:
 def equivalent(poles: NDArray[np.complex128], sample_time: float) -> NDArray[np.complex128]:
     """Return ln(z)/T in rad/s; poles at z = 0 (pure delay) become −inf."""
     with np.errstate(divide="ignore"):
-        return (np.log(poles) / sample_time).astype(np.complex128)
+        rates = np.log(np.abs(poles)) / sample_time
+    return (rates + 1j * np.angle(poles) / sample_time).astype(np.complex128)
 
 
 def response(sampled: SampledPlant, law: Law) -> Response:
