@@ -1,0 +1,66 @@
+"""The machine drawn to scale, from above and along its contact line."""
+
+from __future__ import annotations
+
+import os
+import tempfile
+from collections.abc import Sequence
+
+from matplotlib.figure import Figure
+
+from balance.machine.machine import Machine
+from balance.plant.record import Plant
+from balance.report.figures.palette import WIDTH, as_bytes, ink, plain, sheet
+from balance.report.figures.views import fill_side, fill_top, key
+from balance.report.outline import Drawing, outline
+from balance.stance.record import Stance
+
+
+def draw_machine(machine: Machine, stances: Sequence[Stance], plants: Sequence[Plant]) -> Figure:
+    """Draw every stance in a row of its own: top view left, side view along the contact line right, axes in mm.
+
+    `plants` go with `stances` one by one; a stance without a plant shows no stabiliser.
+    """
+    drawings = [outline(machine, stance, plants[i] if i < len(plants) else None) for i, stance in enumerate(stances)]
+    rows = len(drawings)
+    with ink():
+        height = 4.6 * rows + 0.6
+        figure, axes = sheet(height, rows=rows, columns=2, width=2 * WIDTH)
+        figure.subplots_adjust(left=0.075, right=0.985, top=1 - 0.35 / height, bottom=1.05 / height, wspace=0.2, hspace=0.3)
+        for i, drawing in enumerate(drawings):
+            fill_top(axes[2 * i], drawing)
+            axes[2 * i].set_title(f"{plain(drawing.machine)}, {plain(drawing.stance)}", loc="left")
+            fill_side(axes[2 * i + 1], drawing)
+        if drawings:
+            figure.legend(handles=key(drawings[0]), loc="lower center", ncols=4, fontsize=7.5)
+    return figure
+
+
+def draw_view(drawing: Drawing, which: str) -> Figure:
+    """Draw one view ("top" or "side") of one stance, for a page of two columns."""
+    with ink():
+        figure, (axes,) = sheet(5.0)
+        figure.subplots_adjust(left=0.15, right=0.97, top=0.94, bottom=0.2)
+        if which == "top":
+            fill_top(axes, drawing)
+        else:
+            fill_side(axes, drawing)
+        figure.legend(handles=key(drawing), loc="lower center", ncols=2, fontsize=7.5)
+    return figure
+
+
+def write_machine_figure(machine: Machine, stances: Sequence[Stance], plants: Sequence[Plant], path: str) -> str:
+    """Write `draw_machine` to `path`, as PNG or SVG by its ending (anything else: SVG), whole or not at all."""
+    kind = "png" if path.lower().endswith(".png") else "svg"
+    drawn = as_bytes(draw_machine(machine, stances, plants), kind)
+    folder = os.path.dirname(os.path.abspath(path))
+    os.makedirs(folder, exist_ok=True)
+    handle, unfinished = tempfile.mkstemp(dir=folder, prefix=".drawing-")
+    try:
+        with os.fdopen(handle, "wb") as file:
+            file.write(drawn)
+        os.replace(unfinished, path)
+    except BaseException:
+        os.unlink(unfinished)
+        raise
+    return path

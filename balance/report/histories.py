@@ -1,0 +1,121 @@
+"""The trials as curves to draw: both directions of one trial side by side, with its events."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from balance.design.records import Design
+from balance.goal.trials import Trial
+from balance.kernel.layout import FELL
+from balance.simulate.records import Trace, TrialResult
+
+Array = NDArray[np.float64]
+MOST_POINTS = 900
+"""Points kept per curve: twice what a column of a page can show."""
+
+
+@dataclass(frozen=True)
+class Event:
+    """What was done to the machine: at one instant (`until` equal to `since`) or over a time, in s."""
+
+    since: float
+    until: float
+    words: str
+
+
+@dataclass(frozen=True)
+class Curves:
+    """One direction of one trial: SI but for the lean, which is in degrees."""
+
+    toward: str
+    verdict: str
+    time: Array        # (n,) s
+    lean: Array        # (n,) degrees
+    torque: Array      # (n,) N·m
+    limit: Array       # (n,) N·m, available at that moment
+    momentum: Array    # (n,) N·m·s
+
+
+@dataclass(frozen=True)
+class TrialPicture:
+    """One trial of one stance. `fell` and `touch_down` are leans in degrees (NaN: none to draw)."""
+
+    name: str
+    stance: str
+    curves: tuple[Curves, ...]
+    capacity: float    # N·m·s
+    fell: float
+    touch_down: float
+    events: tuple[Event, ...]
+    end: float         # s, of the simulated time asked for
+
+
+def events_of(trial: Trial | None) -> tuple[Event, ...]:
+    """List what happens in a trial, in order of time."""
+    if trial is None:
+        return ()
+    found = []
+    if trial.push:
+        found.append(Event(trial.push.start, trial.push.start + trial.push.lasts, "push"))
+    if trial.torque:
+        lasts = trial.lasts if trial.torque.lasts is None else trial.torque.lasts
+        found.append(Event(trial.torque.start, min(trial.torque.start + lasts, trial.lasts), "torque"))
+    if trial.start:
+        found.append(Event(0.0, 0.0, "start"))
+    if trial.offset:
+        found.append(Event(trial.offset.at, trial.offset.at, "load shifts"))
+    if trial.lift_off:
+        found.append(Event(trial.lift_off.at, trial.lift_off.at, "lift-off"))
+    if trial.swing:
+        found.append(swing_event(trial))
+    return tuple(sorted(found, key=lambda event: event.since))
+
+
+def swing_event(trial: Trial) -> Event:
+    """The time the leg swings, from the table of points or the sine."""
+    assert trial.swing is not None
+    if trial.swing.points:
+        return Event(trial.swing.points[0][0], trial.swing.points[-1][0], "leg swings")
+    return Event(trial.swing.start, trial.swing.start + (trial.swing.lasts or 0.0), "leg swings")
+
+
+def kept(trace: Trace) -> NDArray[np.intp]:
+    """Choose the samples to draw: the largest and smallest lean, torque and momentum of each stretch are among them."""
+    count = trace.time.size
+    if count <= MOST_POINTS:
+        return np.arange(count)
+    edges = np.linspace(0, count, MOST_POINTS // 6 + 1).astype(int)
+    chosen = {0, count - 1}
+    for a, b in zip(edges[:-1], edges[1:], strict=True):
+        for curve in (trace.lean, trace.torque, trace.momentum):
+            chosen.update((a + int(np.argmin(curve[a:b])), a + int(np.argmax(curve[a:b]))))
+    return np.array(sorted(chosen))
+
+
+def curves_of(result: TrialResult, trace: Trace) -> Curves:
+    """One direction, thinned for drawing."""
+    keep = kept(trace)
+    return Curves(result.toward, result.verdict, trace.time[keep], np.degrees(trace.lean[keep]),
+                  trace.torque[keep], trace.torque_limit[keep], trace.momentum[keep])
+
+
+def picture_trials(design: Design, trials: tuple[TrialResult, ...], planned: dict[str, Trial]) -> tuple[TrialPicture, ...]:
+    """Gather the pictures of one stance's trials, in the order they ran; trials without a recording have none."""
+    stance = design.plant.stance
+    catch = stance.touch_down_lean
+    lean = math.nan if catch is None else math.degrees(-catch - design.plant.balanced_lean)
+    pictures = []
+    for name in dict.fromkeys(t.name for t in trials if t.stance == stance.name):
+        mine = tuple(curves_of(t, t.trace) for t in trials
+                     if t.name == name and t.stance == stance.name and t.trace is not None and t.trace.time.size)
+        plan = planned.get(name)
+        if mine:
+            pictures.append(TrialPicture(
+                name, stance.name, mine, design.plant.momentum_capacity,
+                math.degrees(design.plant.body_parameters[FELL]), lean, events_of(plan),
+                plan.lasts if plan else float(max(c.time[-1] for c in mine))))
+    return tuple(pictures)
