@@ -146,7 +146,7 @@ def ended(X: Array, body: Array) -> int:
         return outcome.TOUCHED_DOWN
     if lean > body[FELL]:
         return outcome.FELL_OUTWARD
-    if lean < -body[FELL]:
+    if not lean >= -body[FELL]:            # a state that is no number has fallen too, never recovered
         return outcome.FELL_INWARD
     return outcome.RAN
 

@@ -33,7 +33,7 @@ def settling_time(time: Array, lean: Array, target: float, quiet_from: float) ->
     zero unless a torque or a moved centre of mass stays on. There the wheels keep a steady speed and gravity, not
     a motor, carries the load.
     """
-    if not math.isfinite(target):
+    if not math.isfinite(target) or time[-1] - quiet_from < STAYS:
         return math.inf
     band = max(SETTLED_SHARE * float(np.max(np.abs(lean))), SETTLED_LEAST)
     outside = np.flatnonzero((np.abs(lean - target) > band) & (time >= quiet_from - 1e-12))

@@ -119,6 +119,11 @@ def test_how_a_fall_ends(lean, touch, end):
     assert ran.metrics[outcome.END_TIME] == ran.trace[-1, outcome.TIME]
 
 
+def test_what_is_no_number_is_never_a_recovery():
+    ran = run(body(), wheel(), law(), events(0.1), X=[np.nan, 0.0, 0.0, 0.0])
+    assert ran.end != outcome.RAN
+
+
 def test_touch_down_counts_from_the_pose_not_from_the_balanced_lean():
     b = body(side=1.2, touch_down=0.2)                            # balanced at -0.0997 rad
     ran = run(b, wheel(), law(), events(3.0), X=[b[at.BALANCED] - 0.02, 0.0, 0.0, 0.0])

@@ -46,6 +46,13 @@ def test_it_settles_at_the_lean_that_gravity_balances():
     assert settling_time(TIME, lean, math.nan, 0.0) == math.inf   # nothing balances: it cannot
 
 
+def test_a_trial_that_ends_with_its_last_event_shows_nothing():
+    lean = np.zeros_like(TIME)
+    assert settling_time(TIME, lean, 0.0, 4.0) == 0.0
+    assert settling_time(TIME, lean, 0.0, 4.9) == math.inf
+    assert settling_time(TIME, lean, 0.0, 7.0) == math.inf
+
+
 def test_time_to_full():
     assert time_to_full(TIME, 0.01 * TIME, 0.10) == pytest.approx(5.0, rel=1e-6)
     assert time_to_full(TIME, -0.01 * TIME, 0.10) == pytest.approx(5.0, rel=1e-6)
