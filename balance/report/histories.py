@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -90,7 +91,7 @@ def kept(trace: Trace) -> NDArray[np.intp]:
         return np.arange(count)
     edges = np.linspace(0, count, MOST_POINTS // 6 + 1).astype(int)
     chosen = {0, count - 1}
-    for a, b in zip(edges[:-1], edges[1:], strict=True):
+    for a, b in pairwise(edges):
         for curve in (trace.lean, trace.torque, trace.momentum):
             chosen.update((a + int(np.argmin(curve[a:b])), a + int(np.argmax(curve[a:b]))))
     return np.array(sorted(chosen))

@@ -23,7 +23,7 @@ a { color: #17456e; }
 table { border-collapse: collapse; font-size: .8rem; margin: .5rem 0 .2rem; font-variant-numeric: tabular-nums; }
 caption { text-align: left; font-weight: bold; padding: .2rem 0; }
 th, td { text-align: left; vertical-align: top; padding: .22rem .7rem .22rem 0; border-bottom: 1px solid #c9ced4; }
-td:not(.words) { white-space: nowrap; } td.words { min-width: 16rem; }
+td:not(.words), tbody th { white-space: nowrap; } td.words { min-width: 16rem; }
 tr.unmet th, tr.unmet td { background: #fbeee6; } tr.unmet th::before { content: "✗ "; color: #c4571a; }
 tr.met th::before { content: "✓ "; color: #17456e; }
 .note { font-size: .86rem; color: #454f5b; margin: .2rem 0 1rem; max-width: 48rem; }

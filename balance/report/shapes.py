@@ -20,6 +20,7 @@ from balance.machine.solids import (
     Tube,
 )
 from balance.machine.stabilisers import GimballedFlywheel, ReactionWheel, Rotor, ScissoredPair
+from balance.maths.rotations import turned
 from balance.plant.record import Unit
 
 Array = NDArray[np.float64]
@@ -57,12 +58,13 @@ def round_points(diameter: float, length: float, along: str) -> Array:
     return points.reshape(-1, 3)
 
 
-def solid_points(solid: Solid) -> Array:
+def solid_points(solid: Solid) -> Array:  # noqa: PLR0911 - one return per kind
     """Points on a solid's surface about its own centre, (k, 3) m."""
     match solid:
         case Box():
             corners = np.array([[x, y, z] for x in (-1, 1) for y in (-1, 1) for z in (-1, 1)])
-            return 0.5 * corners * np.asarray(solid.box)
+            half: Array = 0.5 * corners * np.asarray(solid.box)
+            return half
         case Cylinder(size) | Disc(size):
             return round_points(size.diameter, size.length, size.along)
         case Tube(hollow) | Ring(hollow):
@@ -79,20 +81,11 @@ def solid_points(solid: Solid) -> Array:
             return np.zeros((1, 3))
 
 
-def turn_matrix(angles: tuple[float, float, float]) -> Array:
-    """R = Rz·Ry·Rx of [roll, pitch, yaw] in rad."""
-    (cr, cp, cy), (sr, sp, sy) = np.cos(angles), np.sin(angles)
-    rx = np.array([[1, 0, 0], [0, cr, -sr], [0, sr, cr]])
-    ry = np.array([[cp, 0, sp], [0, 1, 0], [-sp, 0, cp]])
-    rz = np.array([[cy, -sy, 0], [sy, cy, 0], [0, 0, 1]])
-    R: Array = rz @ ry @ rx
-    return R
-
-
 def part_points(part: Part) -> Array:
     """A body part's surface in the trunk frame, (k, 3) m; one stated by its tensor alone is its centre."""
     own = solid_points(part.solid) if part.solid is not None else np.zeros((1, 3))
-    return own @ turn_matrix(part.turn).T + np.asarray(part.at)
+    placed: Array = own @ turned(*part.turn).T + np.asarray(part.at)
+    return placed
 
 
 def rotor_diameter(rotor: Rotor) -> float | None:

@@ -1,0 +1,1 @@
+"""Drawings: facts and traces in, matplotlib figures out; the only place that knows matplotlib."""

@@ -7,12 +7,23 @@ import math
 import numpy as np
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
-from matplotlib.ticker import MultipleLocator
+from matplotlib.ticker import FuncFormatter, MultipleLocator
+from numpy.typing import ArrayLike, NDArray
 
 from balance.report.figures.palette import DASHED, INK, NAVY, PLUM, RUST, SLATE, ink, sheet
 from balance.report.loops import LoopPicture
 
 HERTZ = 1.0 / math.tau
+
+
+def to_hertz(frequency: ArrayLike) -> NDArray[np.float64]:
+    """Turn rad/s into Hz."""
+    return np.asarray(frequency, dtype=np.float64) * HERTZ
+
+
+def from_hertz(frequency: ArrayLike) -> NDArray[np.float64]:
+    """Turn Hz into rad/s."""
+    return np.asarray(frequency, dtype=np.float64) / HERTZ
 
 
 def draw_bode(picture: LoopPicture) -> Figure:
@@ -26,8 +37,10 @@ def draw_bode(picture: LoopPicture) -> Figure:
         phase.set_ylabel("Phase (°)")
         phase.set_xlabel("Angular frequency (rad/s)")
         phase.set_xlim(picture.frequency[0], 1.15 * picture.nyquist)
-        hertz = gain.secondary_xaxis("top", functions=(lambda w: w * HERTZ, lambda f: f / HERTZ))
+        hertz = gain.secondary_xaxis("top", functions=(to_hertz, from_hertz))
         hertz.set_xlabel("Frequency (Hz)")
+        for axis in (phase.xaxis, hertz.xaxis):
+            axis.set_major_formatter(FuncFormatter(lambda value, _: f"{value:g}"))
         frame(gain, phase, picture)
         mark_half_sampling(gain, phase, picture)
         if picture.stable:

@@ -77,6 +77,7 @@ def as_bytes(figure: Figure, kind: str) -> bytes:
     """Draw a figure as "svg" or "png" bytes; the same figure gives the same bytes."""
     store = io.BytesIO()
     with ink():
-        metadata: dict[str, str | None] = dict.fromkeys(("Date", "Creator", "Format", "Type")) if kind == "svg" else {"Software": None}
+        silent = ("Date", "Creator", "Format", "Type") if kind == "svg" else ("Software",)
+        metadata: dict[str, str | None] = dict.fromkeys(silent)
         figure.savefig(store, format=kind, dpi=160, metadata=metadata)
     return store.getvalue()

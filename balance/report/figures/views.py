@@ -39,7 +39,8 @@ def fill_top(axes: Axes, drawing: Drawing) -> None:
     middle = view.line.mean(axis=0)
     tip = middle + 0.13 * size * drawing.outward
     axes.annotate("", tip, middle, arrowprops={"arrowstyle": "-|>", "color": RUST, "lw": 1.2, "shrinkA": 0}, zorder=7)
-    axes.annotate("outward", tip, 7 * drawing.outward, textcoords="offset points", fontsize=7, color=RUST, zorder=9,
+    off = (7.0 * float(drawing.outward[0]), 7.0 * float(drawing.outward[1]))
+    axes.annotate("outward", (tip[0], tip[1]), off, textcoords="offset points", fontsize=7, color=RUST, zorder=9,
                   ha=side_of(drawing.outward[0]), va=level_of(drawing.outward[1]))
     draw_axles(axes, view, size)
     draw_feet(axes, view)
@@ -69,8 +70,8 @@ def fill_side(axes: Axes, drawing: Drawing) -> None:
 
 def frame(axes: Axes, view: View) -> float:
     """Fit everything at equal scale and return the size of the larger side in mm."""
-    pieces = [*view.parts, *view.rotors, *(leg.joints for leg in view.legs), *(place.reshape(1, 2) for _, _, place in view.feet),
-              view.line, view.centre.reshape(1, 2), view.balanced.reshape(1, 2), *(a.at.reshape(1, 2) for a in view.axles)]
+    pieces = [*view.parts, *view.rotors, *(leg.joints for leg in view.legs),
+              *(place.reshape(1, 2) for _, _, place in view.feet), view.line, view.centre.reshape(1, 2), view.balanced.reshape(1, 2), *(a.at.reshape(1, 2) for a in view.axles)]
     cloud = np.concatenate([p for p in pieces if len(p)])
     low, high = cloud.min(axis=0), cloud.max(axis=0)
     size = float(max(*(high - low), 1.0))
@@ -141,8 +142,8 @@ def write_unit(axes: Axes, axle: Axle, reach: float, row: int) -> None:
     facing = float(np.hypot(*axle.along)) < 0.2
     way = axle.along if axle.along[1] >= 0.0 else -axle.along
     end = axle.at if facing else axle.at + reach * way
-    shift = (9.0, 7.0 + 10.0 * row) if facing else tuple(6.0 * way)
-    axes.annotate(plain(axle.name, 20), end, shift, textcoords="offset points", fontsize=7, color=INK, zorder=9,
+    shift = (9.0, 7.0 + 10.0 * row) if facing else (6.0 * float(way[0]), 6.0 * float(way[1]))
+    axes.annotate(plain(axle.name, 20), (end[0], end[1]), shift, textcoords="offset points", fontsize=7, color=INK, zorder=9,
                   bbox=CLEAR, ha="left" if facing else side_of(way[0]), va="bottom" if facing else level_of(way[1]))
 
 
