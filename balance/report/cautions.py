@@ -45,7 +45,8 @@ GENERAL = (
                               "above its largest speed before a person stands near it, and contain it in use."),
     ("Unbalance", "Balance rotors to a grade fit for their speed (ISO 21940-11); unbalance shakes the bearings and blinds "
                   "the gyroscope."),
-    ("Pinch and entanglement", "Legs, gimbals and wheels pinch and pull in cables, hair and cloth; a wheel at rest may start."),
+    ("Pinch and entanglement", "Legs, gimbals and wheels pinch, and pull in cables, hair and cloth; a wheel at rest may "
+                                 "start."),
     ("First tests", "Tether the machine from above so that it cannot reach the floor or a person; keep a stop within reach "
                     "that cuts the drive and lets the wheel run down."),
     ("Battery", "Fuse it, charge it under watch, and leave room for the energy a braking wheel returns: a full battery or a "

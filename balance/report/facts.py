@@ -35,7 +35,7 @@ def machine_table(plants: tuple[Plant, ...]) -> Table:
     ]
     for i, unit in enumerate(plants[0].units):
         what = "cosine between axis and line" if unit.kind == "reaction wheel" else "share of momentum toward the line"
-        rows.append(_across(f"{unit.name}: {what}", plants, lambda p, i=i: figure(abs(p.units[i].axis_share))))
+        rows.append(Row(f"{unit.name}: {what}", tuple(figure(abs(p.units[i].axis_share)) for p in plants)))
     head = ("Quantity", *(p.stance.name for p in plants))
     note = ("Lean is measured from the balanced lean, positive outward: away from the lifted feet. \"Best possible\" is the "
             "closed form for the all-out manoeuvre of a linear machine; no controller can do more.")
@@ -70,8 +70,8 @@ def margin_table(designs: tuple[Design, ...]) -> Table:
         Row("least Mt possible, e^(p·latency)", tuple(figure(d.limits.least_peak_complementary) for d in designs)),
         Row("p × total delay", tuple(figure(d.limits.pole_times_delay) for d in designs)),
     )
-    note = ("Measured on the sampled loop with its delay, broken at the physical torque. The delay margin is the added delay "
-            "that puts an eigenvalue on the unit circle. Linear: no limit of torque, speed or angle is in these numbers.")
+    note = ("Measured on the sampled loop with its delay, broken at the physical torque. The delay margin is the added "
+            "delay that puts an eigenvalue on the unit circle. Linear: no limit of torque, speed or angle is in these numbers.")
     return Table("Stability margins", ("Margin", *(d.plant.stance.name for d in designs)), rows, note)
 
 
@@ -95,7 +95,7 @@ def trial_table(trials: tuple[TrialResult, ...]) -> Table:
     """Return what happened in the trials of one stance."""
     rows = tuple(
         Row(f"{t.name}, {t.toward}", (
-            t.verdict, amount(t.peak_lean, "rad"), amount(t.settling_time, "s") if math.isfinite(t.settling_time) else "never",
+            t.verdict, amount(t.peak_lean, "rad"), _settled(t),
             amount(t.peak_torque, "N*m"), amount(t.torque_saturated, "s"), share(t.momentum_used),
             amount(t.rms_torque, "N*m"), amount(t.peak_bus_power, "W"), figure(t.friction_needed, 2),
             t.reason or "–"), "met" if t.verdict == "recovered" else "unmet")
@@ -103,6 +103,10 @@ def trial_table(trials: tuple[TrialResult, ...]) -> Table:
     head = ("Trial", "Outcome", "Peak lean", "Settled after", "Peak torque", "At a limit", "Momentum used", "RMS torque",
             "Peak power", "Friction needed", "Limits met")
     return Table("What happened", head, rows, "Times count from the last event of the trial.", wordy=True)
+
+
+def _settled(trial: TrialResult) -> str:
+    return amount(trial.settling_time, "s") if math.isfinite(trial.settling_time) else "never"
 
 
 def open_points(result: CheckResult) -> tuple[str, ...]:

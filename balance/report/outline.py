@@ -23,7 +23,7 @@ MM = 1e3
 
 @dataclass(frozen=True)
 class Axle:
-    """A stabiliser's axis through `at` (2,) mm; `along` (2,) is its unit vector flattened, short when it faces the reader."""
+    """A stabiliser's axis through `at` (2,) mm; `along` (2,): its unit vector flattened, short where it faces the reader."""
 
     name: str
     kind: str          # "spin" | "gimbal"

@@ -13,7 +13,8 @@ STYLE = """
 body { margin: 0 auto; max-width: 68rem; padding: 1rem 1.2rem 4rem; color: #20262e; background: #fff;
   font: 16px/1.5 Georgia, "Noto Serif", serif; }
 h1, h2, h3, nav, table, figcaption, summary { font-family: "Noto Sans", "DejaVu Sans", Verdana, sans-serif; }
-h1 { font-size: 1.55rem; margin: .4rem 0; } h2 { font-size: 1.2rem; margin: 2.2rem 0 .5rem; border-bottom: 2px solid #17456e; }
+h1 { font-size: 1.55rem; margin: .4rem 0; }
+h2 { font-size: 1.2rem; margin: 2.2rem 0 .5rem; border-bottom: 2px solid #17456e; }
 h3 { font-size: 1rem; margin: 1.4rem 0 .4rem; }
 .answer { font-size: 1.1rem; padding: .6rem .9rem; border: 2px solid #20262e; border-left-width: .7rem; }
 .answer.met { border-color: #17456e; } .answer.unmet { border-color: #c4571a; }
@@ -86,7 +87,8 @@ def table(data: Table) -> str:
 
 
 def _row(row: Row, wordy: bool) -> str:
-    cells = "".join(f'<td{_words(wordy and i == len(row.cells) - 1)}>{escape(cell)}</td>' for i, cell in enumerate(row.cells))
+    last = len(row.cells) - 1
+    cells = "".join(f"<td{_words(wordy and i == last)}>{escape(cell)}</td>" for i, cell in enumerate(row.cells))
     mark = f' class="{escape(row.mark)}"' if row.mark else ""
     return f'<tr{mark}><th scope="row">{escape(row.label)}</th>{cells}</tr>'
 

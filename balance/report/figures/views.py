@@ -71,7 +71,8 @@ def fill_side(axes: Axes, drawing: Drawing) -> None:
 def frame(axes: Axes, view: View) -> float:
     """Fit everything at equal scale and return the size of the larger side in mm."""
     pieces = [*view.parts, *view.rotors, *(leg.joints for leg in view.legs),
-              *(place.reshape(1, 2) for _, _, place in view.feet), view.line, view.centre.reshape(1, 2), view.balanced.reshape(1, 2), *(a.at.reshape(1, 2) for a in view.axles)]
+              *(place.reshape(1, 2) for _, _, place in view.feet), view.line,
+              view.centre.reshape(1, 2), view.balanced.reshape(1, 2), *(a.at.reshape(1, 2) for a in view.axles)]
     cloud = np.concatenate([p for p in pieces if len(p)])
     low, high = cloud.min(axis=0), cloud.max(axis=0)
     size = float(max(*(high - low), 1.0))
