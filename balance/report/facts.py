@@ -71,7 +71,8 @@ def margin_table(designs: tuple[Design, ...]) -> Table:
         Row("p × total delay", tuple(figure(d.limits.pole_times_delay) for d in designs)),
     )
     note = ("Measured on the sampled loop with its delay, broken at the physical torque. The delay margin is the "
-            "added delay that puts an eigenvalue on the unit circle. Linear: no limit of torque, speed or angle is in these numbers.")
+            "added delay that puts an eigenvalue on the unit circle. Linear: no limit of torque, speed or angle is in "
+            "these numbers.")
     return Table("Stability margins", ("Margin", *(d.plant.stance.name for d in designs)), rows, note)
 
 

@@ -53,6 +53,7 @@ class TrialPicture:
     touch_down: float
     events: tuple[Event, ...]
     end: float         # s, of the simulated time asked for
+    shown: float       # s, after which nothing moves any more
 
 
 def events_of(trial: Trial | None) -> tuple[Event, ...]:
@@ -104,6 +105,23 @@ def curves_of(result: TrialResult, trace: Trace) -> Curves:
                   trace.torque[keep], trace.torque_limit[keep], trace.momentum[keep])
 
 
+def still_after(curves: tuple[Curves, ...], events: tuple[Event, ...], end: float) -> float:
+    """Return the time (s) that is worth drawing: past the last event and until every curve stays at its end value.
+
+    "Stays" is within 2 % of the curve's own range; half as much time again is shown, in round numbers.
+    """
+    last = max((event.until for event in events), default=0.0)
+    for one in curves:
+        if one.time[-1] < 0.98 * end:      # a fall or a touch-down ended it
+            last = max(last, one.time[-1])
+            continue
+        for curve in (one.lean, one.torque, one.momentum):
+            moving = np.flatnonzero(np.abs(curve - curve[-1]) > 0.02 * max(float(np.ptp(curve)), 1e-9))
+            last = max(last, float(one.time[moving[-1]]) if moving.size else 0.0)
+    step = 0.5 if last < 2.0 else 1.0
+    return min(end, max(step, step * math.ceil(1.5 * last / step)))
+
+
 def picture_trials(design: Design, trials: tuple[TrialResult, ...], planned: dict[str, Trial]) -> tuple[TrialPicture, ...]:
     """Gather the pictures of one stance's trials, in the order they ran; trials without a recording have none."""
     stance = design.plant.stance
@@ -115,8 +133,9 @@ def picture_trials(design: Design, trials: tuple[TrialResult, ...], planned: dic
                      if t.name == name and t.stance == stance.name and t.trace is not None and t.trace.time.size)
         plan = planned.get(name)
         if mine:
+            events = events_of(plan)
+            end = plan.lasts if plan else float(max(c.time[-1] for c in mine))
             pictures.append(TrialPicture(
-                name, stance.name, mine, design.plant.momentum_capacity,
-                math.degrees(design.plant.body_parameters[FELL]), lean, events_of(plan),
-                plan.lasts if plan else float(max(c.time[-1] for c in mine))))
+                name, stance.name, mine, design.plant.momentum_capacity, math.degrees(design.plant.body_parameters[FELL]),
+                lean, events, end, still_after(mine, events, end)))
     return tuple(pictures)

@@ -8,11 +8,14 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from balance.design.loop import BrokenLoop, actuator_break, sample_plant
 from balance.design.records import Crossing, Design
 
 Array = NDArray[np.float64]
-MARGINAL = 1e-9
-"""How near the stability boundary an open-loop pole counts as on it: an integrator of the machine is exact to rounding."""
+MARGINAL = 1e-5
+"""How near the unit circle an open-loop pole counts as on it: three integrators together are found to about 1e-5."""
+LOWEST = 1e-8
+"""Where counting starts, as a share of half the sampling frequency: below the slowest bearing drag."""
 
 
 @dataclass(frozen=True)
@@ -47,28 +50,22 @@ class LoopPicture:
     count: Count
 
 
-def unstable_poles(design: Design) -> int:
-    """Count the poles outside the unit circle of the loop broken at the torque: the machine's and the controller's own."""
-    law = design.law
-    machine = int(np.sum(np.linalg.eigvals(design.plant.model.A).real > MARGINAL * design.plant.pole))
-    if not law.memory:
-        return machine
-    own = np.linalg.eigvals(law.A + np.outer(law.E, law.C))
-    return machine + int(np.sum(np.abs(own) > 1.0 + MARGINAL))
+def count_turns(broken: BrokenLoop, lowest: float, frequency: Array, loop: Array) -> Count:
+    """Add up the turns of 1 + L over the whole unit circle, counter-clockwise positive; poles outside it are `needed`.
 
-
-def count_turns(loop: Array, frequency: Array, needed: int) -> Count:
-    """Add up the turns of 1 + L over the whole unit circle, counter-clockwise positive.
-
-    Integrators lie on the contour: it passes them on the outside, which adds half a clockwise turn each.  Their number
-    is the slope of |L| at the lowest frequencies.
+    The drawn response (`frequency` in rad/s, `loop`) is continued down to `lowest`.  Integrators lie on the contour: it
+    passes them on the outside, which adds half a clockwise turn each; their number is the slope of |L| at the low end.
     """
-    angle = np.unwrap(np.angle(1.0 + loop))                                                       # (n,)
-    slope = -math.log(abs(loop[1] / loop[0])) / math.log(frequency[1] / frequency[0])
+    needed = int(np.sum(np.abs(np.linalg.eigvals(broken.A)) > 1.0 + MARGINAL))
+    below = np.geomspace(min(lowest, 0.1 * frequency[0]), frequency[0], 240)[:-1]
+    whole = np.concatenate([broken.response(below), loop])
+    if not np.isfinite(whole).all():
+        return Count(needed, 0, math.nan, False)
+    angle = np.unwrap(np.angle(1.0 + whole))
+    slope = -math.log(abs(whole[1] / whole[0])) / math.log(below[1] / below[0])
     integrators = max(0, round(slope))
     turns = float(2.0 * (angle[-1] - angle[0]) - math.pi * integrators) / math.tau
-    found = round(turns)
-    return Count(needed, found, turns, abs(turns - found) < 0.1)
+    return Count(needed, round(turns), turns, abs(turns - round(turns)) < 0.1)
 
 
 def phase_degrees(loop: Array, magnitude: Array) -> Array:
@@ -88,11 +85,13 @@ def picture_loop(design: Design) -> LoopPicture | None:
     if design.refused or loop.size < 8:
         return None
     magnitude = 20.0 * np.log10(np.abs(loop))
-    margins = design.margins
+    margins, law = design.margins, design.law
+    nyquist = math.pi / law.sample_time
+    broken = actuator_break(sample_plant(design.plant, law.sample_time, law.latency), law)
     return LoopPicture(
         stance=design.plant.stance.name, frequency=frequency, magnitude=magnitude,
-        phase=phase_degrees(loop, magnitude), loop=loop, nyquist=math.pi / design.law.sample_time,
+        phase=phase_degrees(loop, magnitude), loop=loop, nyquist=nyquist,
         stable=margins.stable, modulus=margins.modulus, nearest=complex(loop[int(np.argmin(np.abs(1.0 + loop)))]),
         phase_crossings=tuple(c for c in margins.crossings if c.kind == "phase"),
         gain_crossings=tuple(c for c in margins.crossings if c.kind == "gain" and c.value > 0.0),
-        count=count_turns(loop, frequency, unstable_poles(design)))
+        count=count_turns(broken, LOWEST * nyquist, frequency, loop))

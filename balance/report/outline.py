@@ -13,7 +13,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from balance.machine.machine import Machine
-from balance.plant.record import Plant
+from balance.plant.record import Plant, Unit
 from balance.report.shapes import hull, part_points, rotor_points
 from balance.stance.record import Stance
 
@@ -125,7 +125,7 @@ def view(machine: Machine, stance: Stance, plant: Plant | None, flat: Flat) -> V
         feet=tuple((name, up, flat.points(place)[0]) for name, up, place in feet),
         polygon=hull(flat.points(ground)), line=flat.points(np.array([stance.p_a_W, stance.p_b_W])),
         centre=flat.points(turned(stance, 0.0))[0], balanced=flat.points(turned(stance, lean))[0],
-        axles=axles(stance, plant, flat))
+        axles=axles(machine, stance, plant, flat))
 
 
 def rotors(machine: Machine, stance: Stance, plant: Plant | None, flat: Flat) -> tuple[Array, ...]:
@@ -134,15 +134,21 @@ def rotors(machine: Machine, stance: Stance, plant: Plant | None, flat: Flat) ->
     for unit in plant.units if plant else ():
         if unit.name in machine.stabilisers:
             for points in rotor_points(machine.stabilisers[unit.name], unit):
-                found.append(hull(flat.points(points @ stance.R_WT.T + stance.p_WT)))
+                found.append(hull(flat.points((points - unit.at_T) @ stance.R_WT.T + unit_place(machine, stance, unit))))
     return tuple(found)
 
 
-def axles(stance: Stance, plant: Plant | None, flat: Flat) -> tuple[Axle, ...]:
+def unit_place(machine: Machine, stance: Stance, unit: Unit) -> Array:
+    """Where a unit's centre is, world frame (3,); a machine given by three numbers states no place: its centre of mass."""
+    placed: Array = stance.p_WT + stance.R_WT @ unit.at_T
+    return turned(stance, 0.0) if machine.lumped is not None and not np.any(unit.at_T) else placed
+
+
+def axles(machine: Machine, stance: Stance, plant: Plant | None, flat: Flat) -> tuple[Axle, ...]:
     """Spin and gimbal axes of all units."""
     found = []
     for unit in plant.units if plant else ():
-        at = flat.points(stance.p_WT + stance.R_WT @ unit.at_T)[0]
+        at = flat.points(unit_place(machine, stance, unit))[0]
         found.append(Axle(unit.name, "spin", at, flat.axes @ stance.R_WT @ unit.axis_T))
         if unit.gimbal_axis_T is not None:
             found.append(Axle(unit.name, "gimbal", at, flat.axes @ stance.R_WT @ unit.gimbal_axis_T))

@@ -29,7 +29,7 @@ def from_hertz(frequency: ArrayLike) -> NDArray[np.float64]:
 def draw_bode(picture: LoopPicture) -> Figure:
     """Draw |L| in dB and its phase in degrees over rad/s, with Hz along the top; margins only of a stable loop."""
     with ink():
-        figure, (gain, phase) = sheet(4.3, rows=2, share=True)
+        figure, (gain, phase) = sheet(4.6, rows=2, share=True)
         figure.subplots_adjust(left=0.145, right=0.955, top=0.875, bottom=0.105, hspace=0.14)
         gain.semilogx(picture.frequency, picture.magnitude, color=NAVY)
         phase.semilogx(picture.frequency, picture.phase, color=NAVY)
@@ -83,9 +83,9 @@ def mark_phase(gain: Axes, phase: Axes, picture: LoopPicture) -> None:
     phase.plot([crossing.frequency] * 2, [critical, here], color=RUST, lw=2.2, solid_capstyle="butt")
     phase.plot([crossing.frequency], [here], "o", color=RUST, ms=4)
     gain.plot([crossing.frequency], [0.0], "o", color=RUST, ms=4)
-    phase.annotate(f"phase margin {math.degrees(crossing.value):.1f}°\nat {crossing.frequency:.3g} rad/s",
-                   (crossing.frequency, (critical + here) / 2), (-6, 0), textcoords="offset points", fontsize=7.5,
-                   ha="right", va="center", bbox={"facecolor": "white", "edgecolor": "none", "pad": 0.8, "alpha": 0.9})
+    phase.annotate(f"phase margin {math.degrees(crossing.value):.1f}° at {crossing.frequency:.3g} rad/s",
+                   (crossing.frequency, min(critical, here)), (0, -5), textcoords="offset points", fontsize=7.5,
+                   ha="center", va="top", bbox={"facecolor": "white", "edgecolor": "none", "pad": 0.8, "alpha": 0.9})
 
 
 def mark_gain(gain: Axes, phase: Axes, picture: LoopPicture) -> None:

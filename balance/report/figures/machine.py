@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 import os
 import tempfile
 from collections.abc import Sequence
@@ -39,13 +40,15 @@ def draw_machine(machine: Machine, stances: Sequence[Stance], plants: Sequence[P
 def draw_view(drawing: Drawing, which: str) -> Figure:
     """Draw one view ("top" or "side") of one stance, for a page of two columns."""
     with ink():
-        figure, (axes,) = sheet(5.0)
-        figure.subplots_adjust(left=0.15, right=0.97, top=0.94, bottom=0.2)
+        samples = key(drawing)
+        foot = 0.62 + 0.17 * math.ceil(len(samples) / 2)
+        figure, (axes,) = sheet(4.2 + foot)
+        figure.subplots_adjust(left=0.15, right=0.97, top=1.0 - 0.3 / (4.2 + foot), bottom=foot / (4.2 + foot))
         if which == "top":
             fill_top(axes, drawing)
         else:
             fill_side(axes, drawing)
-        figure.legend(handles=key(drawing), loc="lower center", ncols=2, fontsize=7.5)
+        figure.legend(handles=samples, loc="lower center", ncols=2, fontsize=7.5, borderaxespad=0.2)
     return figure
 
 

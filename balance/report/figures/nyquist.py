@@ -9,54 +9,58 @@ from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 from matplotlib.patches import Circle
 
-from balance.report.figures.palette import DASHED, DOTTED, INK, NAVY, RUST, SLATE, SOLID, ink, sheet
+from balance.report.figures.palette import DASHED, DOTTED, INK, NAVY, RUST, SLATE, SOLID, WIDTH, ink, sheet
 from balance.report.loops import LoopPicture
+
+TALL = 4.6
+"""Inches."""
 
 
 def draw_nyquist(picture: LoopPicture) -> Figure:
     """Draw L and its mirror image near −1; far parts of the curve run out of the picture."""
     with ink():
-        figure, (axes,) = sheet(4.3)
-        figure.subplots_adjust(left=0.13, right=0.97, top=0.86, bottom=0.11)
+        figure, (axes,) = sheet(TALL)
+        figure.subplots_adjust(left=0.13, right=0.97, top=0.865, bottom=0.195)
         frame(axes, picture)
         loop = thinned(picture.loop, axes)
-        axes.plot(loop.real, loop.imag, color=NAVY, ls=SOLID, label="L, rising frequency")
+        axes.plot(loop.real, loop.imag, color=NAVY, ls=SOLID, label="L, frequency rising along the arrows")
         axes.plot(loop.real, -loop.imag, color=NAVY, ls=DASHED, lw=0.9, label="its mirror image")
         arrows(axes, loop)
         turn = np.linspace(0.0, math.tau, 181)
-        axes.plot(np.cos(turn), np.sin(turn), color=SLATE, ls=DOTTED, lw=0.9, label="gain 1")
+        axes.plot(np.cos(turn), np.sin(turn), color=SLATE, ls=DOTTED, lw=1.0, label="gain 1")
         if picture.stable and math.isfinite(picture.modulus):
             axes.add_patch(Circle((-1.0, 0.0), picture.modulus, facecolor=RUST, alpha=0.13, lw=0))
             axes.add_patch(Circle((-1.0, 0.0), picture.modulus, fill=False, edgecolor=RUST, lw=1.1,
-                                  label=f"modulus margin {picture.modulus:.3g}"))
+                                  label=f"modulus circle, radius {picture.modulus:.3g}"))
             axes.plot([-1.0, picture.nearest.real], [0.0, picture.nearest.imag], color=RUST, lw=1.1)
         axes.plot([-1.0], [0.0], "+", color=INK, ms=9, mew=1.8)
         axes.annotate("−1", (-1.0, 0.0), (-4, 5), textcoords="offset points", ha="right", fontsize=8.5)
         axes.set_xlabel("Real part of L (no unit)")
         axes.set_ylabel("Imaginary part of L (no unit)")
-        figure.text(0.03, 0.975, count_words(picture), va="top", fontsize=8, linespacing=1.35)
-        axes.legend(loc="upper right", fontsize=7, handlelength=2.4, frameon=True, framealpha=0.9, edgecolor="none")
+        figure.text(0.03, 0.98, count_words(picture), va="top", fontsize=8, linespacing=1.35)
+        figure.legend(loc="lower center", ncols=2, fontsize=7, handlelength=2.6, borderaxespad=0.2)
     return figure
 
 
 def count_words(picture: LoopPicture) -> str:
     """Say the stability count in two lines."""
     count = picture.count
-    found = f"found {count.found}" if count.sure else f"found {count.turns:.2f}: the response does not reach low enough"
+    found = f"found {count.found}" if count.sure else "not countable on this response"
     end = "stable" if picture.stable else "NOT stable"
     return f"Counter-clockwise turns about −1: needed {count.needed}, {found}.\nThe closed loop is {end}."
 
 
 def frame(axes: Axes, picture: LoopPicture) -> None:
-    """Choose a window about −1 that holds the near part of the curve at equal scale."""
-    near = picture.loop[np.abs(picture.loop) < 4.0]
-    reach = float(np.max(np.abs(near.imag))) if near.size else 1.5
-    half = min(max(reach, 1.25), 2.6) * 1.08
-    left = min(float(np.min(near.real)) if near.size else -2.0, -1.7)
-    left = max(left, -3.4) - 0.15
-    width = 2.0 * half * 0.84 / 0.75 * 4.7 / 4.3
+    """Choose a window at equal scale that holds the modulus circle, the unit circle's right half and the near curve."""
+    radius = picture.modulus if math.isfinite(picture.modulus) else 1.0
+    near = picture.loop[np.abs(picture.loop + 1.0) < 2.6]
+    left = min(-1.0 - radius, float(np.min(near.real)) if near.size else -2.0) - 0.3
+    right = max(0.75, min(float(np.max(near.real)) if near.size else 0.0, 1.6) + 0.2)
+    width = right - left
+    half = max(0.5 * width * 0.67 * TALL / (0.84 * WIDTH), radius + 0.15)
+    width = max(width, 2.0 * half * 0.84 * WIDTH / (0.67 * TALL))
     axes.set_aspect("equal", adjustable="box", anchor="C")
-    axes.set_xlim(left, left + width)
+    axes.set_xlim(right - width, right)
     axes.set_ylim(-half, half)
     axes.axhline(0.0, color=SLATE, lw=0.7)
     axes.axvline(0.0, color=SLATE, lw=0.7)

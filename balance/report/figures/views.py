@@ -36,12 +36,11 @@ def fill_top(axes: Axes, drawing: Drawing) -> None:
         axes.add_patch(Polygon(view.polygon, closed=True, fill=False, edgecolor=SLATE, ls=DOTTED, lw=1.1, zorder=2))
     draw_body(axes, view)
     axes.plot(*view.line.T, color=RUST, lw=2.4, zorder=6, solid_capstyle="round")
-    middle = view.line.mean(axis=0)
-    tip = middle + 0.13 * size * drawing.outward
-    axes.annotate("", tip, middle, arrowprops={"arrowstyle": "-|>", "color": RUST, "lw": 1.2, "shrinkA": 0}, zorder=7)
-    off = (7.0 * float(drawing.outward[0]), 7.0 * float(drawing.outward[1]))
-    axes.annotate("outward", (tip[0], tip[1]), off, textcoords="offset points", fontsize=7, color=RUST, zorder=9,
-                  ha=side_of(drawing.outward[0]), va=level_of(drawing.outward[1]))
+    start = 0.86 * view.line[0] + 0.14 * view.line[1]
+    tip = start + 0.13 * size * drawing.outward
+    axes.annotate("", tip, start, arrowprops={"arrowstyle": "-|>", "color": RUST, "lw": 1.2, "shrinkA": 0}, zorder=7)
+    axes.annotate("outward", tip, tuple(4 * drawing.outward), textcoords="offset points", fontsize=7, color=RUST, zorder=9,
+                  ha=side_of(drawing.outward[0]), va=level_of(drawing.outward[1]), bbox=CLEAR)
     draw_axles(axes, view, size)
     draw_feet(axes, view)
     draw_centre(axes, view)
@@ -63,8 +62,8 @@ def fill_side(axes: Axes, drawing: Drawing) -> None:
     draw_centre(axes, view)
     axes.set_xlabel("Across the line, outward (mm)")
     axes.set_ylabel("Above the line (mm)")
-    words = (f"centre of mass {drawing.height:.0f} mm up, {drawing.offset:+.1f} mm outward; "
-             f"balanced lean {drawing.balanced_lean:+.2f}°").replace("-", "−")
+    offset, lean = (signed(drawing.offset, 1), signed(drawing.balanced_lean, 2))
+    words = f"centre of mass {drawing.height:.0f} mm up, {offset} mm outward; balanced lean {lean}°"
     axes.set_title(words, loc="left", fontsize=7.5)
 
 
@@ -156,6 +155,12 @@ def side_of(x: float) -> str:
 def level_of(y: float) -> str:
     """Vertical anchor of a label that stands off toward y."""
     return "center" if abs(y) < 0.3 else "bottom" if y > 0 else "top"
+
+
+def signed(value: float, decimals: int) -> str:
+    """Write a number with its sign, and zero without one."""
+    written = f"{value:+.{decimals}f}".replace("-", "−")
+    return written if written.strip("+−0.") else "0"
 
 
 def key(drawing: Drawing) -> list[Line2D]:
