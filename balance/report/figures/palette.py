@@ -87,6 +87,6 @@ def as_bytes(figure: Figure, kind: str) -> bytes:
 
 
 def shorter(svg: bytes) -> bytes:
-    """Keep two decimals of the points (0.35 µm on paper) and drop the outer document type: a page of many curves is a third smaller."""
+    """Keep two decimals of the points (0.35 µm on paper) and drop the outer document type: pages get a third smaller."""
     text = svg.decode("utf-8")
     return FINE.sub(r"\1 \2 \3", text[text.index("<svg"):]).encode("utf-8")
