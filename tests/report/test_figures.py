@@ -23,7 +23,7 @@ from balance.report.outline import outline
 
 CASES = [("bench-rig", "line"), ("bench-rig-short", "line"), ("bench-rig-pid", "line"), ("quay-gyros", "on-left-right"),
          ("scout-wheels", "on-fore-left")]
-UNIT = re.compile(r"\((?:dB|°|rad/s|Hz|s|N·m|N·m·s|mm|no unit)\)$")
+UNIT = re.compile(r"\((?:dB|°|rad/s|Hz|s|N·m|N·m·s|mm|no unit)\)(?:;|$)")
 
 
 def drawings(result) -> dict[str, Figure]:
