@@ -39,8 +39,9 @@ def _range(loop: BrokenLoop) -> tuple[float, float]:
     """Return lowest and highest frequency: well below the slowest closed-loop pole, up to Nyquist (left out itself)."""
     T = loop.sample_time
     top = np.pi / T
-    slow = np.abs(np.log(np.linalg.eigvals(loop.closed()).astype(complex))) / T
-    slow = slow[(slow > 1e-9 * top) & np.isfinite(slow)]
+    poles = np.linalg.eigvals(loop.closed()).astype(complex)
+    slow = np.abs(np.log(poles[poles != 0.0])) / T                       # poles at 0 are pure delay
+    slow = slow[slow > 1e-9 * top]
     return float(max(1e-3 * slow.min(initial=top), 1e-7 * top)), float(top * (1.0 - 1e-12))
 
 
