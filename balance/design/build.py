@@ -5,6 +5,7 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
+from balance.design.complementary import complementary
 from balance.design.ideal import ideal_lqr
 from balance.design.law import Law
 from balance.design.limits import loop_limits
@@ -14,7 +15,7 @@ from balance.design.margins import UNSTABLE, margins_of
 from balance.design.pid import design_pid
 from balance.design.records import Design, Response
 from balance.design.sampled_margins import at_actuator
-from balance.goal.goal import Goal, LqrControl, PidControl
+from balance.goal.goal import Complementary, Goal, LqrControl, PidControl
 from balance.plant.record import Plant
 
 Array = NDArray[np.float64]
@@ -34,6 +35,8 @@ def design_stance(plant: Plant, goal: Goal) -> Design:
     found = _law(plant, sampled, goal)
     if isinstance(found, str):
         return refusal(plant, sampled, found)
+    if isinstance(goal.estimator, Complementary):
+        found = complementary(found, goal.estimator.crossover)
     poles = np.linalg.eigvals(close(sampled, found)).astype(np.complex128)
     ideal = ideal_lqr(plant, goal.control) if isinstance(goal.control, LqrControl) else None
     return Design(plant, found, poles, equivalent(poles, T), margins_of(at_actuator(sampled, found)),

@@ -12,6 +12,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from balance.design.law import Law
+from balance.kernel.sensing import UP
 from balance.maths.sampled import hold_late, whole_samples, with_commands_ago
 from balance.maths.transfer import respond, triangular
 from balance.plant.record import LinearModel, Plant
@@ -26,7 +27,7 @@ class SampledPlant:
 
     `states`: the model's states first (same names and order), then what lies between command and torque: `torque_lag` (v
     after the actuators' lag; one per distinct lag, `torque_lag_2`, …), `NAME.levelling_lag`, `torque_1_ago`, `torque_2_ago`,
-    … and `NAME.levelling_1_ago`, … .  `measured` names the rows of C, at first all model states.
+    … and `NAME.levelling_1_ago`, … .  `measured` names the rows of C: all model states, then `tilt` and `gyro`.
     """
 
     plant: Plant
@@ -90,7 +91,22 @@ def sample_plant(plant: Plant, sample_time: float, latency: float) -> SampledPla
     n = len(plant.model.states)
     C = np.eye(n, len(A_late))
     A_late = A_late - B_late[:, 1:] @ plant.levelling[_levelled(plant)] @ C
-    return SampledPlant(plant, A_late, B_late[:, 0], C, tuple(names), plant.model.states, sample_time, latency)
+    C = np.vstack([C, sensor_rows(plant, len(A_late))])
+    return SampledPlant(plant, A_late, B_late[:, 0], C, tuple(names), (*plant.model.states, "tilt", "gyro"), sample_time,
+                        latency)
+
+
+def sensor_rows(plant: Plant, width: int) -> Array:
+    """Return (2, width): `tilt` = lean − r θ̈/g with the sensor r above the line, and `gyro` (physics page, trap 8).
+
+    θ̈ is that of the sampling instant, under the torque that still acts then; a torque that follows its command without
+    any lag is left out of it (wheels always lag).
+    """
+    A, _, names = _with_lags(plant)
+    rows = np.eye(2, width)
+    gravity = plant.stance.gravity * np.cos(plant.stance.slope)
+    rows[0, :len(names)] -= plant.sensor_parameters[UP] / gravity * A[1]
+    return rows
 
 
 def _levelled(plant: Plant) -> list[int]:

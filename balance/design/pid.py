@@ -86,13 +86,13 @@ def tracking(kp: float, kd: float, pole: float) -> float:
 
 def perfect_sensors(sampled: SampledPlant, plant: Plant) -> Sensed:
     """Return the sampled plant with lean and lean rate measured under a small sensor's noise, unit states exactly."""
-    n, N = sampled.C.shape
+    n, N = len(plant.model.states), len(sampled.A)
     padded = np.zeros(N)
     padded[:n] = plant.momentum_row
     F = np.zeros((n, 2))
     F[0, 0] = F[1, 1] = 1.0
     sigma = np.array([GYRO_NOISE, GYRO_NOISE * sqrt(0.5 / sampled.sample_time)])
-    return Sensed(sampled.A, sampled.B, sampled.C, np.zeros((N, 2)), F, sigma, np.eye(N)[0], padded, sampled.sample_time)
+    return Sensed(sampled.A, sampled.B, sampled.C[:n], np.zeros((N, 2)), F, sigma, np.eye(N)[0], padded, sampled.sample_time)
 
 
 def _wanted(plant: Plant, require: Requirements, control: PidControl) -> Wanted:

@@ -80,13 +80,6 @@ class Complementary:
 
 
 @dataclass(frozen=True)
-class Kalman:
-    """`kind: kalman`: steady-state filter from the IMU's noise densities."""
-
-    disturbance: float = quantity("torque", above=0, says="RMS of the unknown torque: trusts the model less")
-
-
-@dataclass(frozen=True)
 class Requirements:
     """What the design must meet; what is left out is not judged."""
 
@@ -116,8 +109,8 @@ class Goal:
     control: LqrControl | PidControl = variant({"lqr": LqrControl, "pid": PidControl}, by="law")
     trials: dict[str, Trial] = table(Trial)
     stance: str = text(default="every", says="a stance's name, or `every`")
-    estimator: NoEstimator | Complementary | Kalman = variant(
-        {"none": NoEstimator, "complementary": Complementary, "kalman": Kalman}, default=NoEstimator())
+    estimator: NoEstimator | Complementary = variant(
+        {"none": NoEstimator, "complementary": Complementary}, default=NoEstimator())
     require: Requirements = section(Requirements, default=Requirements())
     fell: float = quantity("angle", above=0, default=0.5235987755982988, says="lean beyond which it fell")
     # neither is a key of the file: its path, and dotted key -> (line, column) in it

@@ -12,7 +12,6 @@ from math import cos, exp, inf, isinf, sin
 
 import numpy as np
 
-
 PANELS = 4000
 """Of four Gauss points each: a kink of T(s) between two panels costs less than 1e-6 of the whole."""
 

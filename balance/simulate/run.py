@@ -7,11 +7,12 @@ from zlib import crc32
 
 import numpy as np
 
+from balance.design.complementary import ESTIMATE
 from balance.design.records import Design
 from balance.goal.goal import Goal
 from balance.goal.trials import Trial
 from balance.kernel import outcome
-from balance.kernel.bundles import Output, fresh_work
+from balance.kernel.bundles import MEMORY, Output, fresh_work
 from balance.kernel.integrate import longest_step
 from balance.kernel.layout import FELL, GRAVITY, MASS, STIFF_COS
 from balance.kernel.run import run_trial
@@ -50,6 +51,8 @@ def run_one(design: Design, goal: Goal, name: str, trial: Trial, toward: str, re
     body[FELL] = goal.fell
     law = law_arrays(design.law, plant)
     work = fresh_work(body, plant.unit_parameters, law, event.events)
+    if ESTIMATE in design.law.memory:                        # the estimator has run before the trial begins
+        work.numbers[MEMORY, design.law.memory.index(ESTIMATE)] = event.lean
     ended = run_trial(start_state(plant, event), plant.unit_parameters, law, event.events, work, output)
     return _result(design, name, event, ended, output)
 
