@@ -57,6 +57,14 @@ def amount(value: float, unit: str, digits: int = 3) -> str:
     return in_unit(value, scale_for(value, unit), digits)
 
 
+def fixed(value: float, unit: str, decimals: int) -> str:
+    """Write a value that is measured from zero: with so many decimals in the unit a person reads, tiny ones as 0."""
+    factor, name = scale_for(value, unit)
+    written = f"{value * factor:.{decimals}f}".replace("-", MINUS)
+    number = written if written.strip(f"{MINUS}0.") else "0"
+    return f"{number}°" if name == "°" else f"{number}{NBSP}{name}"
+
+
 def speed(value: float) -> str:
     """Write a wheel's speed in rpm (SI: rad/s)."""
     return in_unit(value, (RPM, "rpm"))

@@ -1,123 +1,114 @@
-"""The numbers of a report as tables of words, one column a stance: machine, gains, margins, trials."""
+"""The machine and the trials as tables of words: what each contact line sees, and what happened on it."""
 
 from __future__ import annotations
 
 import math
 from collections.abc import Callable
 
-from balance.check.records import CheckResult
-from balance.design.records import Design, Margins
-from balance.plant.record import Plant
-from balance.report.amounts import amount, figure, share, spelt
+from balance.goal.trials import Trial
+from balance.plant.record import Plant, Unit
+from balance.report.amounts import amount, figure, fixed, share, speed
 from balance.report.tables import Row, Table
 from balance.simulate.records import TrialResult
 
+NOTE = ("Lean is measured from the balanced lean, positive outward: away from the lifted feet. “Best possible” is the "
+        "closed form for the all-out manoeuvre of the linear machine, without delay and noise; no controller does better.")
+
 
 def machine_table(plants: tuple[Plant, ...]) -> Table:
-    """Return what the contact line sees of each stance, and what no controller can beat."""
-    rows = [
-        _across("mass", plants, lambda p: amount(p.stance.mass, "kg")),
-        _across("height of the centre of mass", plants, lambda p: amount(p.stance.height, "m")),
-        _across("its offset, outward", plants, lambda p: amount(p.stance.offset, "m")),
-        _across("length of the contact line", plants, lambda p: amount(p.stance.length, "m")),
-        _across("inertia J, rotors locked", plants, lambda p: amount(p.inertia_locked, "kg*m^2")),
-        _across("inertia J_rest, rotors free", plants, lambda p: amount(p.inertia_free, "kg*m^2")),
-        _across("toppling stiffness G", plants, lambda p: amount(p.stiffness, "N*m/rad")),
-        _across("pole p", plants, lambda p: f"{figure(p.pole)} rad/s"),
-        _across("a lean doubles every", plants, lambda p: amount(p.doubling_time, "s")),
-        _across("balanced lean", plants, lambda p: amount(p.balanced_lean, "rad")),
-        _across("lifted foot lands at", plants, _landing),
-        _across("torque limit about the line", plants, lambda p: amount(p.torque_limit, "N*m")),
-        _across("momentum capacity about the line", plants, lambda p: amount(p.momentum_capacity, "N*m*s")),
-        _across("best possible lean from rest", plants, lambda p: amount(p.bounds.lean, "rad")),
-        _across("best possible push at the centre of mass", plants, lambda p: amount(p.bounds.impulse, "N*s")),
-        _across("which is limited by", plants, lambda p: p.bounds.limited_by),
-    ]
-    for i, unit in enumerate(plants[0].units):
-        what = "cosine between axis and line" if unit.kind == "reaction wheel" else "share of momentum toward the line"
-        rows.append(Row(f"{unit.name}: {what}", tuple(figure(abs(p.units[i].axis_share)) for p in plants)))
-    head = ("Quantity", *(p.stance.name for p in plants))
-    note = ("Lean is measured from the balanced lean, positive outward: away from the lifted feet. \"Best possible\" is the "
-            "closed form for the all-out manoeuvre of a linear machine; no controller can do more.")
-    return Table("The machine on its two feet", head, tuple(rows), note)
+    """What the contact line sees of each stance, and what no controller can beat."""
+    def row(label: str, words: Callable[[Plant], str]) -> Row:
+        return Row(label, tuple(words(p) for p in plants))
+
+    def possible(label: str, words: Callable[[Plant], str]) -> Row:
+        return Row(label, tuple(words(p) if p.acts else "nothing acts" for p in plants))
+
+    rows = (
+        row("contact line", lambda p: f"{p.stance.foot_from} to {p.stance.foot_to}, {amount(p.stance.length, 'm')}"),
+        row("mass", lambda p: amount(p.stance.mass, "kg")),
+        row("height of the centre of mass", lambda p: amount(p.stance.height, "m")),
+        row("its offset, outward", lambda p: fixed(p.stance.offset, "m", 2)),
+        row("balanced lean", lambda p: fixed(p.balanced_lean, "rad", 3)),
+        row("inertia J, rotors locked", lambda p: amount(p.inertia_locked, "kg*m^2", 4)),
+        row("inertia J_rest, rotors free", lambda p: amount(p.inertia_free, "kg*m^2", 4)),
+        row("toppling stiffness G", lambda p: amount(p.stiffness, "N*m/rad", 4)),
+        row("pole p = √(G/J_rest)", lambda p: f"{figure(p.pole)} rad/s"),
+        row("a lean doubles every", lambda p: amount(p.doubling_time, "s")),
+        row("lifted foot lands at", landing),
+        row("torque limit about the line", lambda p: amount(p.torque_limit, "N*m")),
+        row("momentum capacity about the line", lambda p: amount(p.momentum_capacity, "N*m*s")),
+        possible("best possible lean from rest", lambda p: amount(p.bounds.lean, "rad")),
+        possible("best possible lean rate", lambda p: amount(p.bounds.lean_rate, "rad/s")),
+        possible("best possible push at the centre of mass", lambda p: amount(p.bounds.impulse, "N*s")),
+        possible("which is limited by", lambda p: p.bounds.limited_by),
+    )
+    return Table("The machine on its two feet", ("Quantity", *(p.stance.name for p in plants)), rows, NOTE)
 
 
-def _across(label: str, plants: tuple[Plant, ...], words: Callable[[Plant], str]) -> Row:
-    return Row(label, tuple(words(p) for p in plants))
-
-
-def _landing(plant: Plant) -> str:
+def landing(plant: Plant) -> str:
+    """Say at which lean the lifted foot meets the ground."""
     angle = plant.stance.touch_down_lean
     return "never: a fall both ways" if angle is None else f"{amount(angle + plant.balanced_lean, 'rad')} inward"
 
 
-def margin_table(designs: tuple[Design, ...]) -> Table:
-    """Return the margins at the physical torque, every stance a column."""
-    def row(label: str, words: Callable[[Margins], str]) -> Row:
-        return Row(label, tuple(words(d.margins) if d.margins.stable else "–" for d in designs))
-
-    rows = (
-        Row("closed loop", tuple("stable" if d.margins.stable else "NOT stable" for d in designs)),
-        row("gain may fall to, times", lambda m: figure(m.gain_lower)),
-        row("gain may rise to, times", lambda m: figure(m.gain_upper)),
-        row("phase margin", lambda m: amount(m.phase, "rad")),
-        row("at", lambda m: f"{figure(m.phase_crossover)} rad/s, {figure(m.phase_crossover / math.tau)} Hz"),
-        row("delay margin", lambda m: amount(m.delay, "s")),
-        row("modulus margin", lambda m: figure(m.modulus)),
-        row("balanced disk margin α", lambda m: figure(m.disk)),
-        row("peak sensitivity Ms", lambda m: figure(m.peak_sensitivity)),
-        row("peak complementary sensitivity Mt", lambda m: figure(m.peak_complementary)),
-        Row("least Mt possible, e^(p·latency)", tuple(figure(d.limits.least_peak_complementary) for d in designs)),
-        Row("p × total delay", tuple(figure(d.limits.pole_times_delay) for d in designs)),
-    )
-    note = ("Measured on the sampled loop with its delay, broken at the physical torque. The delay margin is the "
-            "added delay that puts an eigenvalue on the unit circle. Linear: no limit of torque, speed or angle is in "
-            "these numbers.")
-    return Table("Stability margins", ("Margin", *(d.plant.stance.name for d in designs)), rows, note)
+def unit_table(plants: tuple[Plant, ...]) -> Table:
+    """Each stabiliser as each line sees it."""
+    many = len(plants) > 1
+    rows = tuple(Row(unit.name, ((plant.stance.name,) if many else ()) + unit_cells(unit))
+                 for i, _ in enumerate(plants[0].units) for plant in plants for unit in (plant.units[i],))
+    head = ("Stabiliser", *(("Stance",) if many else ()), "Kind", "Share toward the line", "Torque about it",
+            "Momentum about it", "Spin inertia", "Limit")
+    return Table("The stabilisers as each line sees them", head, rows,
+                 "The share is the cosine between a wheel's axis and the line; for a flywheel in a gimbal, how much of its "
+                 "momentum the gimbal can turn toward the line. A share of 0 is square to the line: no torque about it.")
 
 
-def gain_table(design: Design) -> Table:
-    """Return one stance's gains in SI with their order and sign."""
-    law = design.law
-    said = (f"sampled every {amount(law.sample_time, 's')}, {amount(law.latency, 's')} from sample to command, "
-            f"command in {spelt(law.unit)}")
-    if law.kind == "pid":
-        rows = tuple(Row(name.replace("_", " "), (figure(value, 6),)) for name, value in law.gains.items())
-        note = ("T = kp e + ki ∫e dt + kd·(filtered lean rate), e = lean + momentum gain × stored momentum: torque taken "
-                "from the body about the line, SI, parallel form, per second.")
-        return Table(f"PID on {design.plant.stance.name}: {said}", ("Gain", "Value"), rows, note)
-    dust = 1e-12 * max((abs(k) for k in law.K), default=0.0)
-    rows = tuple(Row(name, (figure(k, 6) if abs(k) > dust else "0",)) for name, k in zip(law.states, law.K, strict=True))
-    note = "u = −K x in SI, states in this order; the rows named lag and ago are kept by the controller itself."
-    return Table(f"LQR on {design.plant.stance.name}: {said}", ("State", "K"), rows, note)
+def unit_cells(unit: Unit) -> tuple[str, ...]:
+    """One unit's numbers."""
+    wheel = unit.kind == "reaction wheel"
+    limit = speed(unit.speed_limit) if wheel else f"±{amount(unit.speed_limit, 'rad')}"
+    part = abs(unit.axis_share) if abs(unit.axis_share) > 1e-9 else 0.0
+    return (unit.kind, figure(part), amount(unit.torque_limit, "N*m"), amount(unit.momentum_capacity, "N*m*s"),
+            amount(unit.inertia, "kg*m^2"), limit if math.isfinite(unit.speed_limit) else "none stated")
 
 
 def trial_table(trials: tuple[TrialResult, ...]) -> Table:
-    """Return what happened in the trials of one stance."""
-    rows = tuple(
-        Row(f"{t.name}, {t.toward}", (
-            t.verdict, amount(t.peak_lean, "rad"), _settled(t),
-            amount(t.peak_torque, "N*m"), amount(t.torque_saturated, "s"), share(t.momentum_used),
-            amount(t.rms_torque, "N*m"), amount(t.peak_bus_power, "W"), figure(t.friction_needed, 2),
-            t.reason or "–"), "met" if t.verdict == "recovered" else "unmet")
-        for t in trials)
-    head = ("Trial", "Outcome", "Peak lean", "Settled after", "Peak torque", "At a limit", "Momentum used", "RMS torque",
-            "Peak power", "Friction needed", "Limits met")
-    return Table("What happened", head, rows, "Times count from the last event of the trial.", wordy=True)
+    """What happened in the trials of one stance."""
+    rows = tuple(Row(f"{t.name}, {t.toward}", trial_cells(t), "met" if t.verdict == "recovered" else "unmet")
+                 for t in trials)
+    head = ("Trial", "Outcome", "Peak lean", "Settled after", "Peak torque", "At that limit for", "Momentum used",
+            "RMS torque", "Peak draw", "Friction needed", "Limits met")
+    return Table("What happened", head, rows,
+                 "Settling counts from the trial's last event. Friction is what the feet need across the line.", wordy=True)
 
 
-def _settled(trial: TrialResult) -> str:
-    return amount(trial.settling_time, "s") if math.isfinite(trial.settling_time) else "never"
+def trial_cells(t: TrialResult) -> tuple[str, ...]:
+    """One trial's numbers."""
+    settled = amount(t.settling_time, "s") if math.isfinite(t.settling_time) else "never"
+    draw = (amount(t.peak_bus_power, "W"), *((amount(t.peak_current, "A"),) if t.peak_current else ()))
+    return (t.verdict, amount(t.peak_lean, "rad"), settled, amount(t.peak_torque, "N*m"),
+            amount(t.torque_saturated, "s") if t.torque_saturated else "–", share(t.momentum_used),
+            amount(t.rms_torque, "N*m"), ", ".join(draw),
+            figure(t.friction_needed, 2) + (", feet lift" if t.lift_off else ""), t.reason or "–")
 
 
-def open_points(result: CheckResult) -> tuple[str, ...]:
-    """Return what the report takes for granted, in sentences."""
-    said = [
-        "The trunk and legs are rigid, the two feet are points that neither slip nor lift; needed friction is reported "
-        "for the whole machine across the line.",
-        "The supply holds its open-circuit voltage: sag and regeneration are not simulated.",
-        "Gears have no backlash, bearings no stiction.",
-    ]
-    if result.goal.estimator.__class__.__name__ == "NoEstimator":
-        said.insert(0, "Lean and lean rate are measured as they are: no sensor noise, bias or estimator is in the loop.")
-    return tuple(said)
+def told(trial: Trial | None) -> str:
+    """Say what a trial does to the machine."""
+    if trial is None:
+        return ""
+    said = []
+    if trial.push:
+        said.append(f"a push of {amount(trial.push.impulse, 'N*s')} at {amount(trial.push.height, 'm')}")
+    if trial.torque:
+        lasts = f" for {amount(trial.torque.lasts, 's')}" if trial.torque.lasts is not None else ""
+        said.append(f"a torque of {amount(trial.torque.step, 'N*m')}{lasts}")
+    for begin, words in ((trial.start, "starts"), (trial.lift_off, "the third foot lets go")):
+        if begin:
+            stored = f" and {amount(begin.stored, 'N*m*s')} stored" if begin.stored else ""
+            said.append(f"{words} at {amount(begin.lean, 'rad')}, {amount(begin.lean_rate, 'rad/s')}{stored}")
+    if trial.offset:
+        said.append(f"the centre of mass shifts {amount(trial.offset.shift, 'm')} and stays")
+    if trial.swing:
+        peak = f", ±{amount(trial.swing.peak, 'N*m')} out and back" if trial.swing.peak is not None else ""
+        said.append(f"a leg swings{peak}")
+    return "; ".join(said)

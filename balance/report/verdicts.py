@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from dataclasses import replace
 
 from balance.check.records import CheckResult, Verdict
 from balance.report.amounts import in_unit, listed, scale_for, share
@@ -54,6 +55,23 @@ def verdict_table(verdicts: tuple[Verdict, ...]) -> Table:
     """All verdicts, the unmet ones first, otherwise in the order they were judged."""
     ordered = sorted(verdicts, key=lambda v: v.passed)
     return Table("Every requirement against its limit", HEAD, tuple(verdict_row(v) for v in ordered), wordy=True)
+
+
+def verdict_tables(verdicts: tuple[Verdict, ...]) -> tuple[Table | None, tuple[tuple[str, Table], ...]]:
+    """Return what is not met in one table (None: all is met), and all of it stance by stance, each with a title.
+
+    The table of the unmet is there only where several stances make the whole long.
+    """
+    stances = tuple(dict.fromkeys(v.stance for v in verdicts))
+    unmet = tuple(v for v in verdicts if not v.passed)
+    parts = []
+    for stance in stances:
+        mine = tuple(v for v in verdicts if v.stance == stance)
+        missed = sum(not v.passed for v in mine)
+        title = f"{stance}: all {len(mine)} met" if not missed else f"{stance}: {missed} of {len(mine)} not met"
+        parts.append((title, verdict_table(mine)))
+    first = replace(verdict_table(unmet), caption="Not met") if unmet and len(stances) > 1 else None
+    return first, tuple(parts)
 
 
 def headline(result: CheckResult) -> str:

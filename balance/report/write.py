@@ -8,17 +8,20 @@ import tempfile
 from balance.check.records import CheckResult
 from balance.design.records import Design
 from balance.report import page as html
+from balance.report.assumed import assumed, unchecked
 from balance.report.cautions import cautions
-from balance.report.facts import gain_table, machine_table, margin_table, open_points, trial_table
+from balance.report.facts import machine_table, told, trial_table, unit_table
 from balance.report.figures.bode import draw_bode
 from balance.report.figures.machine import draw_view
 from balance.report.figures.nyquist import draw_nyquist
 from balance.report.figures.palette import as_bytes
 from balance.report.figures.recovery import draw_recovery
+from balance.report.gains import gain_table, pole_table, share_table
 from balance.report.histories import picture_trials
-from balance.report.loops import picture_loop
+from balance.report.loops import LoopPicture, picture_loop
+from balance.report.margins import margin_table
 from balance.report.outline import outline
-from balance.report.verdicts import headline, tally, verdict_table
+from balance.report.verdicts import headline, tally, verdict_tables
 
 PAGE = "report.html"
 
@@ -42,45 +45,67 @@ def write_report(result: CheckResult, folder: str) -> str:
 
 def compose(result: CheckResult) -> str:
     """Return the whole page as text."""
-    designs, plants = result.designs, tuple(d.plant for d in result.designs)
-    parts = [html.paragraph(headline(result), f"answer {'met' if result.passed else 'unmet'}"),
-             html.heading("Verdicts", "verdicts")]
-    contents = [("verdicts", "Verdicts"), ("machine", "The machine")]
-    if len(designs) > 1:
-        parts.append(html.table(tally(result)))
-    parts += [html.table(verdict_table(result.verdicts)), html.heading("The machine", "machine"),
-              html.table(machine_table(plants))]
-    for design in designs:
-        anchor = f"stance-{design.plant.stance.name}"
-        contents.append((anchor, f"Stance {design.plant.stance.name}"))
-        parts += [html.heading(f"Stance {design.plant.stance.name}", anchor), *_stance(result, design)]
-    contents += [("margins", "Margins"), ("cautions", "Cautions"), ("assumed", "What is assumed")]
-    parts += [html.heading("Margins", "margins"), html.table(margin_table(designs)),
-              html.heading("Cautions", "cautions"), html.definitions(cautions(result.machine, plants[0])),
-              html.heading("What is assumed, and what was not checked", "assumed"), html.bullets(open_points(result))]
-    return html.page(f"{result.goal.design}: does the balance assist hold {result.machine.machine}?", parts, contents)
+    designs = result.designs
+    pictures = tuple(picture_loop(design) for design in designs)
+    sections = [("verdicts", "Verdicts", "", _verdicts(result))]
+    if designs:
+        plants = tuple(design.plant for design in designs)
+        sections.append(("machine", "The machine", "", [html.table(machine_table(plants)), html.table(unit_table(plants))]))
+        sections.append(("margins", "Margins", "", [html.table(margin_table(designs, pictures))]))
+    for i, (design, loop) in enumerate(zip(designs, pictures, strict=True)):
+        name = design.plant.stance.name
+        sections.append((f"stance-{i + 1}", f"Stance {name}", "stance", _stance(result, design, loop)))
+    sections.append(("cautions", "Cautions", "stance", [html.definitions(cautions(result))]))
+    sections.append(("assumed", "What is assumed, and what was not checked", "",
+                     [html.sub_heading("Assumed"), html.bullets(assumed(result)),
+                      html.sub_heading("Not checked"), html.bullets(unchecked(result))]))
+    parts = [html.paragraph(headline(result), f"answer {'met' if result.passed else 'unmet'}")]
+    for anchor, words, kind, inside in sections:
+        parts += [html.heading(words, anchor, kind), *inside]
+    title = f"{result.goal.design}: does the balance assist hold {result.machine.machine}?"
+    return html.page(title, parts, [(anchor, words) for anchor, words, _, _ in sections])
 
 
-def _stance(result: CheckResult, design: Design) -> list[str]:
+def _verdicts(result: CheckResult) -> list[str]:
+    """Return the verdicts: what is not met first, then every stance, folded where there are several."""
+    unmet, stances = verdict_tables(result.verdicts)
+    if len(stances) < 2:
+        return [html.table(table) for _, table in stances]
+    first = [html.table(unmet)] if unmet is not None else []
+    return [html.table(tally(result)), *first,
+            *(html.folded(title, html.table(table), i == 0) for i, (title, table) in enumerate(stances))]
+
+
+def _stance(result: CheckResult, design: Design, loop: LoopPicture | None) -> list[str]:
     """Return one stance: drawn, its gains, its loop, its trials."""
     name = design.plant.stance.name
     drawing = outline(result.machine, design.plant.stance, design.plant)
-    parts = [html.figures([html.picture(as_bytes(draw_view(drawing, which), "svg"), words)
-                           for which, words in (("top", f"{name}: from above"), ("side", f"{name}: along the line"))])]
+    views = [html.picture(as_bytes(draw_view(drawing, which), "svg"), f"{name}, {words}", words)
+             for which, words in (("top", "From above, to scale"), ("side", "Along the contact line, to scale"))]
     if design.refused:
-        return [html.paragraph(f"No law: {design.refused}.", "answer unmet"), *parts]
-    parts.append(html.table(gain_table(design)))
-    loop = picture_loop(design)
+        return [html.paragraph(f"No law: {design.refused}.", "answer unmet"), html.figures(views)]
+    parts = [html.figures(views), html.sub_heading("Gains"), html.table(gain_table(design))]
+    shared = share_table(design)
+    if shared is not None:
+        parts.append(html.table(shared))
+    parts.append(html.folded("Closed-loop poles", html.table(pole_table(design)), False))
     if loop is not None:
-        parts.append(html.figures([html.picture(as_bytes(draw_bode(loop), "svg"), f"{name}: Bode, loop at the torque"),
-                                   html.picture(as_bytes(draw_nyquist(loop), "svg"), f"{name}: Nyquist")]))
-    mine = tuple(t for t in result.trials if t.stance == name)
-    if mine:
-        parts.append(html.table(trial_table(mine)))
-    drawn = [html.picture(as_bytes(draw_recovery(p), "svg"), f"{name}: {p.name}")
-             for p in picture_trials(design, mine, result.goal.trials)]
+        parts += [html.sub_heading("Loop, broken at the physical torque"), html.figures([
+            html.picture(as_bytes(draw_bode(loop), "svg"), f"{name}, Bode diagram", "Bode: gain margins ■, phase margin ●"),
+            html.picture(as_bytes(draw_nyquist(loop), "svg"), f"{name}, Nyquist diagram", "Nyquist, near the point −1")])]
+    return parts + _trials(result, design)
+
+
+def _trials(result: CheckResult, design: Design) -> list[str]:
+    """Return the trials of one stance: the table, then every trial drawn."""
+    name = design.plant.stance.name
+    mine = tuple(trial for trial in result.trials if trial.stance == name)
+    if not mine:
+        return []
+    planned = result.goal.trials
+    drawn = [html.picture(as_bytes(draw_recovery(p), "svg"), f"{name}, trial {p.name}: lean, torque, momentum over time",
+                          f"{p.name}: {told(planned.get(p.name))}") for p in picture_trials(design, mine, planned)]
+    parts = [html.sub_heading("Recovery"), html.table(trial_table(mine))]
     if drawn:
-        many = len(result.designs) > 1
-        parts.append(html.folded(f"Recovery, {len(drawn)} trials drawn", html.figures(drawn),
-                                 not many or design is result.designs[0]))
+        parts.append(html.folded(f"{name}: {len(drawn)} trials drawn", html.figures(drawn), design is result.designs[0]))
     return parts

@@ -41,6 +41,8 @@ SETTINGS: dict[str, object] = {
 }
 FINE = re.compile(r"(?m)([ML]) (-?\d+\.\d\d)\d* (-?\d+\.\d\d)\d* *$")
 """A point of a path with more than two decimals, at the end of its line."""
+USELESS = re.compile(r'(?m)<!--.*?-->|^ +| id="(?:figure|axes|patch|line2d|text|legend|[xy]tick|matplotlib|ax)[^"]*"')
+"""Comments, indents and names that nothing in the drawing refers to."""
 WIDTH = 4.7
 """Inches of one figure: a phone shows it at four fifths of its size, a desk two beside each other."""
 
@@ -89,4 +91,5 @@ def as_bytes(figure: Figure, kind: str) -> bytes:
 def shorter(svg: bytes) -> bytes:
     """Keep two decimals of the points (0.35 µm on paper) and drop the outer document type: pages get a third smaller."""
     text = svg.decode("utf-8")
-    return FINE.sub(r"\1 \2 \3", text[text.index("<svg"):]).encode("utf-8")
+    text = FINE.sub(r"\1 \2 \3", text[text.index("<svg"):])
+    return USELESS.sub("", text).encode("utf-8")
