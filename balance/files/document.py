@@ -26,6 +26,7 @@ from yaml.events import (
 )
 
 from balance.base.errors import InputError, Problem
+from balance.files.node import Node, Tree
 
 LARGEST = 1_000_000
 """Bytes a file may have."""
@@ -33,56 +34,6 @@ MOST_NODES = 20_000
 """Values a file may have, aliases counted as often as they are used."""
 DEEPEST = 20
 """Levels of nesting."""
-
-
-@dataclass(frozen=True)
-class Node:
-    """One value of the file.
-
-    `kind`: "scalar" (`text`, and `quoted` where it stood in quotes), "list" (`items`), "mapping" (`pairs`:
-    name, place of the name, value).  `line` and `column` count from 1.  `size`: values inside, itself
-    included.
-    """
-
-    kind: str
-    line: int
-    column: int
-    text: str = ""
-    quoted: bool = False
-    items: tuple[Node, ...] = ()
-    pairs: tuple[tuple[str, tuple[int, int], Node], ...] = ()
-    size: int = 1
-
-    def get(self, name: str) -> Node | None:
-        """Return a mapping's value by its name; None where there is none, or where this is no mapping."""
-        return next((value for key, _, value in self.pairs if key == name), None)
-
-    def names(self) -> tuple[str, ...]:
-        """Return a mapping's names in file order; empty where this is no mapping."""
-        return tuple(key for key, _, _ in self.pairs)
-
-    def place(self, path: str) -> tuple[int, int]:
-        """Return line and column of the value at a dotted path of keys, as far down as it exists."""
-        name, _, rest = path.partition(".")
-        found = self.get(name)
-        return found.place(rest) if found else (self.line, self.column)
-
-    def plain(self) -> object:
-        """Return dicts, lists, texts, numbers and flags, as an editor's YAML 1.2 reader sees them."""
-        if self.kind == "mapping":
-            return {key: value.plain() for key, _, value in self.pairs}
-        if self.kind == "list":
-            return [item.plain() for item in self.items]
-        return self.text if self.quoted else _core_scalar(self.text)
-
-
-@dataclass(frozen=True)
-class Tree:
-    """A whole file: its path as given, the topmost node, and what was wrong but did not stop the reading."""
-
-    path: str
-    root: Node
-    problems: tuple[Problem, ...] = ()
 
 
 @dataclass
@@ -259,18 +210,3 @@ def _syntax(path: str, text: str, error: yaml.MarkedYAMLError) -> Problem:
     said = " ".join(part for part in (error.context, error.problem) if part)
     allowed = "YAML: `key: value`, lists in [ ], nesting by indentation"
     return Problem(path, line, column, "(file)", given, allowed, f"the YAML parser says: {said}")
-
-
-def _core_scalar(text: str) -> object:
-    """A plain scalar by YAML 1.2's core schema, as far as a machine file needs it."""
-    words: dict[str, object] = {"true": True, "false": False, "null": None, "~": None, "": None}
-    if text in words:
-        return words[text]
-    for kind in (int, float):
-        try:
-            number = kind(text)
-        except ValueError:
-            continue
-        special = "_" in text or text.strip("+-.").lower() in ("inf", "nan", "infinity")
-        return text if special else number
-    return text

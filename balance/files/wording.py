@@ -7,8 +7,8 @@ from collections.abc import Callable
 from balance.base.dimensions import DIMENSIONS
 from balance.base.units import factor_of, unit_of
 from balance.base.words import listed
-from balance.files.document import Node
 from balance.files.fields import Shape
+from balance.files.node import Node
 
 
 def describe(node: Node) -> str:

@@ -6,7 +6,7 @@ from collections.abc import Iterator
 from itertools import pairwise
 
 from balance.base.words import listed
-from balance.files.reader import Fault, Rules
+from balance.files.walk import Fault, Rules
 from balance.goal.goal import Allow, Complementary, Goal, Loop, LqrControl
 from balance.goal.trials import Swing, Trial
 

@@ -6,8 +6,10 @@ from collections.abc import Iterator
 
 from balance.base.errors import InputError, Problem
 from balance.base.words import did_you_mean, listed
-from balance.files.document import Node, Tree, load
-from balance.files.reader import Fault, Marks, attempt
+from balance.files.document import load
+from balance.files.node import Node, Tree
+from balance.files.reader import attempt
+from balance.files.walk import Fault, Marks
 from balance.machine.machine import Machine
 from balance.machine.rules import RULES
 

@@ -7,7 +7,7 @@ from collections.abc import Iterator
 from itertools import combinations
 
 from balance.base.words import listed
-from balance.files.reader import Fault, Rules
+from balance.files.walk import Fault, Rules
 from balance.machine.machine import Lumped, StancePlan
 from balance.machine.motors import Motor, Supply
 from balance.machine.solids import (

@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator
 
-from balance.files.reader import Fault
+from balance.files.walk import Fault
 from balance.machine.solids import Tensor
 
 SLACK = 1e-6
