@@ -27,7 +27,8 @@ def tolerable_offset(design: Design) -> float:
     state = _per_momentum(design)                                            # (n,)
     lean = np.zeros(len(plant.model.states))
     lean[0] = 1.0
-    pick = [plant.model.states.index(name) for name in law.measurements]
+    still = {"tilt": "lean", "gyro": "lean_rate"}                            # what the sensors show at rest
+    pick = [plant.model.states.index(still.get(name, name)) for name in law.measurements]
     k = law.A.shape[0]
     rows = np.zeros((k + 1, k + 1))
     rows[:k, :k], rows[:k, k] = np.eye(k) - law.A, -(law.B @ state[pick])
