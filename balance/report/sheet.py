@@ -6,7 +6,7 @@ STYLE = """
 :root { color-scheme: light; }
 * { box-sizing: border-box; }
 body { margin: 0 auto; max-width: 68rem; padding: 1rem 1.2rem 4rem; color: #20262e; background: #fff;
-  font: 16px/1.5 Georgia, "Noto Serif", serif; overflow-wrap: anywhere; }
+  font: 16px/1.5 Georgia, "Noto Serif", serif; overflow-wrap: break-word; }
 h1, h2, h3, nav, table, figcaption, summary, dt { font-family: "Noto Sans", "DejaVu Sans", Verdana, sans-serif; }
 h1 { font-size: 1.5rem; line-height: 1.25; margin: .4rem 0 1rem; }
 h2 { font-size: 1.2rem; margin: 2.4rem 0 .5rem; border-bottom: 2px solid #17456e; }
@@ -16,13 +16,13 @@ h3 { font-size: 1rem; margin: 1.6rem 0 .4rem; }
 nav ul { columns: 2 13rem; padding-left: 1.1rem; font-size: .88rem; margin: .6rem 0; }
 a { color: #17456e; }
 .wide { overflow-x: auto; margin: .5rem 0; }
-table { border-collapse: collapse; font-size: .8rem; font-variant-numeric: tabular-nums; overflow-wrap: normal; }
+table { border-collapse: collapse; font-size: .78rem; font-variant-numeric: tabular-nums; overflow-wrap: normal; }
 caption { text-align: left; font-weight: bold; padding: .2rem 0; }
-th, td { text-align: left; vertical-align: top; padding: .22rem .8rem .22rem 0; border-bottom: 1px solid #c9ced4; }
+th, td { text-align: left; vertical-align: top; padding: .22rem .7rem .22rem 0; border-bottom: 1px solid #c9ced4; }
 thead th { vertical-align: bottom; border-bottom: 2px solid #5d6875; }
 tbody th { font-weight: normal; }
-td:not(.words), tbody th { white-space: nowrap; } td.words { min-width: 11rem; }
-tr.unmet > * { background: #fbeee6; font-weight: bold; }
+td:not(.words), tbody th { white-space: nowrap; } td.words { min-width: 10rem; }
+tr.unmet > * { background: #fbeee6; } tr.unmet th { font-weight: bold; }
 tr.unmet th::before { content: "\\2717\\00a0"; color: #c4571a; }
 tr.met th::before { content: "\\2713\\00a0"; color: #17456e; }
 .note { font-size: .86rem; color: #454f5b; margin: .2rem 0 1rem; max-width: 48rem; }
@@ -50,8 +50,8 @@ summary { cursor: pointer; padding: .25rem 0; font-weight: bold; font-size: .9re
   thead { display: table-header-group; }
   .figures { grid-template-columns: 1fr 1fr; } .wide { overflow: visible; }
   table { font-size: 7.4pt; } td.words { min-width: 0; }
-  td:not(.words), tbody th { white-space: normal; overflow-wrap: anywhere; }
-  th, td { padding-right: .5rem; } tr.unmet > * { background: none; }
+  td:not(.words), tbody th { white-space: normal; overflow-wrap: break-word; }
+  th, td { padding-right: .4rem; } tr.unmet > * { background: none; }
   .stance { break-before: page; } a { color: inherit; text-decoration: none; }
   details { border: 0; padding: 0; } details::details-content { content-visibility: visible; block-size: auto; }
 }

@@ -38,6 +38,13 @@ def value_words(value: float | str, limit: float | str, unit: str) -> str:
     return in_unit(float(value), scale_for(float(ruler), unit))
 
 
+def judged_value(verdict: Verdict) -> str:
+    """Write a verdict's value; a time without end is one that never comes."""
+    if verdict.unit == "s" and verdict.value == math.inf and verdict.sense == "at most":
+        return "never"
+    return value_words(verdict.value, verdict.limit, verdict.unit)
+
+
 def limit_words(verdict: Verdict) -> str:
     """Write the limit with its sense: `≥ 35°`."""
     written = value_words(verdict.limit, verdict.limit, verdict.unit)
@@ -46,8 +53,8 @@ def limit_words(verdict: Verdict) -> str:
 
 def verdict_row(verdict: Verdict) -> Row:
     """One line of the verdict table."""
-    cells = (verdict.stance, value_words(verdict.value, verdict.limit, verdict.unit), limit_words(verdict),
-             left_over(verdict), "met" if verdict.passed else "NOT met", verdict.reason or "–")
+    cells = (verdict.stance, judged_value(verdict), limit_words(verdict), left_over(verdict),
+             "met" if verdict.passed else "NOT met", verdict.reason or "–")
     return Row(spoken(verdict.name), cells, "met" if verdict.passed else "unmet")
 
 
@@ -82,7 +89,8 @@ def headline(result: CheckResult) -> str:
         return "Nothing was judged: the design file asks for nothing."
     if not unmet:
         return f"Passed: all {count} requirements are met." if count > 1 else "Passed: the one requirement is met."
-    names = tuple(dict.fromkeys(f"{spoken(v.name)} ({v.stance})" for v in unmet))
+    several = len({v.stance for v in result.verdicts}) > 1
+    names = tuple(dict.fromkeys(spoken(v.name) + (f" ({v.stance})" if several else "") for v in unmet))
     told = listed(names[:3]) if len(names) <= 3 else f"{', '.join(names[:3])} and {len(names) - 3} more"
     be = "is" if len(unmet) == 1 else "are"
     return f"Not passed: {len(unmet)} of {count} requirements {be} not met: {told}."

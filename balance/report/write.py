@@ -55,7 +55,7 @@ def compose(result: CheckResult) -> str:
     for i, (design, loop) in enumerate(zip(designs, pictures, strict=True)):
         name = design.plant.stance.name
         sections.append((f"stance-{i + 1}", f"Stance {name}", "stance", _stance(result, design, loop)))
-    sections.append(("cautions", "Cautions", "stance", [html.definitions(cautions(result))]))
+    sections.append(("cautions", "Cautions", "", [html.definitions(cautions(result))]))
     sections.append(("assumed", "What is assumed, and what was not checked", "",
                      [html.sub_heading("Assumed"), html.bullets(assumed(result)),
                       html.sub_heading("Not checked"), html.bullets(unchecked(result))]))

@@ -57,7 +57,8 @@ def frame(axes: Axes, picture: LoopPicture) -> None:
     left = min(-1.0 - radius, float(np.min(near.real)) if near.size else -2.0) - 0.3
     right = max(0.75, min(float(np.max(near.real)) if near.size else 0.0, 1.6) + 0.2)
     width = right - left
-    half = max(0.5 * width * 0.67 * TALL / (0.84 * WIDTH), radius + 0.15)
+    reach = float(np.max(np.abs(near.imag))) if near.size else 0.0
+    half = max(0.5 * width * 0.67 * TALL / (0.84 * WIDTH), radius + 0.15, min(reach + 0.15, 2.0))
     width = max(width, 2.0 * half * 0.84 * WIDTH / (0.67 * TALL))
     axes.set_aspect("equal", adjustable="box", anchor="C")
     axes.set_xlim(right - width, right)
