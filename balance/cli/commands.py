@@ -47,6 +47,7 @@ def run_gains(asked: argparse.Namespace, progress: Progress) -> Outcome:
     job = load(asked.file, asked.stance)
     from balance.api.gains import gains
     from balance.api.json_check import json_verdicts
+    from balance.api.json_forms import json_forms
     from balance.api.json_gains import json_gains
     from balance.api.judge import judge_loop
     from balance.cli.show_gains import show_gains
@@ -57,6 +58,7 @@ def run_gains(asked: argparse.Namespace, progress: Progress) -> Outcome:
         "machine": job.machine.machine,
         "design": job.goal.design,
         **json_gains(designs),
+        "forms": [json_forms(d) for d in designs],
         **json_verdicts(verdicts),
     }
     return Outcome(_code(answer), show_gains(designs, verdicts), answer)

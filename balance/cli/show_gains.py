@@ -6,6 +6,7 @@ from functools import partial
 
 from balance.base.tables import text_table
 from balance.check.records import Verdict
+from balance.cli.show_forms import show_forms
 from balance.cli.words import closing, failures, folded, side_by_side, verdict_table
 from balance.design.records import Design
 from balance.report.amounts import amount, figure, spelt
@@ -20,7 +21,7 @@ def show_gains(designs: tuple[Design, ...], verdicts: tuple[Verdict, ...]) -> st
     made = tuple(d for d in designs if not d.refused)
     parts = [_head(designs[0]), *refused]
     if made:
-        parts += [_laws(made), _margins(made), MEANING]
+        parts += [_laws(made), _margins(made), MEANING, *(show_forms(d) for d in made)]
     if verdicts:
         parts += [verdict_table(verdicts), failures(verdicts)]
     return "\n\n".join(p for p in [*parts, closing(verdicts)] if p)

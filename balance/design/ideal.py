@@ -51,14 +51,14 @@ def continuous_view(A: Array, b: Array, k: Array) -> BrokenView:
             return float(np.linalg.eigvals(A - factor * np.outer(b, k)).real.max())
         return delay - by_phase
 
-    by_phase = _delay_by_phase(response, lowest, highest)
+    by_phase = delay_by_phase(response, lowest, highest)
     singular = np.linalg.cond(A) > 1e13
     start = None if singular else float(k @ np.linalg.solve(-A, b))
     marks = tuple(float(abs(p.imag)) for p in closed if p.imag)
     return BrokenView(response, growth, lowest, highest, (start, None), marks)
 
 
-def _delay_by_phase(response: Callable[[Array], Complex], lowest: float, highest: float) -> float:
+def delay_by_phase(response: Callable[[Array], Complex], lowest: float, highest: float) -> float:
     """Return the smallest phase / ω over the gain crossovers in s; in continuous time that is the delay margin."""
     w = np.geomspace(lowest, highest, 20000)
     gain = np.log(np.abs(response(w)))

@@ -1,0 +1,25 @@
+"""Sensor margins and firmware forms of the gains as dictionaries."""
+
+from __future__ import annotations
+
+from dataclasses import asdict
+
+from balance.api.json_gains import json_margins
+from balance.api.json_numbers import Tree, number, row
+from balance.design.forms import actuator_gains, pid_forms
+from balance.design.records import Design
+from balance.design.sensors import sensor_margins
+
+
+def json_forms(design: Design) -> Tree:
+    """Write what `balance gains` tells beside the law itself."""
+    forms = pid_forms(design)
+    return {
+        "stance": design.plant.stance.name,
+        "sensor_margins": [{"at": name, **json_margins(found)} for name, found in sensor_margins(design)],
+        "actuators": [] if design.refused else [
+            {"unit": a.unit, "measurements": list(design.law.measurements), "si": row(a.si),
+             "ampere": None if a.current is None else row(a.current), "duty": None if a.duty is None else row(a.duty)}
+            for a in actuator_gains(design)],
+        "pid_forms": None if forms is None else {name: number(value) for name, value in asdict(forms).items()},
+    }
