@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 import re
 import shlex
 from pathlib import Path
@@ -75,3 +76,33 @@ def test_every_file_and_command_the_readme_names_is_there(command) -> None:
         assert (ROOT / path).is_file(), path
     for word in set(re.findall(r"`balance ([a-z]+)", README)):
         assert command(word, "--help").code == 0
+
+
+def trial(answer: dict, name: str) -> dict:
+    """Return the outward run of a trial."""
+    return next(t for t in answer["trials"] if t["name"] == name and t["toward"] == "outward")
+
+
+MEASURED = {
+    "phase margin, deg": lambda margins, trials: margins["phase_deg"],
+    "gain may fall to": lambda margins, trials: margins["gain_lower"],
+    "gain may rise to": lambda margins, trials: margins["gain_upper"],
+    "delay margin, ms": lambda margins, trials: 1e3 * margins["delay_s"],
+    "Ms": lambda margins, trials: margins["peak_sensitivity"],
+    "peak lean in the gust, deg": lambda margins, trials: math.degrees(trial(trials, "gust")["peak_lean_rad"]),
+    "time at the torque limit after letting go, s": lambda margins, trials: trial(trials, "let-go")["torque_saturated_s"],
+    "momentum used after letting go, share": lambda margins, trials: trial(trials, "let-go")["momentum_used"],
+    "settling after the weight slips, s": lambda margins, trials: trial(trials, "weight-slips")["settling_time_s"],
+}
+
+
+def test_the_comparison_of_lqr_and_pid_is_measured(command) -> None:
+    table = README[README.index("| bench rig |"):].split("\n\n")[0].splitlines()[2:]
+    rows = {cells[1].strip(): cells[2:4] for cells in (line.split("|") for line in table)}
+    assert set(rows) == set(MEASURED)
+    for column, name in enumerate(("bench-rig", "bench-rig-pid")):
+        margins = command("gains", ROOT / "designs" / f"{name}.yaml", "--json").answer()["stances"][0]["margins"]
+        trials = command("recover", ROOT / "designs" / f"{name}.yaml", "--json").answer()
+        for words, value in MEASURED.items():
+            # written with three digits: half a unit of the third is at most 0.5 % of the value
+            assert float(rows[words][column]) == pytest.approx(value(margins, trials), rel=0.005), (name, words)
