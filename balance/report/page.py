@@ -5,6 +5,7 @@ from __future__ import annotations
 import base64
 from html import escape
 
+from balance.report.seal import sealed
 from balance.report.sheet import OPEN_IN_PRINT, STYLE
 from balance.report.tables import Row, Table
 
@@ -13,13 +14,14 @@ CARDS = 5
 
 
 def page(title: str, parts: list[str], contents: list[tuple[str, str]]) -> str:
-    """Return the whole page; `contents` are (anchor, words)."""
+    """Return the whole page; `contents` are (anchor, words). Half characters, which no file can hold, become `?`."""
     listed = "".join(f'<li><a href="#{escape(a)}">{escape(w)}</a></li>' for a, w in contents)
-    return (f'<!DOCTYPE html>\n<html lang="en"><head><meta charset="utf-8">'
+    body = (f'<!DOCTYPE html>\n<html lang="en"><head><meta charset="utf-8">'
             f'<meta name="viewport" content="width=device-width, initial-scale=1"><title>{escape(title)}</title>'
             f"<style>{STYLE}</style></head><body><h1>{escape(title)}</h1>{parts[0]}"
             f'<nav aria-label="contents"><ul>{listed}</ul></nav>{"".join(parts[1:])}'
-            f"<script>{OPEN_IN_PRINT}</script></body></html>\n")
+            f"<script>{OPEN_IN_PRINT}</script>\n")
+    return sealed(body.encode("utf-8", "replace").decode("utf-8"))
 
 
 def heading(words: str, anchor: str, kind: str = "") -> str:

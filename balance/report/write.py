@@ -21,19 +21,24 @@ from balance.report.histories import picture_trials
 from balance.report.loops import LoopPicture, picture_loop
 from balance.report.margins import margin_table
 from balance.report.outline import outline
+from balance.report.seal import free_place
 from balance.report.verdicts import headline, tally, verdict_tables
 
 PAGE = "report.html"
 
 
 def write_report(result: CheckResult, folder: str) -> str:
-    """Write the report of `result` into `folder` (made if it is not there), whole or not at all; return its path."""
+    """Write the report of `result` into `folder` (made if it is not there), whole or not at all; return its path.
+
+    An earlier report is replaced, but not one that somebody has edited since: then a new name is chosen (`report-2.html`).
+    Raises OSError where the folder cannot be written.
+    """
     text = compose(result)
     os.makedirs(folder, exist_ok=True)
-    path = os.path.join(folder, PAGE)
+    path = free_place(folder, PAGE)
     handle, unfinished = tempfile.mkstemp(dir=folder, prefix=".report-")
     try:
-        with os.fdopen(handle, "w", encoding="utf-8") as file:
+        with os.fdopen(handle, "w", encoding="utf-8", newline="\n") as file:
             file.write(text)
         os.chmod(unfinished, 0o644)
         os.replace(unfinished, path)

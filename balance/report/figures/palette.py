@@ -24,7 +24,7 @@ WASH = "#eceff1"
 NAVY = "#17456e"
 RUST = "#c4571a"
 PINE = "#2f8f7b"
-PLUM = "#7d2e63"
+PLUM = "#4a1638"
 
 SOLID: str = "-"
 DASHED = (0, (5, 2))
