@@ -6,7 +6,7 @@ import math
 from collections.abc import Callable
 
 from balance.design.records import Design, Margins
-from balance.report.amounts import amount, figure
+from balance.report.amounts import MINUS, amount, figure
 from balance.report.loops import LoopPicture
 from balance.report.tables import Row, Table
 
@@ -46,7 +46,8 @@ def margin_table(designs: tuple[Design, ...], pictures: tuple[LoopPicture | None
         Row("phase margin without sampling and delay",
             tuple(amount(d.ideal.margins.phase, "rad") if d.ideal is not None else "–" for d in designs)),
     )
-    return Table("Stability margins", ("Margin", *(d.plant.stance.name for d in designs)), rows, NOTE)
+    told = tuple(one for one in rows if set(one.cells) != {"–"})
+    return Table("Stability margins", ("Margin", *(d.plant.stance.name for d in designs)), told, NOTE)
 
 
 def loop_words(design: Design) -> str:
@@ -58,4 +59,5 @@ def turns(picture: LoopPicture | None) -> str:
     """Say Nyquist's count of one loop."""
     if picture is None:
         return "–"
-    return f"{picture.count.needed}, {picture.count.found if picture.count.sure else 'not countable'}"
+    found = str(picture.count.found).replace("-", MINUS) if picture.count.sure else "not countable"
+    return f"{picture.count.needed}, {found}"

@@ -92,6 +92,8 @@ def headline(result: CheckResult) -> str:
     several = len({v.stance for v in result.verdicts}) > 1
     names = tuple(dict.fromkeys(spoken(v.name) + (f" ({v.stance})" if several else "") for v in unmet))
     told = listed(names[:3]) if len(names) <= 3 else f"{', '.join(names[:3])} and {len(names) - 3} more"
+    if count == 1:
+        return f"Not passed: the one requirement is not met: {told}."
     be = "is" if len(unmet) == 1 else "are"
     return f"Not passed: {len(unmet)} of {count} requirements {be} not met: {told}."
 

@@ -13,6 +13,7 @@ from balance.api.check import check
 from balance.api.load import load
 from balance.report.write import compose, write_report
 
+ROOT = Path(__file__).parents[2]
 HOSTILE = '<script>alert("x")</script>'
 
 
@@ -75,7 +76,7 @@ def test_hostile_names_are_escaped(answered):
 
 
 def test_a_stabiliser_square_to_the_line_is_reported():
-    job = load("designs/bench-rig.yaml")
+    job = load(str(ROOT / "designs" / "bench-rig.yaml"))
     wheel = replace(job.machine.stabilisers["wheel"], axis=(0.0, 0.0, 1.0))
     result = check(replace(job, machine=replace(job.machine, stabilisers={"wheel": wheel})))
     assert not result.passed

@@ -7,7 +7,7 @@ import math
 import numpy as np
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
-from matplotlib.ticker import FuncFormatter, MultipleLocator
+from matplotlib.ticker import FuncFormatter, MultipleLocator, NullLocator
 from numpy.typing import ArrayLike, NDArray
 
 from balance.report.figures.palette import DASHED, INK, NAVY, PLUM, RUST, SLATE, ink, sheet
@@ -41,12 +41,14 @@ def draw_bode(picture: LoopPicture) -> Figure:
         hertz.set_xlabel("Frequency (Hz)")
         for axis in (phase.xaxis, hertz.xaxis):
             axis.set_major_formatter(FuncFormatter(lambda value, _: f"{value:g}"))
+            axis.set_minor_locator(NullLocator())
         frame(gain, phase, picture)
         mark_half_sampling(gain, phase, picture)
         if picture.stable:
             mark_phase(gain, phase, picture)
             mark_gain(gain, phase, picture)
-        figure.align_ylabels()
+        for one in (gain, phase):
+            one.yaxis.set_label_coords(-0.125, 0.5)
     return figure
 
 

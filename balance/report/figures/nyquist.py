@@ -45,7 +45,7 @@ def draw_nyquist(picture: LoopPicture) -> Figure:
 def count_words(picture: LoopPicture) -> str:
     """Say the stability count in two lines."""
     count = picture.count
-    found = f"found {count.found}" if count.sure else "not countable on this response"
+    found = f"found {count.found}".replace("-", "−") if count.sure else "not countable on this response"
     end = "stable" if picture.stable else "NOT stable"
     return f"Counter-clockwise turns about −1: needed {count.needed}, {found}.\nThe closed loop is {end}."
 

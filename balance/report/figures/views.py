@@ -122,29 +122,42 @@ def draw_centre(axes: Axes, view: View) -> None:
 
 def draw_axles(axes: Axes, view: View, size: float) -> None:
     """Spin axes dash-dotted, gimbal axes dashed; one that faces the reader is a ring with a dot."""
-    named: set[str] = set()
+    taken: list[Array] = []
     for axle in view.axles:
         colour, line = (PINE, MIXED) if axle.kind == "spin" else (PLUM, DASHED)
         reach = 0.2 * size if axle.kind == "spin" else 0.15 * size
-        if float(np.hypot(*axle.along)) < 0.2:
+        if facing(axle):
             axes.plot(*axle.at, "o", mfc="white", mec=colour, mew=1.3, ms=8, zorder=6)
             axes.plot(*axle.at, "o", color=colour, ms=2.5, zorder=6)
         else:
             ends = np.array([axle.at - reach * axle.along, axle.at + reach * axle.along])
             axes.plot(*ends.T, color=colour, ls=line, lw=1.4, zorder=6)
         if axle.kind == "spin":
-            write_unit(axes, axle, reach, len(named))
-            named.add(axle.name)
+            taken.append(write_unit(axes, axle, reach, taken))
 
 
-def write_unit(axes: Axes, axle: Axle, reach: float, row: int) -> None:
-    """Name a unit at the end of its spin axis, or beside it where the axis faces the reader."""
-    facing = float(np.hypot(*axle.along)) < 0.2
+def facing(axle: Axle) -> bool:
+    """Tell whether an axis points at the reader."""
+    return float(np.hypot(*axle.along)) < 0.2
+
+
+def write_unit(axes: Axes, axle: Axle, reach: float, taken: list[Array]) -> Array:
+    """Name a unit at the end of its spin axis, or beside it where the axis faces the reader; return where.
+
+    Of the two ends the upper one is taken, unless another name stands there; then the other, then lower.
+    """
     way = axle.along if axle.along[1] >= 0.0 else -axle.along
-    end = axle.at if facing else axle.at + reach * way
-    shift = (9.0, 7.0 + 10.0 * row) if facing else (6.0 * float(way[0]), 6.0 * float(way[1]))
-    axes.annotate(plain(axle.name, 20), (end[0], end[1]), shift, textcoords="offset points", fontsize=7, color=INK, zorder=9,
-                  bbox=CLEAR, ha="left" if facing else side_of(way[0]), va="bottom" if facing else level_of(way[1]))
+    ends = [(axle.at, np.zeros(2))] if facing(axle) else [(axle.at + side * reach * way, side * way) for side in (1.0, -1.0)]
+    free = [(end, out) for end, out in ends if all(float(np.hypot(*(end - one))) > 0.8 * reach for one in taken)]
+    end, out = (free or ends)[0]
+    beside = facing(axle)
+    shift = (9.0, 7.0) if beside else tuple(6.0 * out)
+    if not free:
+        shift = (shift[0], shift[1] - 10.0)
+    axes.annotate(plain(axle.name, 20), (end[0], end[1]), shift, textcoords="offset points", fontsize=7, color=INK, zorder=9, bbox=CLEAR,
+                  ha="left" if beside else side_of(out[0]), va="bottom" if beside else level_of(out[1]))
+    place: Array = np.asarray(end, dtype=np.float64)
+    return place
 
 
 def side_of(x: float) -> str:
