@@ -5,8 +5,8 @@ from __future__ import annotations
 import math
 
 from balance.check.records import Verdict
-from balance.check.steady import tolerable_offset
 from balance.design.records import Design, Margins
+from balance.design.steady import tolerable_offset
 from balance.goal.goal import Requirements
 
 UNSTABLE = "the closed loop is unstable, so it has no margins"

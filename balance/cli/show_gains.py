@@ -9,6 +9,7 @@ from balance.check.records import Verdict
 from balance.cli.show_forms import show_forms
 from balance.cli.words import closing, failures, folded, side_by_side, verdict_table
 from balance.design.records import Design
+from balance.design.steady import standing
 from balance.report.amounts import amount, figure, spelt
 
 ROUNDING = 1e-12
@@ -21,7 +22,7 @@ def show_gains(designs: tuple[Design, ...], verdicts: tuple[Verdict, ...]) -> st
     made = tuple(d for d in designs if not d.refused)
     parts = [_head(designs[0]), *refused]
     if made:
-        parts += [_laws(made), _margins(made), MEANING, *(show_forms(d) for d in made)]
+        parts += [_laws(made), _margins(made), MEANING, _steady(made), *(show_forms(d) for d in made)]
     if verdicts:
         parts += [verdict_table(verdicts), failures(verdicts)]
     return "\n\n".join(p for p in [*parts, closing(verdicts)] if p)
@@ -81,6 +82,23 @@ def _margins(designs: tuple[Design, ...]) -> str:
             ("phase margin, no delay", _ideal_phase),
             ("pole × delay", lambda d: figure(d.limits.pole_times_delay)),
             ("least Mt of any law", lambda d: figure(d.limits.least_peak_complementary)),
+        ],
+    )
+
+
+def _steady(designs: tuple[Design, ...]) -> str:
+    """What a constant error does for ever."""
+    found = {d.plant.stance.name: standing(d) for d in designs}
+    return side_by_side(
+        "for ever",
+        designs,
+        lambda d: d.plant.stance.name,
+        [
+            ("bears a mass off by", lambda d: amount(found[d.plant.stance.name].offset, "m")),
+            ("bears a tilt misread by", lambda d: amount(found[d.plant.stance.name].tilt, "rad")),
+            ("1 mm off leaves stored", lambda d: amount(abs(found[d.plant.stance.name].momentum), "N*m*s")),
+            ("  and takes, against drag", lambda d: amount(found[d.plant.stance.name].power, "W")),
+            ("1 mm not answered fills it in", lambda d: amount(found[d.plant.stance.name].full_in, "s")),
         ],
     )
 

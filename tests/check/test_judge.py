@@ -9,7 +9,7 @@ import pytest
 
 from balance.check.judge import judge
 from balance.check.rescue import what_it_needs
-from balance.check.steady import tolerable_offset
+from balance.design.steady import tolerable_offset
 from balance.design.build import design_stance
 from balance.goal.goal import Requirements
 from balance.goal.read import read_goal
