@@ -74,7 +74,7 @@ def solid_points(solid: Solid) -> Array:  # noqa: PLR0911 - one return per kind
         case Rod(thin):
             return round_points(0.0, thin.length, thin.along)
         case Sphere():
-            rings = [round_points(solid.sphere * math.cos(a), 2 * solid.sphere / 2 * abs(math.sin(a)), "z")
+            rings = [round_points(solid.sphere * math.cos(a), solid.sphere * math.sin(a), "z")
                      for a in np.linspace(0.0, math.pi / 2, 9)]
             return np.concatenate(rings)
         case _:

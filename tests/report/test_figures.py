@@ -41,7 +41,8 @@ def drawings(result) -> dict[str, Figure]:
 def test_units_and_paper(answered, design, stance):
     for name, figure in drawings(answered(design, stance)).items():
         with ink():
-            labels = [label for axes in figure.axes for label in (axes.get_xlabel(), axes.get_ylabel()) if label]
+            every = [*figure.axes, *(child for axes in figure.axes for child in axes.child_axes)]
+            labels = [label for axes in every for label in (axes.get_xlabel(), axes.get_ylabel()) if label]
             assert labels, name
             assert all(UNIT.search(label) for label in labels), (name, labels)
             assert outside(figure) == [], name

@@ -21,7 +21,10 @@ def draw_machine(machine: Machine, stances: Sequence[Stance], plants: Sequence[P
     """Draw every stance in a row of its own: top view left, side view along the contact line right, axes in mm.
 
     `plants` go with `stances` one by one; a stance without a plant shows no stabiliser.
+    Raises ValueError where there is no stance.
     """
+    if not stances:
+        raise ValueError("no stance to draw")
     drawings = [outline(machine, stance, plants[i] if i < len(plants) else None) for i, stance in enumerate(stances)]
     rows = len(drawings)
     with ink():
@@ -32,8 +35,7 @@ def draw_machine(machine: Machine, stances: Sequence[Stance], plants: Sequence[P
             fill_top(axes[2 * i], drawing)
             axes[2 * i].set_title(f"{plain(drawing.machine)}, {plain(drawing.stance)}", loc="left")
             fill_side(axes[2 * i + 1], drawing)
-        if drawings:
-            figure.legend(handles=key(drawings[0]), loc="lower center", ncols=4, fontsize=7.5)
+        figure.legend(handles=key(drawings[0]), loc="lower center", ncols=4, fontsize=7.5)
     return figure
 
 

@@ -154,8 +154,9 @@ def write_unit(axes: Axes, axle: Axle, reach: float, taken: list[Array]) -> Arra
     shift = (9.0, 7.0) if beside else tuple(6.0 * out)
     if not free:
         shift = (shift[0], shift[1] - 10.0)
-    axes.annotate(plain(axle.name, 20), (end[0], end[1]), shift, textcoords="offset points", fontsize=7, color=INK, zorder=9, bbox=CLEAR,
-                  ha="left" if beside else side_of(out[0]), va="bottom" if beside else level_of(out[1]))
+    axes.annotate(plain(axle.name, 20), (end[0], end[1]), shift, textcoords="offset points", fontsize=7, color=INK,
+                  zorder=9, bbox=CLEAR, ha="left" if beside else side_of(out[0]),
+                  va="bottom" if beside else level_of(out[1]))
     place: Array = np.asarray(end, dtype=np.float64)
     return place
 
