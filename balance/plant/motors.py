@@ -39,6 +39,25 @@ class Drive:
         """Wheel speed in rad/s up to which the current limit, and beyond which the voltage, holds the torque."""
         return max((self.voltage - self.resistance * self.current_limit) / self.back_emf, 0.0)
 
+    @property
+    def slope(self) -> float:
+        """Wheel speed lost per torque at a fixed voltage in rad/s per N·m: R/(K_t K_e)."""
+        return self.resistance / (self.torque_per_amp * self.back_emf)
+
+    @property
+    def most_power(self) -> float:
+        """Largest mechanical power in W without a current limit: V²/(4R) times the gear's efficiency."""
+        return 0.25 * self.torque_per_amp * self.voltage / self.resistance * self.no_load_speed
+
+    @property
+    def motor_constant(self) -> float:
+        """Torque per square root of the winding's heat in N·m/√W: K_t/√R."""
+        return self.torque_per_amp / sqrt(self.resistance)
+
+    def time_constant(self, inertia: float) -> float:
+        """Return how fast speed settles at a fixed voltage in s, for the `inertia` that turns with the wheel (kg·m²)."""
+        return inertia * self.slope
+
     def torque_at(self, speed: float) -> float:
         """Return the torque in N·m still available in the sense of turning at `speed` ≥ 0 (rad/s)."""
         current = (self.voltage - self.back_emf * speed) / self.resistance

@@ -86,7 +86,7 @@ def discounted(row: Array, pole: float) -> float:
     most = min(drive.stall_torque, row[at.TORQUE_LIMIT])
     kink = (drive.voltage - drive.resistance * most / drive.torque_per_amp) / drive.back_emf
     corner = kink * row[at.OWN_INERTIA] / most
-    decay = row[at.OWN_INERTIA] * drive.resistance / (drive.torque_per_amp * drive.back_emf)
+    decay = drive.time_constant(row[at.OWN_INERTIA])
     end = _end(row, drive, most, kink, corner, decay)
     share = float(abs(row[at.COUPLING]) / row[at.OWN_INERTIA])
     return share * wheel_discounted(most, corner, decay, end, pole)
