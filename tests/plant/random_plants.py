@@ -1,0 +1,33 @@
+"""Random machines of the whole variety the equations know, with their plants; Coulomb drag left out."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+import numpy as np
+
+from balance.machine.machine import Machine
+from balance.machine.stabilisers import Drag, ReactionWheel, Stabiliser
+from balance.plant.build import build_plant
+from balance.plant.record import Plant
+from balance.stance.build import build_stance
+from tests.property.machines import random_machine
+
+
+def random_drive(rng: np.random.Generator, unit: Stabiliser) -> Stabiliser:
+    """Give a wheel viscous drag; give a gimbal damping, a spring of either sign and one of the two drives."""
+    if isinstance(unit, ReactionWheel):
+        return replace(unit, drag=Drag(viscous=float(rng.uniform(0.0, 1e-3))))
+    drive = str(rng.choice(["position servo", "torque motor"]))
+    gimbal = replace(unit.gimbal, drive=drive, damping=float(rng.uniform(0.0, 0.1)), spring=float(rng.uniform(-2.0, 2.0)),
+                     bandwidth=float(rng.uniform(2.0, 30.0)), torque_limit=1e6)
+    return replace(unit, gimbal=gimbal)
+
+
+def random_plant(seed: int) -> tuple[Machine, Plant]:
+    """Return a machine with one to three units of any kind, and its plant."""
+    rng = np.random.default_rng(seed)
+    machine = random_machine(rng)
+    units = {name: random_drive(rng, unit) for name, unit in machine.stabilisers.items()}
+    machine = replace(machine, stabilisers=units)
+    return machine, build_plant(machine, build_stance(machine, "s"))
