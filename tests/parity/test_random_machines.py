@@ -1,0 +1,108 @@
+"""Accelerations of random machines against an independent multibody engine (MuJoCo) at random states."""
+
+from __future__ import annotations
+
+from math import radians
+
+import numpy as np
+import pytest
+
+from balance.kernel import layout as at
+from balance.kernel.equations import derivative, servo_torque
+from balance.machine.stabilisers import ReactionWheel
+from balance.stance.facing import faced_axes
+from tests.parity.reduced import reduced
+from tests.plant.random_plants import random_plant
+
+TOLERANCE = 1e-8
+"""Of the row's largest term: both compute in doubles; a wrong term of the equations shows at 1e-4 and more."""
+
+STATES = 3
+
+
+def random_state(rng, plant):
+    """Return (X, inputs, torque about the line): gimbals to ±70°, leans to ±40°, drives strong enough to follow."""
+    units = plant.unit_parameters
+    X, inputs = np.zeros(2 + 2 * len(units)), rng.uniform(-1.0, 1.0, len(units))
+    X[0], X[1] = rng.uniform(-0.7, 0.7), rng.uniform(-3.0, 3.0)
+    for i, row in enumerate(units):
+        if row[at.KIND] == at.WHEEL:
+            X[2 + 2 * i] = rng.uniform(-400.0, 400.0)
+        else:
+            X[2 + 2 * i], X[3 + 2 * i] = rng.uniform(-radians(70), radians(70)), rng.uniform(-4.0, 4.0)
+            inputs[i] *= 5.0
+    return X, inputs, rng.uniform(-20.0, 20.0)
+
+
+def residuals(machine, plant, engine, X, inputs, torque, units):
+    """Return each row's |M a + bias − applied| over its largest term, a being the kernel's accelerations."""
+    dX = np.zeros_like(X)
+    derivative(X, inputs, torque, plant.body_parameters, units, dX)
+    e_T = plant.stance.R_WT.T @ plant.stance.e_W
+    angles, rates, a, applied = {"line": X[0]}, {"line": X[1]}, {"line": dX[1]}, {"line": torque}
+    for i, (name, unit) in enumerate(machine.stabilisers.items()):
+        x, v, given = X[2 + 2 * i], X[3 + 2 * i], inputs[i]
+        if isinstance(unit, ReactionWheel):
+            rates[name], a[name], applied[name] = x, dX[2 + 2 * i], given - unit.drag.viscous * x
+            continue
+        gimbal = f"{name}.gimbal"
+        drive = servo_torque(i, X, given, dX[1], units) if units[i, at.KIND] == at.GIMBAL_SERVO else given
+        count = 2 if f"{name}.spin.1" in engine.columns else 1
+        angles[gimbal], rates[gimbal], a[gimbal] = x, v, dX[3 + 2 * i]
+        applied[gimbal] = count * (drive - unit.gimbal.damping * v - unit.gimbal.spring * x)
+        s, g, _ = faced_axes(unit, e_T)
+        for k, way in enumerate((1.0, -1.0)[:count]):
+            # the momentum H = I_s(φ̇ + σ θ̇) is what is held, with no torque about the spin axis
+            c, n = np.cos(way * x), np.sin(way * x)
+            share, slope = e_T @ (s * c + np.cross(g, s) * n), e_T @ (np.cross(g, s) * c - s * n)
+            rates[f"{name}.spin.{k}"] = way * unit.spin_speed - share * X[1]
+            a[f"{name}.spin.{k}"] = -slope * way * v * X[1] - share * dX[1]
+            applied[f"{name}.spin.{k}"] = 0.0
+    M, bias = engine.equations(angles, rates)
+    terms = np.column_stack([M * [a[n] for n in engine.columns], bias, [-applied[n] for n in engine.columns]])
+    return np.abs(terms.sum(axis=1)) / np.abs(terms).max(axis=1)
+
+
+@pytest.mark.parametrize("block", range(10))
+def test_two_hundred_machines(block):
+    """Random parts, legs, feet of both kinds; wheels geared in both senses; single flywheels, linked pairs, any axes."""
+    for seed in range(20 * block, 20 * block + 20):
+        machine, plant = random_plant(seed)
+        engine = reduced(machine, plant.stance)
+        rng = np.random.default_rng(1000 + seed)
+        for _ in range(STATES):
+            X, inputs, torque = random_state(rng, plant)
+            worst = residuals(machine, plant, engine, X, inputs, torque, plant.unit_parameters)
+            assert worst.max() <= TOLERANCE, (seed, dict(zip(engine.columns, worst, strict=True)))
+
+
+@pytest.mark.parametrize(("entry", "kind", "count"), [
+    (at.COUPLING, at.WHEEL, 0), (at.OWN_INERTIA, at.WHEEL, 0), (at.MOMENTUM, at.GIMBAL_TORQUE, 1),
+    (at.KAPPA, at.GIMBAL_TORQUE, 1), (at.KAPPA, at.GIMBAL_SERVO, 1), (at.GIMBAL_INERTIA, at.GIMBAL_TORQUE, 1),
+    (at.TRANSVERSE, at.GIMBAL_TORQUE, 1), (at.E_S0, at.GIMBAL_TORQUE, 2), (at.E_GXS0, at.GIMBAL_SERVO, 2),
+    (at.TRANSVERSE, at.GIMBAL_TORQUE, 2)])
+def test_one_percent_off_is_seen(entry, kind, count):
+    """The twin of every term: one parameter of the kernel's row 1 % off."""
+    for seed in range(300):
+        machine, plant = random_plant(seed)
+        row = plant.unit_parameters[0]
+        if row[at.KIND] == kind and row[entry] != 0.0 and row[at.COUNT] == count:
+            break
+    else:
+        pytest.fail("no such machine")
+    engine = reduced(machine, plant.stance)
+    X, inputs, torque = random_state(np.random.default_rng(7), plant)
+    wrong = plant.unit_parameters.copy()
+    wrong[0, entry] *= 1.01
+    assert residuals(machine, plant, engine, X, inputs, torque, plant.unit_parameters).max() <= TOLERANCE
+    assert residuals(machine, plant, engine, X, inputs, torque, wrong).max() > 100 * TOLERANCE
+
+
+def test_a_point_foot_in_place_of_a_ball_is_seen():
+    seed = next(s for s in range(50) if random_plant(s)[1].stance.foot_radius > 0.0)
+    machine, plant = random_plant(seed)
+    engine = reduced(machine, plant.stance)
+    X, inputs, torque = random_state(np.random.default_rng(7), plant)
+    assert residuals(machine, plant, engine, X, inputs, torque, plant.unit_parameters).max() <= TOLERANCE
+    plant.body_parameters[at.FOOT_RADIUS] = 0.0
+    assert residuals(machine, plant, engine, X, inputs, torque, plant.unit_parameters).max() > 1e-4
