@@ -49,7 +49,7 @@ def build_plant(machine: Machine, stance: Stance, fell: float = pi / 6.0) -> Pla
 
 
 def _body(stance: Stance, rows: Array, fell: float) -> Array:
-    """Pack the body's row of the kernel; the gimballed rotors' own rotational inertia is taken out of J."""
+    """Pack the body's row of the kernel; what varies with the gimbals' angles is taken out of J."""
     body = np.zeros(at.BODY_SIZE)
     down = stance.gravity * cos(stance.slope)
     body[at.INERTIA] = stance.inertia_locked - sum(_rotor_about_line(r) for r in rows if r[at.KIND] != at.WHEEL)
@@ -64,9 +64,12 @@ def _body(stance: Stance, rows: Array, fell: float) -> Array:
 
 
 def _rotor_about_line(row: Array) -> float:
-    """Return what the gimballed rotors add to J about the line at angle zero, kg·m²: I_t(1 − σ₀²) + I_s σ₀² each."""
+    """Return what each gimballed unit adds to J at angle zero and the kernel adds itself, or (spin) never, kg·m².
+
+    I_t(1 − σ₀²) + I_s σ₀² per rotor, and (F_s − F_across) σ₀² of a frame whose two inertias square to g differ.
+    """
     share = row[at.E_S0] ** 2
-    return float(row[at.COUNT] * (row[at.TRANSVERSE] * (1.0 - share) + row[at.SPIN] * share))
+    return float(row[at.COUNT] * (row[at.TRANSVERSE] * (1.0 - share) + (row[at.SPIN] + row[at.SPIN_HELD]) * share))
 
 
 def _about_balance(body: Array) -> tuple[float, float]:

@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 from balance.kernel import layout as at
 from balance.machine.machine import Machine
 from balance.machine.stabilisers import GimballedFlywheel, ReactionWheel, ScissoredPair, Stabiliser
+from balance.maths.inertia import rotated
 from balance.maths.rotations import unit
 from balance.plant.limits import gimbal_discounted, wheel_discounted
 from balance.plant.motors import Drive, drive_of
@@ -53,6 +54,7 @@ def _wheel(machine: Machine, name: str, wheel: ReactionWheel, e_T: Array) -> tup
 
 
 def _gimballed(name: str, flywheel: GimballedFlywheel, e_T: Array) -> tuple[Unit, Array]:
+    """Return a gimballed unit; its frame's principal axes are taken along gimbal axis, spin axis and their normal."""
     s_T, g_T, R = faced_axes(flywheel, e_T)
     rotor, gimbal = rotor_mass(flywheel.rotor), flywheel.gimbal
     pair = isinstance(flywheel, ScissoredPair)
@@ -63,7 +65,11 @@ def _gimballed(name: str, flywheel: GimballedFlywheel, e_T: Array) -> tuple[Unit
     row[at.KIND] = at.GIMBAL_SERVO if servo else at.GIMBAL_TORQUE
     row[at.E_S0], row[at.E_GXS0], row[at.KAPPA] = float(e_T @ s_T), acting, float(e_T @ g_T)
     row[at.MOMENTUM], row[at.TRANSVERSE] = rotor.spin * flywheel.spin_speed, rotor.transverse
-    row[at.GIMBAL_INERTIA] = float(g_T @ (R @ frame_tensor(flywheel) @ R.T) @ g_T) + rotor.transverse
+    F = rotated(frame_tensor(flywheel), R)                                   # (3, 3)
+    row[at.GIMBAL_INERTIA] = float(g_T @ F @ g_T) + rotor.transverse
+    if flywheel.frame_inertia is not None:                                   # else alike about all axes
+        across = np.cross(g_T, s_T)
+        row[at.SPIN_HELD] = float(s_T @ F @ s_T - across @ F @ across)
     row[at.GIMBAL_DAMPING], row[at.GIMBAL_SPRING] = gimbal.damping, gimbal.spring
     row[at.ANGLE_STOP], row[at.RATE_LIMIT] = gimbal.angle_limit, gimbal.rate_limit
     row[at.DRIVE_TORQUE], row[at.RATE_LAG] = gimbal.torque_limit, 2.0 * np.pi * gimbal.bandwidth

@@ -108,7 +108,7 @@ def _wheel(machine: Machine, name: str, wheel: ReactionWheel, _: object) -> tupl
 
 def _gimballed(_: object, name: str, unit: object, e_T: np.ndarray) -> tuple[str, dict[str, dict[str, float]]]:
     """Return one or two flywheels in their gimbals; the second of a pair stands at −γ."""
-    s, g, _turned = faced_axes(unit, e_T)
+    s, g, turned = faced_axes(unit, e_T)
     spin, across = rotor_moments(unit.rotor)
     pair = isinstance(unit, ScissoredPair)
     text, columns = "", {f"{name}.gimbal": {}}
@@ -117,7 +117,19 @@ def _gimballed(_: object, name: str, unit: object, e_T: np.ndarray) -> tuple[str
         rotor = _body(f"{name}.rotor.{k}", [0, 0, 0], _frame(s), unit.rotor.mass, [across, across, spin], turn)
         gimbal = f'<joint name="{name}.gimbal.{k}" type="hinge" axis="{_v(g)}"/>'
         at = np.array(unit.at) + (side * unit.spacing / 2 * g if pair else 0.0)
-        text += _body(f"{name}.frame.{k}", at, np.eye(3), unit.frame_mass, [unit.gimbal.inertia] * 3, gimbal + rotor)
+        inside = gimbal + rotor + _casing(f"{name}.casing.{k}", unit, turned)
+        text += _body(f"{name}.frame.{k}", at, np.eye(3), NOTHING, [NOTHING] * 3, inside)
         columns[f"{name}.gimbal"][f"{name}.gimbal.{k}"] = way
         columns[f"{name}.spin.{k}"] = {f"{name}.spin.{k}": 1.0}
     return text, columns
+
+
+def _casing(name: str, unit: object, turned: np.ndarray) -> str:
+    """Return a gimbal's frame as a body of its own: alike about all axes, or by its stated tensor's principal axes."""
+    t = unit.frame_inertia
+    if t is None:
+        return _body(name, [0, 0, 0], np.eye(3), unit.frame_mass, [unit.gimbal.inertia] * 3)
+    F = turned @ np.array([[t.xx, t.xy, t.xz], [t.xy, t.yy, t.yz], [t.xz, t.yz, t.zz]]) @ turned.T
+    values, vectors = np.linalg.eigh(F)
+    vectors[:, 2] *= np.sign(np.linalg.det(vectors))
+    return _body(name, [0, 0, 0], vectors, unit.frame_mass, values)

@@ -79,7 +79,8 @@ def test_two_hundred_machines(block):
 @pytest.mark.parametrize(("entry", "kind", "count"), [
     (at.COUPLING, at.WHEEL, 0), (at.OWN_INERTIA, at.WHEEL, 0), (at.MOMENTUM, at.GIMBAL_TORQUE, 1),
     (at.KAPPA, at.GIMBAL_TORQUE, 1), (at.KAPPA, at.GIMBAL_SERVO, 1), (at.GIMBAL_INERTIA, at.GIMBAL_TORQUE, 1),
-    (at.TRANSVERSE, at.GIMBAL_TORQUE, 1), (at.E_S0, at.GIMBAL_TORQUE, 2), (at.E_GXS0, at.GIMBAL_SERVO, 2),
+    (at.TRANSVERSE, at.GIMBAL_TORQUE, 1), (at.SPIN_HELD, at.GIMBAL_TORQUE, 1), (at.SPIN_HELD, at.GIMBAL_TORQUE, 2),
+    (at.E_S0, at.GIMBAL_TORQUE, 2), (at.E_GXS0, at.GIMBAL_SERVO, 2),
     (at.TRANSVERSE, at.GIMBAL_TORQUE, 2)])
 def test_one_percent_off_is_seen(entry, kind, count):
     """The twin of every term: one parameter of the kernel's row 1 % off."""
@@ -95,7 +96,7 @@ def test_one_percent_off_is_seen(entry, kind, count):
     wrong = plant.unit_parameters.copy()
     wrong[0, entry] *= 1.01
     assert residuals(machine, plant, engine, X, inputs, torque, plant.unit_parameters).max() <= TOLERANCE
-    assert residuals(machine, plant, engine, X, inputs, torque, wrong).max() > 100 * TOLERANCE
+    assert residuals(machine, plant, engine, X, inputs, torque, wrong).max() > 20 * TOLERANCE
 
 
 def test_a_point_foot_in_place_of_a_ball_is_seen():

@@ -7,6 +7,7 @@ from dataclasses import replace
 import numpy as np
 
 from balance.machine.machine import Machine
+from balance.machine.solids import Tensor
 from balance.machine.stabilisers import Drag, ReactionWheel, Stabiliser
 from balance.plant.build import build_plant
 from balance.plant.record import Plant
@@ -21,7 +22,12 @@ def random_drive(rng: np.random.Generator, unit: Stabiliser) -> Stabiliser:
     drive = str(rng.choice(["position servo", "torque motor"]))
     gimbal = replace(unit.gimbal, drive=drive, damping=float(rng.uniform(0.0, 0.1)), spring=float(rng.uniform(-2.0, 2.0)),
                      bandwidth=float(rng.uniform(2.0, 30.0)), torque_limit=1e6)
-    return replace(unit, gimbal=gimbal)
+    if rng.random() < 0.5:
+        return replace(unit, gimbal=gimbal)
+    g, s = np.array(unit.gimbal_axis), np.array(unit.spin_axis)
+    axes = np.column_stack([s, np.cross(g, s), g])                   # a frame symmetric about the planes of its axes
+    F = axes @ np.diag(rng.uniform(5e-3, 9e-3, 3)) @ axes.T
+    return replace(unit, gimbal=gimbal, frame_inertia=Tensor(F[0, 0], F[1, 1], F[2, 2], F[0, 1], F[0, 2], F[1, 2]))
 
 
 def random_plant(seed: int) -> tuple[Machine, Plant]:
