@@ -17,7 +17,12 @@ FOOT_RADIUS = 8    # m
 BALANCED = 9       # rad: θ_b
 TOUCH_DOWN = 10    # rad: inward θ of touch-down as a positive number; inf where nothing catches it
 FELL = 11          # rad: |lean| beyond which it fell
-BODY_SIZE = 16
+PRODUCT_U = 12     # kg·m²: u·(I_com e) at θ = 0, without what varies with the gimbals' angles; only the feet feel it
+PRODUCT_W = 13     # kg·m²: w·(I_com e)
+COM_ALONG = 14     # m: the centre of mass from foot a, along e
+LENGTH = 15        # m: from foot a to foot b
+GRAVITY_ALONG = 16 # m/s²: the part of gravity along e (negative where the line rises)
+BODY_SIZE = 20
 
 # unit parameters, common
 KIND = 0           # one of the kinds below
@@ -39,6 +44,8 @@ CURRENT_LIMIT = 10 # A
 CURRENT_LAG = 11   # rad/s: bandwidth of the current loop
 SPEED_LIMIT = 12   # rad/s, relative to the body
 TORQUE_LIMIT = 13  # N·m at the wheel
+COUPLING_U = 16    # kg·m²: (a·u)(I + s N J_r) at θ = 0
+COUPLING_W = 17    # kg·m²: (a·w)(I + s N J_r)
 
 # gimballed flywheel; `COUNT` 1: single, 2: mirrored pair (one coordinate γ, second gimbal at -γ with -H)
 E_S0 = 1           # e·s₀
@@ -56,4 +63,10 @@ DRIVE_TORQUE = 12  # N·m per gimbal
 RATE_LAG = 13      # rad/s: bandwidth of the servo's rate loop
 COUNT = 14
 SPIN = 15          # kg·m²: I_s per rotor
-UNIT_SIZE = 20
+S0_U = 16          # u·s₀ at θ = 0, and so on
+S0_W = 17
+GXS0_U = 18        # u·(g × s₀)
+GXS0_W = 19
+AXIS_U = 20        # u·g
+AXIS_W = 21
+UNIT_SIZE = 24

@@ -11,6 +11,7 @@ from balance.kernel import layout as at
 from balance.machine.machine import Machine
 from balance.plant.limits import impulsive, limited_by, torque_only
 from balance.plant.linear import linear_model
+from balance.plant.off_line import add_body, add_units
 from balance.plant.record import Bounds, Plant, Unit
 from balance.plant.sensor import sensor_parameters
 from balance.plant.sharing import allotment, levelling, line_torque_per_input, momentum_row
@@ -29,7 +30,9 @@ def build_plant(machine: Machine, stance: Stance, fell: float = pi / 6.0) -> Pla
     pairs = [on_line(machine, name, s, stance.R_WT.T @ stance.e_W) for name, s in machine.stabilisers.items()]
     units = tuple(unit for unit, _ in pairs)
     rows = np.array([row for _, row in pairs])                               # (k, UNIT_SIZE)
+    add_units(machine, stance, units, rows)
     body = _body(stance, rows, fell)
+    add_body(stance, rows, body)
     stiffness, inertia = _about_balance(body)
     model = linear_model(body, rows, tuple(machine.stabilisers), stiffness, inertia)
     free = _free(inertia, rows)

@@ -35,6 +35,17 @@ class Reduced:
 
     def equations(self, angles: dict[str, float], rates: dict[str, float]):
         """Return (mass matrix, bias) in the reduced coordinates, at joint angles that obey the constraints."""
+        P, M, bias = self.free(angles, rates)
+        return P.T @ M @ P, P.T @ bias
+
+    def held(self, angles: dict[str, float], rates: dict[str, float], a: dict[str, float]) -> dict[str, float]:
+        """Return what must hold the trunk (forces, then moments about the foot ball's centre) while it accelerates so."""
+        P, M, bias = self.free(angles, rates)
+        needed = M @ P @ [a[name] for name in self.columns] + bias
+        return {joint: float(needed[self.place(joint)]) for joint in ("along", "roll", "up", "yaw", "swerve")}
+
+    def free(self, angles: dict[str, float], rates: dict[str, float]):
+        """Return (P, mass matrix, bias) of the free model."""
         data = mujoco.MjData(self.model)
         P = np.zeros((self.model.nv, len(self.columns)))
         for j, column in enumerate(self.columns.values()):
@@ -45,7 +56,7 @@ class Reduced:
         mujoco.mj_forward(self.model, data)
         M = np.zeros((self.model.nv, self.model.nv))
         mujoco.mj_fullM(self.model, data, M)
-        return P.T @ M @ P, P.T @ data.qfrc_bias
+        return P, M, data.qfrc_bias
 
 
 def reduced(machine: Machine, stance: Stance) -> Reduced:
@@ -60,12 +71,17 @@ def reduced(machine: Machine, stance: Stance) -> Reduced:
         text, own = add(machine, name, unit, e_T)
         bodies.append(text)
         columns |= own
-    R, centre = stance.R_WT, stance.p_a_W + radius * stance.u_W
+    R = stance.R_WT
+    ball = R.T @ (stance.p_a_W + radius * stance.u_W - stance.p_WT)
     model = mujoco.MjModel.from_xml_string(f"""
     <mujoco><option gravity="0 0 -{machine.gravity!r}"/><compiler angle="radian" inertiafromgeom="false"/>
     <worldbody><body name="trunk" pos="{_v(stance.p_WT)}" quat="{_quaternion(R)}">
+    <joint name="along" type="slide" axis="{_v(e_T)}"/>
     <joint name="roll" type="slide" axis="{_v(R.T @ stance.w_W)}"/>
-    <joint name="line" type="hinge" pos="{_v(R.T @ (centre - stance.p_WT))}" axis="{_v(e_T)}"/>
+    <joint name="up" type="slide" axis="{_v(R.T @ stance.u_W)}"/>
+    <joint name="line" type="hinge" pos="{_v(ball)}" axis="{_v(e_T)}"/>
+    <joint name="yaw" type="hinge" pos="{_v(ball)}" axis="{_v(R.T @ stance.u_W)}"/>
+    <joint name="swerve" type="hinge" pos="{_v(ball)}" axis="{_v(R.T @ stance.w_W)}"/>
     <inertial mass="{NOTHING}" pos="0 0 0" diaginertia="{NOTHING} {NOTHING} {NOTHING}"/>
     {''.join(bodies)}</body></worldbody></mujoco>""")
     return Reduced(model, columns)

@@ -1,0 +1,104 @@
+"""Ground forces of a body about its line: at rest, under a wheel, and against the weights' balance on two feet."""
+
+from __future__ import annotations
+
+from math import cos, inf, sin
+
+import numpy as np
+import pytest
+
+from balance.kernel import layout as at
+from balance.kernel.equations import derivative
+from balance.kernel.feet import each_foot, foot_forces, friction_needed, turning
+from tests.kernel.rigs import body, pair, wheel
+
+MASS, HEIGHT, LONG = 3.0, 0.4, 0.5
+
+
+def standing(along=0.2, slope=0.0):
+    """Return a body with feet LONG apart, its centre of mass `along` from foot a, the line rising by `slope`."""
+    row = body(mass=MASS, height=HEIGHT, stiffness=MASS * 9.81 * cos(slope) * HEIGHT)
+    row[at.LENGTH], row[at.COM_ALONG], row[at.GRAVITY_ALONG] = LONG, along, -9.81 * sin(slope)
+    return row
+
+
+def moved(X, units, inputs, row):
+    dX = np.zeros_like(X)
+    derivative(X, np.array(inputs, float), 0.0, row, units, dX)
+    return dX
+
+
+NONE = np.zeros((0, at.UNIT_SIZE))
+STILL = np.zeros(2)
+
+
+def test_at_rest_the_feet_carry_the_weight_by_the_lever():
+    """Statics: the share of each foot is the other's lever arm."""
+    a, b, *rest = each_foot(STILL, STILL, standing(0.2), NONE)
+    assert (a, b) == pytest.approx((MASS * 9.81 * 0.6, MASS * 9.81 * 0.4), rel=1e-12)
+    assert rest == pytest.approx([0.0, 0.0, 0.0], abs=1e-12)
+    beyond = each_foot(STILL, STILL, standing(0.6), NONE)                  # the twin: the centre of mass beyond foot b
+    assert beyond[0] < 0.0
+    assert friction_needed(beyond[0], 0.0, 0.0, MASS * 9.81) == inf
+
+
+def test_a_rising_line_loads_the_lower_foot():
+    """Statics on a slope: each foot's weight by the plumb line of the centre of mass, friction tan β on both."""
+    slope = 0.2
+    a, b, across_a, across_b, along = each_foot(STILL, STILL, standing(0.25, slope), NONE)
+    lever = 0.25 - HEIGHT * np.tan(slope)
+    assert b == pytest.approx(MASS * 9.81 * cos(slope) * lever / LONG, rel=1e-12)
+    assert a + b == pytest.approx(MASS * 9.81 * cos(slope), rel=1e-12)
+    assert along == pytest.approx(MASS * 9.81 * sin(slope), rel=1e-12)
+    for normal, across in ((a, across_a), (b, across_b)):
+        assert friction_needed(normal, across, along, a + b) == pytest.approx(np.tan(slope), rel=1e-12)
+
+
+def test_the_feet_together_are_the_whole():
+    row, units = standing(0.17), wheel()
+    row[at.PRODUCT_U], row[at.PRODUCT_W] = 0.01, -0.02
+    units[0, at.COUPLING_U] = 3e-3
+    X = np.array([0.2, 1.3, 150.0, 0.0])
+    dX = moved(X, units, [0.5], row)
+    a, b, across_a, across_b, _ = each_foot(X, dX, row, units)
+    across, normal = foot_forces(X, dX, row)
+    assert (a + b, across_a + across_b) == pytest.approx((normal, across), rel=1e-12)
+
+
+def test_a_wheel_across_the_line_moves_load_between_the_feet():
+    """Torque τ on a wheel along w takes τ/LONG from one foot and gives it to the other; along u it twists them apart."""
+    row, units = standing(0.25), wheel(share=0.0)
+    X, torque = np.zeros(4), 0.6
+    for slot, sign in ((at.COUPLING_W, 1.0), (at.COUPLING_U, 0.0)):
+        turned = units.copy()
+        turned[0, slot] = turned[0, at.OWN_INERTIA]
+        dX = moved(X, turned, [torque], row)
+        assert dX[1] == 0.0                                               # it does nothing about the line
+        a, b, across_a, across_b, _ = each_foot(X, dX, row, turned)
+        assert b - a == pytest.approx(sign * 2 * torque / LONG, abs=1e-12)
+        assert across_a - across_b == pytest.approx((1.0 - sign) * 2 * torque / LONG, abs=1e-12)
+
+
+def test_a_spinning_wheel_across_the_line_is_a_gyroscope():
+    """θ̇ e × H: a wheel of H along u, turned about the line at θ̇, asks θ̇ H about w of the feet (sign by e × u = w)."""
+    row, units = standing(0.25), wheel(share=0.0)
+    units[0, at.COUPLING_U] = 4e-3
+    X = np.array([0.0, 1.5, 200.0, 0.0])
+    u, w = turning(X, np.zeros(4), row, units)
+    assert (u, w) == pytest.approx((0.0, 1.5 * 4e-3 * 200.0), abs=1e-12)
+
+
+def test_a_mirrored_pair_has_no_parasitic_couple_and_a_single_flywheel_has():
+    """s₀ = u: the single turns the body about u with H sin γ γ̇ (physics page), the pair's two cancel."""
+    H, angle, rate = 0.5, 0.6, 3.0
+    for count, expected in ((1, -H * sin(angle) * rate), (2, 0.0)):
+        units = pair(kind=at.GIMBAL_TORQUE, momentum=H, count=count)
+        units[0, at.S0_U], units[0, at.AXIS_W] = 1.0, -1.0
+        X = np.array([0.0, 0.0, angle, rate])
+        u, _ = turning(X, np.zeros(4), standing(), units)
+        assert u == pytest.approx(expected, abs=1e-12)
+
+
+def test_friction_shares_the_force_along_the_line_by_load():
+    assert friction_needed(10.0, 3.0, 8.0, 20.0) == pytest.approx(0.5, rel=1e-12)     # √(3² + 4²)/10
+    assert friction_needed(0.0, 0.0, 0.0, 20.0) == inf
