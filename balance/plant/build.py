@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from math import atan, cos, hypot, inf, log, pi, sin, sqrt
+from math import atan, atan2, cos, hypot, inf, log, pi, sin, sqrt
 
 import numpy as np
 from numpy.typing import NDArray
@@ -60,10 +60,16 @@ def _body(stance: Stance, rows: Array, fell: float) -> Array:
     body[at.STIFF_COS] = stance.mass * down * stance.offset
     body[at.BODY_DRAG], body[at.MASS], body[at.GRAVITY] = stance.drag, stance.mass, down
     body[at.HEIGHT], body[at.OFFSET], body[at.FOOT_RADIUS] = stance.height, stance.offset, stance.foot_radius
-    body[at.BALANCED] = -atan(stance.offset / (stance.height - stance.foot_radius))
+    body[at.BALANCED] = _balanced(stance)
     body[at.TOUCH_DOWN] = stance.touch_down_lean if stance.touch_down_lean is not None else inf
     body[at.FELL] = fell
     return body
+
+
+def _balanced(stance: Stance) -> float:
+    """Return θ_b in rad: −atan(δ/(h − r)); feet as round as the machine is high (h = r) are no error."""
+    above = stance.height - stance.foot_radius
+    return -atan2(stance.offset, above) if above >= 0.0 else -atan(stance.offset / above)
 
 
 def _rotor_about_line(row: Array) -> float:
@@ -81,7 +87,7 @@ def _about_balance(body: Array) -> tuple[float, float]:
     s, c = sin(body[at.BALANCED]), cos(body[at.BALANCED])
     rolled = -2.0 * body[at.MASS] * r * ((h - r) * (1.0 - c) + d * s)
     weight = body[at.MASS] * body[at.GRAVITY]
-    return float(weight * hypot(h - r, d) * (1.0 if h > r else -1.0)), float(body[at.INERTIA] + rolled)
+    return float(weight * hypot(h - r, d) * (1.0 if h >= r else -1.0)), float(body[at.INERTIA] + rolled)
 
 
 def _free(inertia: float, rows: Array) -> float:

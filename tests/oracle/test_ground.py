@@ -65,6 +65,14 @@ def test_foot_rounder_than_the_machine_is_high_rocks():
     assert run.t_events[0][1] - run.t_events[0][0] == pytest.approx(1.061511, rel=1e-5)
 
 
+def test_foot_as_round_as_the_machine_is_high_is_neutral():
+    """Between the two: G = m g (h − r) = 0, no pole, nothing to bound; a hair less round and it topples again."""
+    plant = standing(5.0, 0.4, 0.08 + 5.0 * 0.4**2, 0.4)
+    assert plant.stiffness == plant.pole == plant.balanced_lean == 0.0
+    assert rates(plant, [0.3, 0, 0, 0])[1] == pytest.approx(0.0, abs=1e-12)
+    assert standing(5.0, 0.4, 0.08 + 5.0 * 0.4**2, 0.39).pole > 0.0
+
+
 def test_friction_under_full_wheel_torque():
     """16.02: μ = hτ/(I g) at the upright (derived); the machine's mass does not matter."""
     for mass in (4.0, 9.0):
