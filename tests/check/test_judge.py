@@ -9,8 +9,8 @@ import pytest
 
 from balance.check.judge import judge
 from balance.check.rescue import what_it_needs
-from balance.design.steady import tolerable_offset
 from balance.design.build import design_stance
+from balance.design.steady import tolerable_offset
 from balance.goal.goal import Requirements
 from balance.goal.read import read_goal
 from balance.goal.trials import OffsetShift, Push, Start, Trial
