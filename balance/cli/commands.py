@@ -37,7 +37,13 @@ def run_plant(asked: argparse.Namespace, progress: Progress) -> Outcome:
 
     plants = plant(body.machine, body.stances, body.fell)
     code = MET if all(p.acts for p in plants) else UNMET
-    return Outcome(code, show_plant(plants), json_plant(plants))
+    text, answer = show_plant(plants), json_plant(plants)
+    if asked.figure:
+        from balance.api.report import figure
+
+        answer["figure"] = figure(body.machine, plants, asked.figure)
+        text += f"\n\ndrawing: {answer['figure']}"
+    return Outcome(code, text, answer)
 
 
 def run_gains(asked: argparse.Namespace, progress: Progress) -> Outcome:

@@ -102,6 +102,9 @@ def _own_words(name: str, parser: argparse.ArgumentParser) -> None:
             default="",
             help="a stance's name, or every (default: as the file says)",
         )
+    if name == "plant":
+        drawing = "draw the machine to scale into a .svg or .png file"
+        parser.add_argument("--figure", metavar="PATH", default="", help=drawing)
     if name == "check":
         parser.add_argument(
             "--out",

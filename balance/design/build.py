@@ -5,6 +5,7 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
+from balance.base.errors import InputError, Problem
 from balance.design.complementary import complementary
 from balance.design.ideal import ideal_lqr
 from balance.design.law import Law
@@ -27,7 +28,10 @@ SQUARE = "cannot act about this line: every stabiliser is square to it"
 
 
 def design_stance(plant: Plant, goal: Goal) -> Design:
-    """Return the design; a machine that cannot be balanced is answered in `refused`, never by an exception."""
+    """Return the design; a machine that cannot be balanced is answered in `refused`, never by an exception.
+
+    Raises InputError for explicit weights that do not go with the model's states.
+    """
     T = 1.0 / goal.loop.rate
     sampled = sample_plant(plant, T, goal.loop.latency)
     if not plant.acts:
@@ -47,12 +51,25 @@ def _law(plant: Plant, sampled: SampledPlant, goal: Goal) -> Law | str:
     """Return the law or why there is none."""
     if isinstance(goal.control, PidControl):
         return design_pid(plant, sampled, goal)
+    check_weights(plant, goal, goal.control)
     limits = loop_limits(plant, sampled.sample_time, sampled.latency)
     try:
         return lqr_law(plant, sampled, goal.control)
     except np.linalg.LinAlgError:
         return (f"no gains stabilise this loop: the unstable pole times the delay is {limits.pole_times_delay:.2f}; "
                 "above about 0.3 little is left, above about 1.4 nothing")
+
+
+def check_weights(plant: Plant, goal: Goal, control: LqrControl) -> None:
+    """Raise InputError where explicit weights do not go with the model's states."""
+    states = plant.model.states
+    if control.weights is None or len(control.weights.states) == len(states):
+        return
+    key = "control.weights.states"
+    line, column = goal.marks.get(key, (0, 0))
+    raise InputError([Problem(goal.source, line, column, key, f"{len(control.weights.states)} weights",
+                              f"{len(states)}, one for each of {', '.join(states)}",
+                              "lag and past commands weigh nothing and are left out")])
 
 
 def equivalent(poles: NDArray[np.complex128], sample_time: float) -> NDArray[np.complex128]:

@@ -7,6 +7,7 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
+from balance.base.errors import InputError
 from balance.design.build import design_stance
 from balance.design.loop import close, command_break, sample_plant
 from balance.design.lqr import lqr_gain, weights
@@ -128,3 +129,13 @@ def test_a_hopeless_delay_is_answered_by_the_limit():
     design = design_stance(plant, goal(rate=500.0, latency=0.12))
     assert design.limits.least_peak_complementary == pytest.approx(np.exp(plant.unstable_pole * 0.12))
     assert design.refused or design.margins.peak_complementary >= design.limits.least_peak_complementary * (1 - 1e-6)
+
+
+def test_weights_that_do_not_fit_the_states_are_an_input_error():
+    own = LqrControl(weights=Weights((1.0, 1.0), 1.0))
+    marks = {"control.weights.states": (7, 3)}
+    with pytest.raises(InputError) as caught:
+        design_stance(plant_of(wheel_machine()), goal(control=own, source="d.yaml", marks=marks))
+    (problem,) = caught.value.problems
+    assert (problem.where, problem.line, problem.column) == ("d.yaml", 7, 3)
+    assert "lean, lean_rate, wheel_speed" in problem.allowed
