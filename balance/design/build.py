@@ -6,12 +6,13 @@ import numpy as np
 from numpy.typing import NDArray
 
 from balance.base.errors import InputError, Problem
+from balance.design.command import command_unit
 from balance.design.complementary import complementary
 from balance.design.ideal import ideal_lqr
 from balance.design.law import Law
 from balance.design.limits import loop_limits
 from balance.design.loop import SampledPlant, actuator_break, close, sample_plant
-from balance.design.lqr import command_unit, lqr_law
+from balance.design.lqr import lqr_law
 from balance.design.margins import UNSTABLE, margins_of
 from balance.design.pid import design_pid
 from balance.design.records import Design, Response

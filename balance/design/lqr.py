@@ -10,6 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy.linalg import solve_discrete_are
 
+from balance.design.command import command_unit, output_limit
 from balance.design.law import Law
 from balance.design.loop import SampledPlant
 from balance.goal.goal import Allow, LqrControl
@@ -77,13 +78,3 @@ def lqr_law(plant: Plant, sampled: SampledPlant, control: LqrControl) -> Law:
         output_limit=output_limit(plant), allotment=plant.allotment, levelling=plant.levelling,
         input_limits=np.array([unit.input_limit for unit in plant.units]), unit=command_unit(plant), K=K,
         states=sampled.states, gains={})
-
-
-def output_limit(plant: Plant) -> float:
-    """Return the limit of the line command: one unit's own input limit, or the torque of all units about the line."""
-    return float(plant.units[0].input_limit if len(plant.units) == 1 else plant.torque_limit)
-
-
-def command_unit(plant: Plant) -> str:
-    """Return the SI unit of the line command."""
-    return "rad/s" if len(plant.units) == 1 and plant.units[0].drive == "rate" else "N*m"

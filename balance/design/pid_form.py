@@ -37,6 +37,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from balance.design.command import command_unit, output_limit
 from balance.design.law import Law
 from balance.plant.record import Plant
 
@@ -119,26 +120,12 @@ def pid_law(plant: Plant, form: PidForm, act: Actuation, sample_time: float, lat
     return Law(
         kind="pid", sample_time=T, latency=latency, measurements=plant.model.states,
         memory=tuple(("integral", "filtered_rate")[kept]), A=A[kept, kept], B=B[kept], E=E[kept], C=C[kept], D=D,
-        output_limit=command_limit(plant), allotment=plant.allotment, levelling=plant.levelling,
+        output_limit=output_limit(plant), allotment=plant.allotment, levelling=plant.levelling,
         input_limits=np.array([unit.input_limit for unit in plant.units]),
         unit=command_unit(plant), K=np.zeros(0), states=plant.model.states,
         gains={"kp": form.kp, "ki": form.ki, "kd": form.kd, "momentum": form.momentum,
                "derivative_filter_rad_s": form.filter, "tracking_time_s": max(form.tracking, T),
                "command_per_torque": act.scale, "inner_bandwidth_rad_s": act.inner})
-
-
-def command_limit(plant: Plant) -> float:
-    """Return the largest |v|: a single unit's own input limit, else where the first of several units meets its own."""
-    if len(plant.units) == 1:
-        return float(plant.units[0].input_limit)
-    limits = np.array([unit.input_limit for unit in plant.units])
-    share = np.abs(plant.allotment)
-    return float(np.min(limits[share > 0] / share[share > 0]))
-
-
-def command_unit(plant: Plant) -> str:
-    """Return the unit of v: a single rate-driven gimbal's rad/s, else N·m."""
-    return "rad/s" if all(unit.drive == "rate" for unit in plant.units) and len(plant.units) == 1 else "N*m"
 
 
 def loop_terms(plant: Plant, form: PidForm, act: Actuation, z: Complex, outputs: Complex, T: float) -> Complex:
