@@ -59,6 +59,7 @@ class Loop:
         self.scale = torque_scale
         self.e_T = design.plant.stance.R_WT.T @ design.plant.stance.e_W
         self.supply = machine.supply
+        self.held = False                       # the pair's gimbals rest on their stop
 
     # state y: lean angle θ, θ̇, then per wheel (Ω, i), or for the pair (γ, γ̇)
     def accelerate(self, y, forces, torque):
@@ -92,6 +93,8 @@ class Loop:
         change = self.accelerate(y, [1.0], torque) - still                     # affine in the drive's torque
         given = np.clip((wanted - still[gimbal]) / change[gimbal], -drive.torque_limit, drive.torque_limit)
         q = still + given * change
+        if self.held:
+            q = still - still[gimbal] / change[gimbal] * change            # the stop lets it turn no further
         return np.array([y[1], q[self.at["line"]], y[3], q[gimbal]])
 
     def wheel_rates(self, y, commands, torque):
@@ -138,10 +141,24 @@ class Loop:
         measured = np.array(measured)
         measured[0] -= self.plant.balanced_lean
         cut = float(np.clip(law.C @ memory + law.D @ measured, -law.output_limit, law.output_limit))
-        inputs = np.clip(law.allotment * cut - law.levelling @ measured, -law.input_limits, law.input_limits)
+        inputs = self.share_out(law.allotment * cut - law.levelling @ measured)
         return inputs, law.A @ memory + law.B @ measured + law.E * cut
 
-    def run(self, lasts, lean=0.0, push=0.0, at=0.0, fell=np.pi / 6):
+    def share_out(self, asked):
+        """Clip the inputs; what one wheel cannot give about the line the others take over, by the room they have."""
+        most = self.law.input_limits
+        given = np.clip(asked, -most, most)
+        if not self.wheels or len(self.units) == 1:
+            return given
+        share = np.array([np.dot(wheel.axis, self.e_T) / np.linalg.norm(wheel.axis) for _, wheel in self.units])
+        missing = float(share @ (asked - given))
+        room = np.abs(share) * (most - np.sign(missing) * np.sign(share) * given)
+        if missing == 0.0 or room.sum() == 0.0:
+            return given
+        more = np.sign(missing) * min(abs(missing), room.sum()) * room / room.sum()
+        return given + np.divide(more, share, out=np.zeros_like(more), where=room > 0.0)
+
+    def run(self, lasts, lean=0.0, push=0.0, at=0.0, fell=np.pi / 6, step=STEP):
         """Run: start at a lean; an angular impulse about the line at `at` (a sampling instant, seen one sample later)."""
         T, late = self.law.sample_time, self.law.latency
         whole, part = int(late // T + 1e-9), late - int(late // T + 1e-9) * T
@@ -156,8 +173,9 @@ class Loop:
                 self.push(y, push)
             rows.append((k * T, y[0] - self.plant.balanced_lean, self.momentum(y)))
             for span, asked in ((part, queue[whole + 1]), (T - part, queue[whole])):
-                for _ in range(round(span / STEP)):
-                    y = self.step(y, asked, span / round(span / STEP))
+                steps = int(np.ceil(span / step - 1e-9))
+                for _ in range(steps):
+                    y = self.step(y, asked, span / steps)
             if abs(rows[-1][1]) > fell:
                 verdict = "fell outward" if rows[-1][1] > 0 else "fell inward"
                 break
@@ -178,12 +196,31 @@ class Loop:
                 y[2 + 2 * i] += impulse * change[self.at[name]]
 
     def step(self, y, commands, h):
+        """Make one step; where a gimbal meets its stop within it, the rest is made from there."""
+        self.held = False
+        if not self.wheels and abs(y[2]) >= self.units[0][1].gimbal.angle_limit - 1e-12 and y[3] == 0.0:
+            self.held = self.rates(y, commands, 0.0)[3] * y[2] >= 0.0       # it may leave at the beginning of a step
+        new = self.runge_kutta(y, commands, h)
+        if self.wheels or abs(new[2]) <= self.units[0][1].gimbal.angle_limit:
+            return new
+        low, high = 0.0, h
+        for _ in range(40):
+            middle = 0.5 * (low + high)
+            over = abs(self.runge_kutta(y, commands, middle)[2]) > self.units[0][1].gimbal.angle_limit
+            low, high = (low, middle) if over else (middle, high)
+        return self.step(self.meet_stop(self.runge_kutta(y, commands, low)), commands, h - low)
+
+    def meet_stop(self, y):
+        """Stop the gimbal dead: the impulse acts between gimbal and body, in the ratio of the engine's accelerations."""
+        gimbal = self.at[f"{self.units[0][0]}.gimbal.0"]
+        change = self.accelerate(y, [1.0], 0.0).copy() - self.accelerate(y, [0.0], 0.0)
+        limit = self.units[0][1].gimbal.angle_limit
+        return np.array([y[0], y[1] - y[3] * change[self.at["line"]] / change[gimbal], np.sign(y[2]) * limit, 0.0])
+
+    def runge_kutta(self, y, commands, h):
         """Classic Runge-Kutta."""
         a = self.rates(y, commands, 0.0)
         b = self.rates(y + h / 2 * a, commands, 0.0)
         c = self.rates(y + h / 2 * b, commands, 0.0)
         d = self.rates(y + h * c, commands, 0.0)
-        y = y + h / 6 * (a + 2 * b + 2 * c + d)
-        if not self.wheels and abs(y[2]) > self.units[0][1].gimbal.angle_limit:
-            y[2], y[3] = np.sign(y[2]) * self.units[0][1].gimbal.angle_limit, 0.0
-        return y
+        return y + h / 6 * (a + 2 * b + 2 * c + d)
