@@ -29,6 +29,7 @@ def _trial(trial: TrialResult) -> Tree:
         "peak_bus_power_w": number(trial.peak_bus_power),
         "friction_needed": number(trial.friction_needed),
         "lift_off": trial.lift_off,
+        "standing_swing_rad": number(trial.standing_swing),
         "end_lean_rad": number(trial.end_lean),
         "end_momentum_n_m_s": number(trial.end_momentum),
     }

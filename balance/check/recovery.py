@@ -64,6 +64,10 @@ def _worst_cases(goal: Goal, design: Design, trials: Sequence[TrialResult]) -> l
     if friction is not None:
         verdicts.append(_worst("friction_needed", trials, lambda r: r.friction_needed, "", friction, lambda r, v, lim:
                                f"{_which(r)} needs {v:.2f} under the feet, {v - lim:.2f} too much: they would slip"))
+    if require.standing_swing is not None:
+        verdicts.append(_worst("standing_swing", trials, lambda r: r.standing_swing, "rad", require.standing_swing,
+                               lambda r, v, lim: f"{_which(r)} keeps swinging {math.degrees(v - lim):.2g}° too far"
+                               if math.isfinite(v) else f"{_which(r)} does not stand at the end ({r.verdict})"))
     if any(r.lift_off for r in trials):
         lifted = next(r for r in trials if r.lift_off)
         verdicts.append(Verdict("feet_on_ground", plant.stance.name, "lifted", "", "on the ground", "is", False,

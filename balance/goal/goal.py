@@ -13,10 +13,16 @@ Marks = Mapping[str, tuple[int, int]]
 
 @dataclass(frozen=True)
 class Loop:
-    """The sampled loop. `latency` runs from the sampling instant to the torque command."""
+    """The sampled loop. `latency` runs from the sampling instant to the torque command.
+
+    `jitter` makes each command later still, by up to that much, in every trial; margins are those of `latency`.
+    `command_bits`: the input of each unit is rounded to one of 2^bits levels over its whole range, ± its limit.
+    """
 
     rate: float = quantity("frequency", above=0)
     latency: float = quantity("time", least=0, default=0.0)
+    jitter: float = quantity("time", least=0, default=0.0, says="largest extra latency of a command")
+    command_bits: int | None = place(Shape("whole", least=2, most=32, says="bits of a unit's command"), None)
 
 
 @dataclass(frozen=True)
@@ -94,6 +100,8 @@ class Requirements:
     peak_lean: float | None = quantity("angle", above=0, default=None)
     settling_time: float | None = quantity("time", above=0, default=None)
     friction_needed: float | None = number(above=0, default=None)
+    standing_swing: float | None = quantity("angle", above=0, default=None,
+                                            says="amplitude of a lean that never dies out")
     offset_error: float | None = quantity("length", above=0, default=None,
                                           says="steady centre-of-mass error that must be tolerable for ever")
 

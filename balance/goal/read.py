@@ -9,6 +9,7 @@ from balance.base.words import did_you_mean, listed
 from balance.files.document import load
 from balance.files.reader import read
 from balance.goal.goal import Goal
+from balance.goal.gusts import with_gusts
 from balance.goal.rules import RULES
 
 EVERY = "every"
@@ -23,9 +24,9 @@ def read_goal(path: str) -> Goal:
     Raises
     ------
     InputError
-        With all problems of the file.
+        With all problems of the file, or of the sheets of gusts it names.
     """
-    return read(load(path), Goal, RULES)
+    return with_gusts(read(load(path), Goal, RULES))
 
 
 def stance_problem(goal: Goal, stances: Sequence[str]) -> Problem | None:

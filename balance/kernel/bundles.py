@@ -26,6 +26,8 @@ class LawArrays(NamedTuple):
     levelling: Array      # (u, m)
     input_limits: Array   # (u,)
     line_share: Array     # (u,) torque about the line per input; 0: takes nothing over
+    input_steps: Array    # (u,) what an input is rounded to; 0: not rounded
+    resting: Array        # (m,) what each measurement is counted from (lean: from the balanced lean anyhow)
     places: Places        # (m,) where each measurement stands in X, 0 is read as lean; below 0: `sensing`
     sample_time: float    # s
     latency: float        # s
@@ -43,6 +45,8 @@ class Events(NamedTuple):
     longest: float        # s: longest sub-step
     sensor: Array         # (SENSOR_SIZE,) layout: `sensing`
     seed: int             # of the sensor noise
+    changes: Array        # (c, CHANGED + BODY_SIZE) by time
+    spells: Array         # (k, SPELL_SIZE)
 
 
 class Output(NamedTuple):
@@ -59,9 +63,10 @@ class Work(NamedTuple):
 
     numbers: Array        # (NUMBERS, width) one purpose per row, see below
     flags: Places         # (FLAGS, width)
-    body: Array           # copy: an offset shift changes it
+    body: Array           # copy: what varies over time is in it
+    base: Array           # the same without what varies over time; a shift or a load changes both
     live: Array           # copy of the units: a gimbal on its stop changes it
-    queue: Array          # (whole periods of latency + 2, u) inputs computed, newest first
+    queue: Array          # (rows, u + 1) inputs computed, newest first; last column: s, from when they act
     active: Array         # (s, TORQUE_SIZE) torques that act in this piece
     spare_first: Array    # like Output.first, for steps that only look ahead
 
@@ -93,13 +98,18 @@ NEXT_JUMP = 0
 NEXT_BREAK = 1
 TORQUES_ON = 2    # how many rows of Work.active count
 CLIPPED = 3       # 1: the law's own limits were met at this sample
+VARYING = 4       # 1: a row of Work.active changes the body over time
+NEXT_CHANGE = 5
 
 
 def fresh_work(body: Array, units: Array, law: LawArrays, events: Events) -> Work:
     """Return working arrays for one trial."""
     n, count = 2 + 2 * units.shape[0], units.shape[0]
     width = max(n, law.A.shape[0], law.D.size, outcome.METRIC_SIZE)
-    whole = int(np.floor(law.latency / law.sample_time + 1e-9))
-    return Work(np.zeros((NUMBERS, width)), np.zeros((FLAGS, width), np.int64), body.copy(), units.copy(),
-                np.zeros((whole + 2, count)), np.zeros((events.torques.shape[0], outcome.TORQUE_SIZE)),
+    late = [row[outcome.VALUE] for row in events.spells if row[outcome.WHAT] == outcome.LATE]
+    whole = int(np.floor((law.latency + max(late, default=0.0)) / law.sample_time + 1e-9))
+    queue = np.zeros((whole + 2, count + 1))
+    queue[:, count] = -np.inf
+    return Work(np.zeros((NUMBERS, width)), np.zeros((FLAGS, width), np.int64), body.copy(), body.copy(), units.copy(),
+                queue, np.zeros((events.torques.shape[0], outcome.TORQUE_SIZE)),
                 np.full((count + 1, outcome.LIMITS, 2), np.inf))

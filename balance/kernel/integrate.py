@@ -17,12 +17,20 @@ from balance.kernel.gauge import watch
 from balance.kernel.layout import (
     ANGLE_STOP,
     BALANCED,
+    BODY_DRAG,
     CURRENT_LAG,
     DRIVE_TORQUE,
     FELL,
     GIMBAL_SERVO,
+    GRAVITY,
+    HEIGHT,
+    INERTIA,
     KIND,
+    MASS,
+    OFFSET,
     RATE_LAG,
+    STIFF_COS,
+    STIFF_SIN,
     TORQUE_PER_AMP,
     TOUCH_DOWN,
     WHEEL,
@@ -66,6 +74,25 @@ def disturbance_at(t: float, active: Array, count: int) -> float:
 
 
 @njit(cache=True, error_model="numpy", forceinline=True)
+def vary(t: float, active: Array, count: int, base: Array, body: Array) -> None:
+    """Put what the rows of `active` make of the body at time t.
+
+    J̇ θ̇ of a changing inertia acts as a drag does; the height and offset that the feet feel follow G_s and G_c.
+    """
+    inertia, change, up, across = 0.0, 0.0, 0.0, 0.0
+    for i in range(count):
+        s = t - active[i, outcome.START]
+        inertia += active[i, outcome.OF_INERTIA] + active[i, outcome.OF_INERTIA + 1] * s
+        change += active[i, outcome.OF_INERTIA + 1]
+        up += active[i, outcome.OF_STIFF_SIN] + active[i, outcome.OF_STIFF_SIN + 1] * s
+        across += active[i, outcome.OF_STIFF_COS] + active[i, outcome.OF_STIFF_COS + 1] * s
+    weight = base[MASS] * base[GRAVITY]
+    body[INERTIA], body[BODY_DRAG] = base[INERTIA] + inertia, base[BODY_DRAG] + change
+    body[STIFF_SIN], body[HEIGHT] = base[STIFF_SIN] + up, base[HEIGHT] + up / weight
+    body[STIFF_COS], body[OFFSET] = base[STIFF_COS] + across, base[OFFSET] + across / weight
+
+
+@njit(cache=True, error_model="numpy", forceinline=True)
 def rates(X: Array, torque: float, commands: Array, body: Array, live: Array, met: Flags, inputs: Array,
           slopes: Array, out: Array) -> None:
     """Fill `out` with dX/dt under held commands and a torque about the line; `met` with each unit's limit."""
@@ -82,10 +109,9 @@ def rates(X: Array, torque: float, commands: Array, body: Array, live: Array, me
 
 
 @njit(cache=True, error_model="numpy")
-def march(X: Array, begin: float, h: float, steps: int, commands: Array, active: Array, count: int,
-          body: Array,
-          units: Array, live: Array, held: Flags, met: Flags, inputs: Array, slopes: Array, rate: Array,
-          total: Array, probe: Array, metrics: Array, first: Array) -> tuple[int, int]:
+def march(X: Array, begin: float, h: float, steps: int, commands: Array, active: Array, count: int, varying: int,
+          base: Array, body: Array, units: Array, live: Array, held: Flags, met: Flags, inputs: Array, slopes: Array,
+          rate: Array, total: Array, probe: Array, metrics: Array, first: Array) -> tuple[int, int]:
     """Make at most `steps` sub-steps of h from `begin`; return (steps made, how the trial ended).
 
     It stops short, with X at the end of the last whole step, where a free gimbal would pass its stop. Classic
@@ -102,6 +128,8 @@ def march(X: Array, begin: float, h: float, steps: int, commands: Array, active:
                 for j in range(X.size):
                     probe[j] = X[j] + reach * rate[j]
             torque = disturbance_at(t + reach, active, count)
+            if varying == 1:
+                vary(t + reach, active, count, base, body)
             rates(probe, torque, commands, body, live, met, inputs, slopes, rate)
             if stage == 0:
                 settle_currents(X, inputs, live, met, held)

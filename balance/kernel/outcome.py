@@ -49,17 +49,34 @@ COMMAND = 6
 DISTURBANCE = 7
 TRACE_SIZE = 8
 
-# a torque about the line over time: START <= t < END: LEVEL + SLOPE (t - START) + SWING sin(TURN (t - START))
+# a torque about the line over time: START <= t < END: LEVEL + SLOPE (t - START) + SWING sin(TURN (t - START)); beside it
+# what is added meanwhile to J, G_s and G_c, each a level and a slope
 START = 0
 END = 1
 LEVEL = 2
 SLOPE = 3
 SWING = 4
 TURN = 5
-TORQUE_SIZE = 6
+OF_INERTIA = 6       # kg·m², next column: per s
+OF_STIFF_SIN = 8     # N·m
+OF_STIFF_COS = 10    # N·m
+TORQUE_SIZE = 12
 
 # a sudden change
 AT = 0               # s
 KICK = 1             # N·m·s of angular impulse about the line
 SHIFT = 2            # m of the centre of mass along w
 JUMP_SIZE = 3
+
+# the body changes (a load is put on, a foot sinks): what is added to each of its parameters
+# AT = 0 as above
+AT_REST = 1          # kg·m² that come without speed: what moves shares its momentum with them
+CHANGED = 2          # from here on BODY_SIZE columns
+
+# a spell of trouble: START <= t < END
+WHAT = 2             # one of the three below
+VALUE = 3
+SUPPLY_LEFT = 0      # VALUE: share of the supply's voltage that is left
+MISSED = 1           # VALUE: probability that a sample is not taken
+LATE = 2             # VALUE: s, largest extra latency of a command
+SPELL_SIZE = 4

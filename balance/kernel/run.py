@@ -21,11 +21,13 @@ from balance.kernel.bundles import (
     MEASURED,
     MEMORY,
     NEXT_BREAK,
+    NEXT_CHANGE,
     NEXT_JUMP,
     PROBE,
     RATE,
     SPARE,
     TORQUES_ON,
+    VARYING,
     Events,
     LawArrays,
     Output,
@@ -34,6 +36,7 @@ from balance.kernel.bundles import (
 from balance.kernel.gauge import available, line_momentum, line_torque, note
 from balance.kernel.integrate import jump
 from balance.kernel.layout import BALANCED, GRAVITY, KIND, MASS, OFFSET, STIFF_COS, WHEEL
+from balance.kernel.sensing import digitised, scrambled
 from balance.kernel.stops import rates_now, release_stops, run_piece
 from balance.kernel.tick import law_tick, measure, reads_sensor, share_out
 
@@ -54,7 +57,7 @@ def run_trial(X: Array, units: Array, law: LawArrays, events: Events, work: Work
         start = sample * law.sample_time
         until = min(start + law.sample_time, events.lasts)
         tick(X, start, sample, units, law, events, work, output)
-        end = run_period(X, start, until, sample, law.sample_time, law.latency, units, events, work, output)
+        end = run_period(X, start, until, sample, law.sample_time, units, events, work, output)
         taken += 1
         if end != outcome.RAN:
             break
@@ -66,10 +69,16 @@ def run_trial(X: Array, units: Array, law: LawArrays, events: Events, work: Work
 def tick(X: Array, start: float, sample: int, units: Array, law: LawArrays, events: Events, work: Work,
          output: Output) -> None:
     """Take a sample and compute the command that acts `latency` later; until the release it is held at zero."""
-    numbers, queue = work.numbers, work.queue
+    numbers, queue, stored = work.numbers, work.queue, line_momentum(X, units)
+    output.history[sample, 0] = X[0] - work.body[BALANCED]
+    output.history[sample, 1] = stored
+    work.flags[AT, CLIPPED] = 0
+    if missed(start, sample, events):
+        return
     for i in range(queue.shape[0] - 1, 0, -1):
         for j in range(queue.shape[1]):
             queue[i, j] = queue[i - 1, j]
+    queue[0, queue.shape[1] - 1] = start + law.latency + lateness(start, sample, events)
     free = start >= events.release - TINY * law.sample_time
     acceleration = 0.0
     if free and reads_sensor(law.places):
@@ -77,39 +86,31 @@ def tick(X: Array, start: float, sample: int, units: Array, law: LawArrays, even
         rates_now(X, start, work)
         acceleration = numbers[RATE, 1]
     measure(X, acceleration, work.body, law.places, events.sensor, events.seed, sample, numbers[MEASURED])
-    stored = line_momentum(X, units)
-    output.history[sample, 0] = X[0] - work.body[BALANCED]
-    output.history[sample, 1] = stored
+    for j in range(law.resting.size):
+        numbers[MEASURED, j] -= law.resting[j]
     most = law.output_limit if free else 0.0
     v, limited = law_tick(numbers[MEMORY], numbers[MEASURED], law.A, law.B, law.E, law.C, law.D, most,
                           numbers[SPARE])
     short = share_out(limited, numbers[MEASURED], law.allotment, law.levelling, law.input_limits, law.line_share,
                       queue[0])
-    if not free:
-        for j in range(queue.shape[1]):
-            queue[0, j] = 0.0
+    for j in range(law.allotment.size):
+        queue[0, j] = digitised(queue[0, j], law.input_steps[j], np.inf) if free else 0.0
     numbers[LINE, 0] = limited
-    work.flags[AT, CLIPPED] = 0
     if free and (short or abs(v) > most * (1.0 + 1e-9)):
         work.flags[AT, CLIPPED] = 1
         note(start, stored, units.shape[0], outcome.OUTPUT, output.first)
 
 
 @njit(cache=True, error_model="numpy")
-def run_period(X: Array, start: float, stop: float, sample: int, sample_time: float, latency: float, units: Array,
+def run_period(X: Array, start: float, stop: float, sample: int, sample_time: float, units: Array,
                events: Events, work: Work, output: Output) -> int:
     """Integrate from one sample to the next, piece by piece between sudden changes; return how it ended."""
     tiny = TINY * sample_time
-    whole = work.queue.shape[0] - 2
-    part = latency - whole * sample_time
     saturated = output.metrics[outcome.SATURATED]
     t, end = start, outcome.RAN
     while t < stop - tiny and end == outcome.RAN:
-        late = t >= start + part - tiny
-        for i in range(units.shape[0]):
-            work.numbers[ASKED, i] = work.queue[whole if late else whole + 1, i]
+        until = min(stop, newest_due(t + tiny, work))
         change(X, t, tiny, events, work)
-        until = stop if late else min(stop, start + part)
         if work.flags[AT, NEXT_BREAK] < events.breaks.size:
             until = min(until, events.breaks[work.flags[AT, NEXT_BREAK]])
         if t == start and output.trace.shape[0] > 0:
@@ -125,6 +126,48 @@ def run_period(X: Array, start: float, stop: float, sample: int, sample_time: fl
 
 
 @njit(cache=True, error_model="numpy")
+def newest_due(t: float, work: Work) -> float:
+    """Put what the newest command that acts at t asks of each unit; return when the next one takes over, in s.
+
+    A command that comes due after a newer one has acted is never used.
+    """
+    queue, next_one = work.queue, np.inf
+    last = queue.shape[1] - 1
+    for i in range(queue.shape[0]):
+        if queue[i, last] <= t or i == queue.shape[0] - 1:
+            for j in range(last):
+                work.numbers[ASKED, j] = queue[i, j]
+            break
+        next_one = min(next_one, queue[i, last])
+    return next_one
+
+
+@njit(cache=True, error_model="numpy")
+def missed(start: float, sample: int, events: Events) -> bool:
+    """Return whether the sample is one that the controller does not take."""
+    for i in range(events.spells.shape[0]):
+        if events.spells[i, outcome.WHAT] == outcome.MISSED and in_spell(start, events.spells[i]):
+            return bool(scrambled(events.seed + 1, 2 * sample) < events.spells[i, outcome.VALUE])
+    return False
+
+
+@njit(cache=True, error_model="numpy")
+def lateness(start: float, sample: int, events: Events) -> float:
+    """Return by how much in s the command of this sample is later than the latency."""
+    most = 0.0
+    for i in range(events.spells.shape[0]):
+        if events.spells[i, outcome.WHAT] == outcome.LATE and in_spell(start, events.spells[i]):
+            most = max(most, events.spells[i, outcome.VALUE])
+    return float(most * scrambled(events.seed + 1, 2 * sample + 1)) if most > 0.0 else 0.0
+
+
+@njit(cache=True, error_model="numpy")
+def in_spell(t: float, spell: Array) -> bool:
+    """Return whether a spell is on, to a ten-thousandth of a millisecond."""
+    return bool(spell[outcome.START] <= t + 1e-7 < spell[outcome.END])
+
+
+@njit(cache=True, error_model="numpy")
 def change(X: Array, t: float, tiny: float, events: Events, work: Work) -> None:
     """Apply what changes suddenly at t: release, kicks and shifts due, and which torques act from now on."""
     at = work.flags[AT]
@@ -133,18 +176,37 @@ def change(X: Array, t: float, tiny: float, events: Events, work: Work) -> None:
     while at[NEXT_JUMP] < events.jumps.shape[0] and events.jumps[at[NEXT_JUMP], outcome.AT] <= t + tiny:
         kick(X, events.jumps[at[NEXT_JUMP], outcome.KICK], work)
         shift = events.jumps[at[NEXT_JUMP], outcome.SHIFT]
-        work.body[OFFSET] += shift
-        work.body[STIFF_COS] += work.body[MASS] * work.body[GRAVITY] * shift
+        for body in (work.body, work.base):
+            body[OFFSET] += shift
+            body[STIFF_COS] += body[MASS] * body[GRAVITY] * shift
         at[NEXT_JUMP] += 1
+    while at[NEXT_CHANGE] < events.changes.shape[0] and events.changes[at[NEXT_CHANGE], outcome.AT] <= t + tiny:
+        change_body(X, events.changes[at[NEXT_CHANGE]], work)
+        at[NEXT_CHANGE] += 1
     while at[NEXT_BREAK] < events.breaks.size and events.breaks[at[NEXT_BREAK]] <= t + tiny:
         at[NEXT_BREAK] += 1
     on = 0
+    at[VARYING] = 0
     for i in range(events.torques.shape[0]):
         if events.torques[i, outcome.START] <= t + tiny and events.torques[i, outcome.END] > t + tiny:
             for j in range(outcome.TORQUE_SIZE):
                 work.active[on, j] = events.torques[i, j]
+                if j >= outcome.OF_INERTIA and events.torques[i, j] != 0.0:
+                    at[VARYING] = 1
             on += 1
     at[TORQUES_ON] = on
+
+
+@njit(cache=True, error_model="numpy")
+def change_body(X: Array, row: Array, work: Work) -> None:
+    """Add what changes of the body; what comes at rest takes its share of the momentum about the line.
+
+    (J + ΔJ) θ̇⁺ = J θ̇⁻ is the kick −ΔJ θ̇⁻ on the machine as it is from now on.
+    """
+    for j in range(work.body.size):
+        work.body[j] += row[outcome.CHANGED + j]
+        work.base[j] += row[outcome.CHANGED + j]
+    kick(X, -row[outcome.AT_REST] * X[1], work)
 
 
 @njit(cache=True, error_model="numpy")

@@ -25,11 +25,12 @@ from balance.kernel.bundles import (
     SPARE_METRICS,
     TORQUES_ON,
     TOTAL,
+    VARYING,
     Output,
     Work,
 )
 from balance.kernel.gauge import line_momentum, note
-from balance.kernel.integrate import beyond_stop, disturbance_at, jump, march, rates
+from balance.kernel.integrate import beyond_stop, disturbance_at, jump, march, rates, vary
 from balance.kernel.layout import ANGLE_STOP, DRIVE_TORQUE, GIMBAL_SERVO, GIMBAL_TORQUE, KIND, RATE_LAG
 
 Array = NDArray[np.float64]
@@ -60,9 +61,9 @@ def go(X: Array, t: float, h: float, steps: int, units: Array, work: Work, metri
        first: Array) -> tuple[int, int]:
     """Take the bundle apart and march: the one place where it is done."""
     numbers, flags = work.numbers, work.flags
-    made, end = march(X, t, h, steps, numbers[COMMANDS], work.active, flags[AT, TORQUES_ON], work.body, units,
-                      work.live, flags[HELD], flags[MET], numbers[INPUTS], numbers[SLOPES], numbers[RATE],
-                      numbers[TOTAL], numbers[PROBE], metrics, first)
+    made, end = march(X, t, h, steps, numbers[COMMANDS], work.active, flags[AT, TORQUES_ON], flags[AT, VARYING],
+                      work.base, work.body, units, work.live, flags[HELD], flags[MET], numbers[INPUTS], numbers[SLOPES],
+                      numbers[RATE], numbers[TOTAL], numbers[PROBE], metrics, first)
     return int(made), int(end)
 
 
@@ -125,6 +126,8 @@ def rates_now(X: Array, t: float, work: Work) -> float:
     """Put the rates at t into their row; return the disturbance in N·m."""
     numbers = work.numbers
     torque = disturbance_at(t, work.active, work.flags[AT, TORQUES_ON])
+    if work.flags[AT, VARYING] == 1:
+        vary(t, work.active, work.flags[AT, TORQUES_ON], work.base, work.body)
     rates(X, torque, numbers[COMMANDS], work.body, work.live, work.flags[MET], numbers[INPUTS], numbers[SLOPES],
           numbers[RATE])
     return float(torque)

@@ -43,6 +43,8 @@ class Imu:
     tilt_bias: float = quantity("angle", default=0.0)
     gyro_range: float = quantity("angular speed", above=0, default=float("inf"))
     accel_range: float = quantity("acceleration", above=0, default=float("inf"))
+    gyro_resolution: float = quantity("angular speed", least=0, default=0.0, says="one count")
+    accel_resolution: float = quantity("acceleration", least=0, default=0.0, says="one count")
 
 
 @dataclass(frozen=True)

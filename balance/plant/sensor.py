@@ -15,7 +15,7 @@ Array = NDArray[np.float64]
 
 
 def sensor_parameters(machine: Machine, stance: Stance) -> Array:
-    """Return the sensor's flat array, (SENSOR_SIZE,): lever arm, bias, noise and range; ideal without an `imu`.
+    """Return the sensor's flat array, (SENSOR_SIZE,): lever arm, bias, noise, resolution and range; ideal without an `imu`.
 
     One sample's deviation is that of a sensor read at its own rate: one-sided density × √(rate/2).
     """
@@ -29,5 +29,6 @@ def sensor_parameters(machine: Machine, stance: Stance) -> Array:
     sensor[sensing.GYRO_BIAS], sensor[sensing.TILT_BIAS] = imu.gyro_bias, imu.tilt_bias
     sensor[sensing.GYRO_NOISE] = imu.gyro_noise * sqrt(imu.rate / 2.0)
     sensor[sensing.ACCEL_NOISE] = imu.accel_noise * sqrt(imu.rate / 2.0)
+    sensor[sensing.GYRO_STEP], sensor[sensing.ACCEL_STEP] = imu.gyro_resolution, imu.accel_resolution
     sensor[sensing.GYRO_RANGE], sensor[sensing.ACCEL_RANGE] = imu.gyro_range, imu.accel_range
     return sensor

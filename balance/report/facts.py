@@ -5,7 +5,6 @@ from __future__ import annotations
 import math
 from collections.abc import Callable
 
-from balance.goal.trials import Trial
 from balance.plant.record import Plant, Unit
 from balance.report.amounts import amount, figure, fixed, share, speed
 from balance.report.tables import Row, Table
@@ -90,25 +89,3 @@ def trial_cells(t: TrialResult) -> tuple[str, ...]:
             amount(t.torque_saturated, "s") if t.torque_saturated else "–", share(t.momentum_used),
             amount(t.rms_torque, "N*m"), ", ".join(draw),
             figure(t.friction_needed, 2) + (", feet lift" if t.lift_off else ""), t.reason or "–")
-
-
-def told(trial: Trial | None) -> str:
-    """Say what a trial does to the machine."""
-    if trial is None:
-        return ""
-    said = []
-    if trial.push:
-        said.append(f"a push of {amount(trial.push.impulse, 'N*s')} at {amount(trial.push.height, 'm')}")
-    if trial.torque:
-        lasts = f" for {amount(trial.torque.lasts, 's')}" if trial.torque.lasts is not None else ""
-        said.append(f"a torque of {amount(trial.torque.step, 'N*m')}{lasts}")
-    for begin, words in ((trial.start, "starts"), (trial.lift_off, "the third foot lets go")):
-        if begin:
-            stored = f" and {amount(begin.stored, 'N*m*s')} stored" if begin.stored else ""
-            said.append(f"{words} at {amount(begin.lean, 'rad')}, {amount(begin.lean_rate, 'rad/s')}{stored}")
-    if trial.offset:
-        said.append(f"the centre of mass shifts {amount(trial.offset.shift, 'm')} and stays")
-    if trial.swing:
-        peak = f", ±{amount(trial.swing.peak, 'N*m')} out and back" if trial.swing.peak is not None else ""
-        said.append(f"a leg swings{peak}")
-    return "; ".join(said)

@@ -66,10 +66,19 @@ def events_of(trial: Trial | None) -> tuple[Event, ...]:
     if trial.torque:
         lasts = trial.lasts if trial.torque.lasts is None else trial.torque.lasts
         found.append(Event(trial.torque.start, min(trial.torque.start + lasts, trial.lasts), "torque"))
+    if trial.ramp:
+        found.append(Event(trial.ramp.start, trial.ramp.start + trial.ramp.lasts, "torque grows"))
+    if trial.gusts:
+        points = trial.gusts.points
+        found.append(Event(trial.gusts.start + points[0][0], trial.gusts.start + points[-1][0], "gusts"))
     if trial.start:
         found.append(Event(0.0, 0.0, "start"))
     if trial.offset:
         found.append(Event(trial.offset.at, trial.offset.at, "load shifts"))
+    for part, word in ((trial.payload, "load"), (trial.slope, "ground tilts")):
+        if part is not None:
+            found.append(Event(part.at, part.at, word))
+    found += trouble_events(trial)
     if trial.lift_off:
         found.append(Event(trial.lift_off.at, trial.lift_off.at, "lift-off"))
     if trial.swing:
@@ -77,11 +86,22 @@ def events_of(trial: Trial | None) -> tuple[Event, ...]:
     return tuple(sorted(found, key=lambda event: event.since))
 
 
+def trouble_events(trial: Trial) -> list[Event]:
+    """What makes the trial harder: a weak supply, samples not taken."""
+    found = []
+    for part, word in ((trial.supply, "weak supply"), (trial.missed, "samples missed")):
+        if part is not None:
+            end = trial.lasts if part.lasts is None else min(part.start + part.lasts, trial.lasts)
+            found.append(Event(part.start, part.start if word != "weak supply" and part.lasts is None else end, word))
+    return found
+
+
 def swing_event(trial: Trial) -> Event:
     """The time the leg swings, from the table of points or the sine."""
     assert trial.swing is not None
     if trial.swing.points:
-        return Event(trial.swing.points[0][0], trial.swing.points[-1][0], "leg swings")
+        points = trial.swing.points
+        return Event(trial.swing.start + points[0][0], trial.swing.start + points[-1][0], "leg swings")
     return Event(trial.swing.start, trial.swing.start + (trial.swing.lasts or 0.0), "leg swings")
 
 

@@ -10,7 +10,7 @@ from balance.design.records import Design
 from balance.report import page as html
 from balance.report.assumed import assumed, unchecked
 from balance.report.cautions import cautions
-from balance.report.facts import machine_table, told, trial_table, unit_table
+from balance.report.facts import machine_table, trial_table, unit_table
 from balance.report.figures.bode import draw_bode
 from balance.report.figures.machine import draw_view
 from balance.report.figures.nyquist import draw_nyquist
@@ -22,6 +22,7 @@ from balance.report.loops import LoopPicture, picture_loop
 from balance.report.margins import margin_table
 from balance.report.outline import outline
 from balance.report.seal import free_place
+from balance.report.told import told
 from balance.report.verdicts import headline, tally, verdict_tables
 
 PAGE = "report.html"

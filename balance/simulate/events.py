@@ -1,20 +1,25 @@
-"""From the words of a trial to what the kernel's clock reads: torques over time, sudden changes, a start."""
+"""From the words of a trial to what the kernel's clock reads: torques over time, sudden changes, troubles, a start."""
 
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, field
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
 
-from balance.goal.trials import LiftOff, OffsetShift, Push, Start, Swing, TorqueStep, Trial
+from balance.goal.goal import Loop
+from balance.goal.trials import Trial
+from balance.goal.troubles import Missed
 from balance.kernel import outcome
 from balance.kernel.bundles import Events
+from balance.simulate.changes import Change, body_rows, with_tables
 
 Array = NDArray[np.float64]
 
 SIDES = {"outward": 1.0, "inward": -1.0}
+FOR_EVER = math.inf
 
 
 @dataclass(frozen=True)
@@ -28,80 +33,164 @@ class Happening:
     stored: float        # N·m·s about the line, at the start
     quiet_from: float    # s: nothing is scheduled to change after this
     end_torque: float    # N·m: what stays on
-    end_shift: float     # m: of the centre of mass
+    end_body: Array      # (BODY_SIZE,) the body at the end
+
+
+@dataclass
+class Score:
+    """What has been gathered of a trial so far."""
+
+    torques: list[list[float]] = field(default_factory=list)
+    jumps: list[list[float]] = field(default_factory=list)
+    changes: list[Change] = field(default_factory=list)
+    spells: list[list[float]] = field(default_factory=list)
+    start: tuple[float, float, float] = (0.0, 0.0, 0.0)
+    release: tuple[float, float] = (0.0, 0.0)
+    quiet: float = 0.0
+
+    def until(self, time: float) -> None:
+        """Nothing is quiet before `time`."""
+        self.quiet = max(self.quiet, time)
+
+    def load(self, begin: float, end: float, level: float, slope: float = 0.0) -> None:
+        """A torque about the line; it is quiet after it has ended, or has begun for ever."""
+        self.torques.append(_row(begin, end, outcome.LEVEL, level, slope))
+        self.until(begin if math.isinf(end) else end)
 
 
 def directions(trial: Trial) -> tuple[str, ...]:
     """Return the directions a trial runs in: both where one of its parts says so, else its first part's."""
-    said = [part.toward for part in _parts(trial)]
+    parts = [part for part in vars(trial).values() if hasattr(part, "toward")]
+    said = [part.toward for part in parts]
     if not said or "both" in said:
         return ("outward", "inward")
     return (said[0],)
 
 
-def happening(trial: Trial, toward: str, longest: float, sensor: Array, seed: int) -> Happening:
+def happening(trial: Trial, toward: str, body: Array, loop: Loop, longest: float, sensor: Array,
+              seed: int) -> Happening:
     """Return what happens in `trial` run toward `toward`; parts that name their own direction keep it.
 
     A push is a horizontal force at its height on the leaning machine; its lever is taken as that height.
-    `sensor`, `seed`: as `kernel.sensing` reads them.
+    `body`: the kernel's row of the stance; `longest`: s, sub-step; `sensor`, `seed`: as `kernel.sensing` reads them.
     """
-    torques: list[list[float]] = []
-    jumps: list[list[float]] = []
-    start, release, quiet = (0.0, 0.0, 0.0), (0.0, 0.0), 0.0
-    shift = 0.0
+    score = Score()
+    add_torques(trial, toward, score)
+    add_swing(trial, toward, score)
+    add_tables(trial, toward, score)
+    add_starts(trial, toward, score)
+    add_changes(trial, toward, score)
+    add_troubles(trial, loop, score)
+    changes, end_body = body_rows(body, score.changes)
+    lasting = [row for row in score.torques if math.isinf(row[outcome.END])]
+    events = _events(score, changes, trial.lasts, longest)._replace(sensor=sensor, seed=seed)
+    return Happening(toward, events, *score.start, score.quiet, sum(row[outcome.LEVEL] for row in lasting),
+                     with_tables(end_body, lasting))
+
+
+def add_torques(trial: Trial, toward: str, score: Score) -> None:
+    """Pushes, steps, ramps and gusts."""
     if trial.push:
         moment = _side(trial.push.toward, toward) * trial.push.impulse * trial.push.height
-        until = trial.push.start + trial.push.lasts
         if trial.push.lasts > 0.0:
-            torques.append([trial.push.start, until, moment / trial.push.lasts, 0.0, 0.0, 0.0])
+            score.load(trial.push.start, trial.push.start + trial.push.lasts, moment / trial.push.lasts)
         else:
-            jumps.append([trial.push.start, moment, 0.0])
-        quiet = max(quiet, until)
+            score.jumps.append([trial.push.start, moment, 0.0])
+            score.until(trial.push.start)
     if trial.torque:
-        until = math.inf if trial.torque.lasts is None else trial.torque.start + trial.torque.lasts
-        step = _side(trial.torque.toward, toward) * trial.torque.step
-        torques.append([trial.torque.start, until, step, 0.0, 0.0, 0.0])
-        quiet = max(quiet, trial.torque.start if math.isinf(until) else until)
-    if trial.start:
-        side = _side(trial.start.toward, toward)
-        start = (side * trial.start.lean, side * trial.start.lean_rate, side * trial.start.stored)
-    if trial.offset:
-        shift = _side(trial.offset.toward, toward) * trial.offset.shift
-        jumps.append([trial.offset.at, 0.0, shift])
-        quiet = max(quiet, trial.offset.at)
-    if trial.lift_off:
-        side = _side(trial.lift_off.toward, toward)
-        start = (start[0] + side * trial.lift_off.lean, start[1] + side * trial.lift_off.lean_rate,
-                 start[2] + side * trial.lift_off.stored)
-        release = (trial.lift_off.at, start[1])
-        quiet = max(quiet, trial.lift_off.at)
-    if trial.swing:
-        torques += swing_rows(trial.swing, _side(trial.swing.toward, toward))
-        quiet = max([quiet] + [row[outcome.END] for row in torques if math.isfinite(row[outcome.END])])
-    events = _events(torques, sorted(jumps), release, trial.lasts, longest)._replace(sensor=sensor, seed=seed)
-    lasting = sum(row[outcome.LEVEL] for row in torques if math.isinf(row[outcome.END]))
-    return Happening(toward, events, *start, quiet, lasting, shift)
+        end = FOR_EVER if trial.torque.lasts is None else trial.torque.start + trial.torque.lasts
+        score.load(trial.torque.start, end, _side(trial.torque.toward, toward) * trial.torque.step)
+    if trial.ramp:
+        full, end = _side(trial.ramp.toward, toward) * trial.ramp.to, trial.ramp.start + trial.ramp.lasts
+        score.load(trial.ramp.start, end, 0.0, full / trial.ramp.lasts)
+        score.load(end, FOR_EVER, full)
+    if trial.gusts:
+        add_points(trial.gusts.points, trial.gusts.start, _side(trial.gusts.toward, toward), score)
 
 
-def swing_rows(swing: Swing, side: float) -> list[list[float]]:
-    """Return the torque rows of a swinging leg: one full sine, or a table's pieces.
+def add_points(points: tuple[tuple[float, float], ...], start: float, side: float, score: Score) -> None:
+    """A torque given by points: straight between them, nothing before the first and after the last."""
+    for (a, p), (b, q) in pairwise(points):
+        score.load(start + a, start + b, side * p, side * (q - p) / (b - a))
 
-    A table's times count from `from`; before the table's first and after its last point there is no torque.
-    """
+
+def add_swing(trial: Trial, toward: str, score: Score) -> None:
+    """The torque of a swinging leg: one full sine, or a table's points."""
+    swing = trial.swing
+    if swing is None:
+        return
+    side = _side(swing.toward, toward)
     if swing.points:
-        pairs = zip(swing.points, swing.points[1:], strict=False)
-        return [[swing.start + a, swing.start + b, side * p, side * (q - p) / (b - a), 0.0, 0.0]
-                for (a, p), (b, q) in pairs if b > a]
-    lasts, peak = swing.lasts or 0.0, swing.peak or 0.0
-    if lasts == 0.0:
-        return []
-    return [[swing.start, swing.start + lasts, 0.0, 0.0, side * peak, 2.0 * math.pi / lasts]]
+        add_points(swing.points, swing.start, side, score)
+    elif swing.lasts and swing.peak:
+        turn = 2.0 * math.pi / swing.lasts
+        end = swing.start + swing.lasts
+        score.torques.append(_row(swing.start, end, outcome.SWING, side * swing.peak, turn))
+        score.until(swing.start + swing.lasts)
 
 
-def _parts(trial: Trial) -> list[Push | TorqueStep | Start | OffsetShift | LiftOff | Swing]:
-    """Return the parts of a trial that are given, in the order of the record."""
-    parts = (trial.push, trial.torque, trial.start, trial.offset, trial.lift_off, trial.swing)
-    return [part for part in parts if part is not None]
+def add_tables(trial: Trial, toward: str, score: Score) -> None:
+    """What varies over time by tables: changes of J, G_s, G_c and a torque; the last value of each stays."""
+    varies = trial.varies
+    if varies is None:
+        return
+    side = _side(varies.toward, toward)
+    for points, column, sign in ((varies.inertia, outcome.OF_INERTIA, 1.0),
+                                 (varies.height_moment, outcome.OF_STIFF_SIN, 1.0),
+                                 (varies.offset_moment, outcome.OF_STIFF_COS, side),
+                                 (varies.torque, outcome.LEVEL, side)):
+        last = None
+        for (a, p), (b, q) in pairwise(points or ()):
+            score.torques.append(_row(varies.start + a, varies.start + b, column, sign * p, sign * (q - p) / (b - a)))
+            last = _row(varies.start + b, FOR_EVER, column, sign * q, 0.0)
+        if last is not None:
+            score.torques.append(last)
+            score.until(last[outcome.START])
+
+
+def add_starts(trial: Trial, toward: str, score: Score) -> None:
+    """How the trial begins: leaning and moving, or held until the third foot lets go."""
+    for part in (trial.start, trial.lift_off):
+        if part is not None:
+            side = _side(part.toward, toward)
+            lean, rate, stored = score.start
+            score.start = (lean + side * part.lean, rate + side * part.lean_rate, stored + side * part.stored)
+    if trial.lift_off:
+        score.release = (trial.lift_off.at, score.start[1])
+        score.until(trial.lift_off.at)
+
+
+def add_changes(trial: Trial, toward: str, score: Score) -> None:
+    """What changes of the body at one instant."""
+    if trial.offset:
+        score.jumps.append([trial.offset.at, 0.0, _side(trial.offset.toward, toward) * trial.offset.shift])
+    for part in (trial.offset, trial.payload, trial.slope):
+        if part is not None:
+            score.changes.append(Change(part, _side(part.toward, toward)))
+            score.until(part.at)
+
+
+def add_troubles(trial: Trial, loop: Loop, score: Score) -> None:
+    """A weak supply, samples not taken, commands that come late; a trial's own jitter goes before the loop's."""
+    if trial.supply:
+        end = FOR_EVER if trial.supply.lasts is None else trial.supply.start + trial.supply.lasts
+        score.spells.append([trial.supply.start, end, outcome.SUPPLY_LEFT, trial.supply.falls_to])
+        score.until(trial.supply.start if math.isinf(end) else end)
+    if trial.missed:
+        score.spells.append([*_missed_between(trial.missed, 1.0 / loop.rate), outcome.MISSED, trial.missed.share or 1.0])
+    if trial.jitter:
+        end = FOR_EVER if trial.jitter.lasts is None else trial.jitter.start + trial.jitter.lasts
+        score.spells.append([trial.jitter.start, end, outcome.LATE, trial.jitter.up_to])
+    elif loop.jitter > 0.0:
+        score.spells.append([0.0, FOR_EVER, outcome.LATE, loop.jitter])
+
+
+def _missed_between(missed: Missed, sample_time: float) -> tuple[float, float]:
+    """Return the spell in which samples are missed; a number of samples ends half a sample after the last."""
+    if missed.samples is not None:
+        first = math.ceil(missed.start / sample_time - 1e-9) * sample_time
+        return first, first + (missed.samples - 0.5) * sample_time
+    return missed.start, FOR_EVER if missed.lasts is None else missed.start + missed.lasts
 
 
 def _side(said: str, toward: str) -> float:
@@ -109,12 +198,21 @@ def _side(said: str, toward: str) -> float:
     return SIDES[toward if said == "both" else said]
 
 
-def _events(torques: list[list[float]], jumps: list[list[float]], release: tuple[float, float], lasts: float,
-            longest: float) -> Events:
+def _row(begin: float, end: float, column: int, level: float, slope: float) -> list[float]:
+    """Return a row of the kernel's torques with a level and a slope from `column` on."""
+    row = [0.0] * outcome.TORQUE_SIZE
+    row[outcome.START], row[outcome.END], row[column], row[column + 1] = begin, end, level, slope
+    return row
+
+
+def _events(score: Score, changes: Array, lasts: float, longest: float) -> Events:
     """Return the kernel's arrays; every instant of sudden change stands in `breaks` once."""
-    instants = {row[outcome.START] for row in torques} | {row[outcome.END] for row in torques}
-    instants |= {row[outcome.AT] for row in jumps} | {release[0]}
+    instants = {score.release[0]} | {row[outcome.AT] for row in (*score.jumps, *changes)}
+    spells = [row for row in score.spells if row[outcome.WHAT] == outcome.SUPPLY_LEFT]
+    for row in (*score.torques, *spells):
+        instants |= {row[outcome.START], row[outcome.END]}
     breaks = sorted(t for t in instants if 0.0 < t < lasts)
-    return Events(np.array(torques, dtype=float).reshape(-1, outcome.TORQUE_SIZE),
-                  np.array(jumps, dtype=float).reshape(-1, outcome.JUMP_SIZE), np.array(breaks, dtype=float),
-                  release[0], release[1], lasts, longest, np.zeros(0), 0)
+    return Events(np.array(score.torques, dtype=float).reshape(-1, outcome.TORQUE_SIZE),
+                  np.array(sorted(score.jumps), dtype=float).reshape(-1, outcome.JUMP_SIZE),
+                  np.array(breaks, dtype=float), *score.release, lasts, longest, np.zeros(0), 0, changes,
+                  np.array(score.spells, dtype=float).reshape(-1, outcome.SPELL_SIZE))

@@ -45,6 +45,7 @@ class TrialResult:
     peak_bus_power: float       # W
     friction_needed: float      # largest |tangential| / normal, whole machine across the line
     lift_off: bool              # the sum of normal forces reached zero
+    standing_swing: float       # rad, amplitude of the lean about its trend in the last second; inf when it fell
     end_lean: float             # rad
     end_momentum: float         # N·m·s
     trace: Trace | None

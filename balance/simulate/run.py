@@ -7,6 +7,7 @@ from zlib import crc32
 
 import numpy as np
 
+from balance.base.errors import InputError, Problem
 from balance.design.complementary import ESTIMATE
 from balance.design.records import Design
 from balance.goal.goal import Goal
@@ -14,7 +15,7 @@ from balance.goal.trials import Trial
 from balance.kernel import outcome
 from balance.kernel.bundles import MEMORY, Output, fresh_work
 from balance.kernel.integrate import longest_step
-from balance.kernel.layout import FELL, GRAVITY, MASS, STIFF_COS
+from balance.kernel.layout import FELL
 from balance.kernel.run import run_trial
 from balance.kernel.standing import standing_lean
 from balance.machine.machine import Machine
@@ -22,7 +23,7 @@ from balance.plant.record import Plant
 from balance.simulate.events import Happening, directions, happening
 from balance.simulate.records import Trace, TrialResult
 from balance.simulate.setup import empty_output, law_arrays, start_state
-from balance.simulate.story import limit_story, settling_time, time_to_full
+from balance.simulate.story import limit_story, settling_time, standing_swing, time_to_full
 
 FELL_WORDS = {
     outcome.FELL_OUTWARD: "fell outward", outcome.FELL_INWARD: "fell inward", outcome.TOUCHED_DOWN: "touched down",
@@ -36,20 +37,38 @@ def run_trials(design: Design, goal: Goal, machine: Machine, record: bool) -> tu
     """
     if design.refused:
         return ()
+    refuse_loads(goal, design.plant)
     return tuple(run_one(design, goal, name, trial, toward, record)
                  for name, trial in goal.trials.items() for toward in directions(trial))
+
+
+def refuse_loads(goal: Goal, plant: Plant) -> None:
+    """Raise InputError where a trial takes off more than there is: mass, or inertia about the line."""
+    problems = []
+    for name, trial in goal.trials.items():
+        load = trial.payload
+        if load is None or load.mass >= 0.0:
+            continue
+        most = min(plant.stance.mass, plant.inertia_free / (load.height**2 + load.across**2))
+        if -load.mass >= most:
+            key = f"trials.{name}.payload.mass"
+            line, column = goal.marks.get(key, (0, 0))
+            problems.append(Problem(goal.source, line, column, key, f"{load.mass:g} kg",
+                                    f"less than {most:.3g} kg taken off at this height on {plant.stance.name}"))
+    if problems:
+        raise InputError(problems)
 
 
 def run_one(design: Design, goal: Goal, name: str, trial: Trial, toward: str, record: bool) -> TrialResult:
     """Run one trial in one direction. Sensor noise is drawn from the trial's name and direction: every run is alike."""
     plant = design.plant
-    event = happening(trial, toward, longest_step(plant.unit_parameters), plant.sensor_parameters,
-                      crc32(f"{name} {toward}".encode()))
+    event = happening(trial, toward, plant.body_parameters, goal.loop, longest_step(plant.unit_parameters),
+                      plant.sensor_parameters, crc32(f"{name} {toward}".encode()))
     samples = math.ceil(trial.lasts / design.law.sample_time - 1e-9)
     output = empty_output(plant, samples, record)
     body = plant.body_parameters.copy()
     body[FELL] = goal.fell
-    law = law_arrays(design.law, plant)
+    law = law_arrays(design.law, plant, goal.loop.command_bits)
     work = fresh_work(body, plant.unit_parameters, law, event.events)
     if ESTIMATE in design.law.memory:                        # the estimator has run before the trial begins
         work.numbers[MEMORY, design.law.memory.index(ESTIMATE)] = event.lean
@@ -86,15 +105,14 @@ def _result(design: Design, name: str, event: Happening, ended: int, output: Out
         rms_torque=math.sqrt(metrics[outcome.TORQUE_SQUARED] / metrics[outcome.END_TIME]),
         peak_current=float(metrics[outcome.PEAK_CURRENT]), peak_bus_power=float(metrics[outcome.PEAK_POWER]),
         friction_needed=float(metrics[outcome.FRICTION]), lift_off=bool(metrics[outcome.LIFTED] > 0.0),
+        standing_swing=standing_swing(time, lean) if ended == outcome.RAN else math.inf,
         end_lean=float(metrics[outcome.END_LEAN]), end_momentum=float(metrics[outcome.END_MOMENTUM]),
         trace=_trace(output, taken))
 
 
 def end_lean(plant: Plant, event: Happening) -> float:
     """Return the lean in rad at which gravity balances what stays on; NaN where nothing does."""
-    body = plant.body_parameters.copy()
-    body[STIFF_COS] += body[MASS] * body[GRAVITY] * event.end_shift
-    return float(standing_lean(body, plant.unit_parameters, event.end_torque))
+    return float(standing_lean(event.end_body, plant.unit_parameters, event.end_torque))
 
 
 def _trace(output: Output, taken: int) -> Trace | None:

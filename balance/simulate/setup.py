@@ -29,11 +29,20 @@ from balance.simulate.events import Happening
 Array = NDArray[np.float64]
 
 
-def law_arrays(law: Law, plant: Plant) -> LawArrays:
-    """Return the law as the kernel's tick reads it."""
+def law_arrays(law: Law, plant: Plant, command_bits: int | None = None) -> LawArrays:
+    """Return the law as the kernel's tick reads it; `command_bits`: what each unit's input is rounded to."""
     return LawArrays(_flat(law.A), _flat(law.B), _flat(law.E), _flat(law.C), _flat(law.D), float(law.output_limit),
                      _flat(law.allotment), _flat(law.levelling), _flat(law.input_limits), line_share(plant),
-                     places(law, plant), float(law.sample_time), float(law.latency))
+                     input_steps(law, command_bits), np.zeros(len(law.measurements)), places(law, plant),
+                     float(law.sample_time), float(law.latency))
+
+
+def input_steps(law: Law, bits: int | None) -> Array:
+    """Return what each input is rounded to, (units,): 2^bits levels over ± its limit; 0: not rounded."""
+    if bits is None:
+        return np.zeros(len(law.input_limits))
+    finite = np.where(np.isfinite(law.input_limits), law.input_limits, 0.0)
+    return np.asarray(2.0 * finite / 2.0**bits, dtype=np.float64)
 
 
 def places(law: Law, plant: Plant) -> NDArray[np.int64]:

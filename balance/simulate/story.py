@@ -17,6 +17,9 @@ SETTLED_LEAST = math.radians(0.1)
 STAYS = 0.25
 """s: a lean that came into the band less than this before the end has not shown that it stays there."""
 
+LOOKED_AT = 1.0
+"""s at a trial's end in which a standing swing is looked for."""
+
 WORDS = {
     outcome.TORQUE: "torque limit", outcome.CURRENT: "current limit", outcome.VOLTAGE: "voltage limit",
     outcome.SPEED: "wheel speed limit", outcome.RATE: "gimbal rate limit",
@@ -43,6 +46,19 @@ def settling_time(time: Array, lean: Array, target: float, quiet_from: float) ->
     if last + 1 >= time.size or time[-1] - time[last + 1] < STAYS:
         return math.inf
     return float(max(time[last + 1] - quiet_from, 0.0))
+
+
+def standing_swing(time: Array, lean: Array) -> float:
+    """Return the amplitude in rad of what the lean still does in the last second about its trend: √2 of its RMS.
+
+    Play, stiction, dead bands and coarse sensors leave a limit cycle; so does noise. A slow return is trend, not swing.
+    """
+    last = time >= time[-1] - LOOKED_AT - 1e-12
+    if np.count_nonzero(last) < 3:
+        return 0.0
+    t, x = time[last] - time[-1], lean[last]
+    rest = x - np.polyval(np.polyfit(t, x, 2), t)
+    return float(np.sqrt(2.0 * np.mean(rest**2)))
 
 
 def time_to_full(time: Array, momentum: Array, capacity: float) -> float:

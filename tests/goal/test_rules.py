@@ -43,7 +43,25 @@ def test_shipped_designs_are_read(path):
     ("gain_margin_lower: 0.6", "gain_margin_lower: 1.6", "require.gain_margin_lower", "less than 1"),
     ("loop: {rate", "estimator: {kind: complementary, crossover: 400 Hz}\nloop: {rate",
      "estimator.crossover", "half the loop"),
-    ("height: 300 mm}", "height: 300 mm, toward: up}", "trials.shove.push.toward", "outward")])
+    ("height: 300 mm}", "height: 300 mm, toward: up}", "trials.shove.push.toward", "outward"),
+    ("{push: {impulse: 0.25 N*s, height: 300 mm}}", "{supply: {falls_to: 0.5}}", "trials.shove", "moves nothing"),
+    ("height: 300 mm}", "height: 300 mm}, missed: {samples: 2, share: 0.1}", "trials.shove.missed.share", "exactly one"),
+    ("height: 300 mm}", "height: 300 mm}, missed: {}", "trials.shove.missed", "neither"),
+    ("height: 300 mm}", "height: 300 mm}, missed: {samples: 2, for: 1 s}", "trials.shove.missed.for", "only with `share`"),
+    ("height: 300 mm}", "height: 300 mm}, supply: {falls_to: 1.5}", "trials.shove.supply.falls_to", "less than 1"),
+    ("height: 300 mm}", "height: 300 mm}, jitter: {up_to: 80 ms}", "trials.shove.jitter.up_to", "40 samples"),
+    ("latency: 2 ms", "latency: 2 ms, jitter: 80 ms", "loop.jitter", "at most 20 samples"),
+    ("latency: 2 ms", "latency: 2 ms, command_bits: 40", "loop.command_bits", "at most 32"),
+    ("{push: {impulse: 0.25 N*s, height: 300 mm}}", "{ramp: {to: 1 N*m}}", "trials.shove.ramp.for", "missing"),
+    ("{push: {impulse: 0.25 N*s, height: 300 mm}}", "{payload: {mass: 0 kg, height: 300 mm}}",
+     "trials.shove.payload.mass", "taken off"),
+    ("{push: {impulse: 0.25 N*s, height: 300 mm}}", "{slope: {at: 0.1 s}}", "trials.shove.slope", "neither"),
+    ("{push: {impulse: 0.25 N*s, height: 300 mm}}", "{slope: {across: 60 deg}}", "trials.shove.slope.across", "45 deg"),
+    ("{push: {impulse: 0.25 N*s, height: 300 mm}}", "{varies: {from: 0 s}}", "trials.shove.varies", "nothing that varies"),
+    ("{push: {impulse: 0.25 N*s, height: 300 mm}}",
+     "{varies: {inertia: [[0 s, 0.1 kg*m^2], [1 s, 0.2 kg*m^2]]}}", "trials.shove.varies.inertia", "first value of 0"),
+    ("{push: {impulse: 0.25 N*s, height: 300 mm}}",
+     "{varies: {torque: [[1 s, 0.1 N*m], [1 s, 0.2 N*m]]}}", "trials.shove.varies.torque", "later than the last")])
 def test_each_rule(tmp_path, old, new, key, says):
     found = problems(tmp_path, (old, new))
     assert any(p.key.startswith(key) and says in str(p) and p.line > 0 for p in found), [str(p) for p in found]

@@ -49,8 +49,8 @@ def law(gains=(0.0, 0.0, 0.0), sample_time=0.002, latency=0.0, limit=np.inf, pla
     m = len(places)
     stays = 1.0 if hold else 0.0
     return LawArrays(np.full((1, 1), stays), np.zeros((1, m)), np.zeros(1), np.full(1, stays), -np.array(gains, float),
-                     limit, np.ones(1), np.zeros((1, m)), np.array([np.inf]), np.zeros(1), np.array(places), sample_time,
-                     latency)
+                     limit, np.ones(1), np.zeros((1, m)), np.array([np.inf]), np.zeros(1), np.zeros(1), np.zeros(m),
+                     np.array(places), sample_time, latency)
 
 
 def ideal_sensor():
@@ -60,13 +60,17 @@ def ideal_sensor():
     return out
 
 
-def events(lasts, torques=(), jumps=(), release=(0.0, 0.0), longest=1e-4, sensor=None, seed=1):
-    """Return what happens; breaks are gathered here."""
-    times = {r[0] for r in torques} | {r[1] for r in torques} | {r[0] for r in jumps} | {release[0]}
+def events(lasts, torques=(), jumps=(), release=(0.0, 0.0), longest=1e-4, sensor=None, seed=1, changes=(), spells=()):
+    """Return what happens; breaks are gathered here. A row of torques may end early: zeros follow."""
+    spans = [r for r in (*torques, *spells)]
+    times = {r[0] for r in spans} | {r[1] for r in spans} | {r[0] for r in (*jumps, *changes)} | {release[0]}
     breaks = sorted(t for t in times if 0 < t < lasts)
-    return Events(np.array(torques, float).reshape(-1, outcome.TORQUE_SIZE),
+    rows = [[*r, *[0.0] * (outcome.TORQUE_SIZE - len(r))] for r in torques]
+    return Events(np.array(rows, float).reshape(-1, outcome.TORQUE_SIZE),
                   np.array(jumps, float).reshape(-1, outcome.JUMP_SIZE), np.array(breaks, float), *release, lasts, longest,
-                  ideal_sensor() if sensor is None else sensor, seed)
+                  ideal_sensor() if sensor is None else sensor, seed,
+                  np.array(changes, float).reshape(-1, outcome.CHANGED + at.BODY_SIZE),
+                  np.array(spells, float).reshape(-1, outcome.SPELL_SIZE))
 
 
 @dataclass

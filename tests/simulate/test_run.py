@@ -8,9 +8,12 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
+from balance.base.errors import InputError
 from balance.design.build import design_stance
+from balance.goal.goal import Loop
 from balance.goal.read import read_goal
-from balance.goal.trials import LiftOff, OffsetShift, Push, Start, TorqueStep, Trial
+from balance.goal.trials import LiftOff, OffsetShift, Payload, Push, Slope, Start, TorqueStep, Trial
+from balance.goal.troubles import Jitter, Missed
 from balance.kernel import layout as at
 from balance.machine.read import read_machine
 from balance.plant.build import build_plant
@@ -135,7 +138,8 @@ def test_stored_momentum_is_shared_by_capacity():
     machine = read_machine("plants/trellis-scout.yaml")
     plant = build_plant(machine, build_stance(machine, "on-fore-right"))
     from balance.simulate.events import happening
-    X = start_state(plant, happening(Trial(start=Start(0.0, 0.0, 0.4)), "outward", 1e-4, np.zeros(0), 0))
+    X = start_state(plant, happening(Trial(start=Start(0.0, 0.0, 0.4)), "outward", plant.body_parameters, Loop(500.0), 1e-4,
+                                      np.zeros(0), 0))
     speeds = X[2::2]
     assert plant.unit_parameters[:, at.COUPLING] @ speeds == pytest.approx(0.4, rel=1e-12)
     assert abs(speeds[0]) == pytest.approx(abs(speeds[1]), rel=1e-9)              # equal wheels: equal speeds
@@ -171,3 +175,36 @@ def test_results_do_not_depend_on_recording(rig):
     trial = Trial(push=Push(0.25, 0.3))
     plain, recorded = ran(rig, trial), ran(rig, trial, record=True)
     assert replace(recorded, trace=None) == plain
+
+
+def test_more_load_than_there_is_is_an_input_error(rig):
+    machine, goal, design = rig
+    asked = replace(goal, trials={"robbed": Trial(payload=Payload(-4.0, 0.28))})
+    with pytest.raises(InputError, match=r"trials\.robbed\.payload\.mass.*taken off"):
+        run_trials(design, asked, machine, False)
+
+
+def test_a_load_beside_the_line_stands_where_gravity_balances(rig):
+    """tan(lean) = -Σ m d/Σ m h: 60 g at 40 mm out and 400 mm up; 2.4 kg at 100 mm falls (the twin)."""
+    result = ran(rig, Trial(payload=Payload(0.06, 0.4, 0.04), lasts=10.0))
+    assert result.verdict == "recovered"
+    stands = -math.atan(0.06 * 0.04 / (3.2 * 0.28 + 0.06 * 0.4))
+    assert result.end_lean == pytest.approx(stands, abs=4e-4)     # the wheel's drag, as above
+    assert ran(rig, Trial(payload=Payload(2.4, 0.4, 0.1), lasts=10.0)).verdict == "fell outward"
+
+
+def test_ground_that_rises_inward_catches_sooner(quay):
+    moves = Start(math.radians(1.5), 2.0)
+    plain = ran(quay, Trial(start=moves), "inward")
+    sooner = ran(quay, Trial(start=moves, slope=Slope(across=math.radians(3.0), at=0.0)), "inward")
+    assert plain.verdict == sooner.verdict == "touched down"
+    assert abs(sooner.end_lean - plain.end_lean) == pytest.approx(math.radians(3.0), rel=0.05)   # one sub-step of the fall
+
+
+@pytest.mark.parametrize("trouble", [
+    {"missed": Missed(samples=60)}, {"missed": Missed(share=0.8)}, {"jitter": Jitter(0.03)}])
+def test_troubles_make_a_trial_harder(rig, trouble):
+    shove = Trial(push=Push(0.25, 0.3))
+    easy, hard = ran(rig, shove), ran(rig, replace(shove, **trouble))
+    assert easy.verdict == "recovered"
+    assert hard.verdict != "recovered" or hard.peak_lean > 1.05 * easy.peak_lean

@@ -8,7 +8,7 @@ import numpy as np
 import pytest
 
 from balance.kernel import outcome
-from balance.simulate.story import limit_story, settling_time, time_to_full
+from balance.simulate.story import limit_story, settling_time, standing_swing, time_to_full
 
 TIME = np.arange(0, 5.0001, 0.002)
 
@@ -76,3 +76,12 @@ def test_one_unit_needs_no_name():
     first = limits((0, outcome.STOP, 0.5, 8.0))[[0, 2]]
     assert limit_story(first, ["gyros"], 8.4, "gimbal rate") == "gimbal stop reached at 0.50 s: 8 of 8.4 N·m·s used"
     assert limit_story(limits(), ["gyros"], 8.4, "torque") == ""
+
+
+def test_a_swing_that_stands_has_its_amplitude_and_a_slow_return_has_none():
+    """A sine of 5 Hz on a slow return e^{-t/2}: the parabola takes all but 1e-3 of the return, 5 % of the sine at most."""
+    swing, back = 0.002 * np.sin(2 * np.pi * 5.0 * TIME), 0.05 * np.exp(-TIME / 2.0)
+    assert standing_swing(TIME, swing) == pytest.approx(0.002, rel=0.05)
+    assert standing_swing(TIME, back) < 1e-3 * 0.05
+    assert standing_swing(TIME, swing + back) == pytest.approx(0.002, rel=0.05)
+    assert standing_swing(TIME[:2], swing[:2]) == 0.0
