@@ -10,7 +10,7 @@ from pathlib import Path
 
 import pytest
 
-from balance.cli.main import main
+from balance.cli.main import main  # also keeps the linear-algebra library to one thread, before numpy is loaded
 
 ROOT = Path(__file__).resolve().parent.parent
 

@@ -21,6 +21,10 @@ from balance.cli.outcome import (
 )
 from balance.cli.parser import COMMANDS, read_words
 
+# Matrices here have a dozen rows: threads of the linear-algebra library only wait for each other, and on a busy machine
+# they made `gains` ten times slower (measured). Said before anything loads it; whoever sets it keeps their own.
+os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
+
 
 def main(argv: Sequence[str] | None = None) -> int:
     """Run one command; `argv` are the words after `balance` (the shell's own by default). Returns the exit code."""
