@@ -2,21 +2,59 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 from balance.api.load import Job
 from balance.api.plant import plant
 from balance.api.tell import Tell, quiet
 from balance.design.build import design_stance
-from balance.design.records import Design
+from balance.design.records import Design, Range
+from balance.design.robustness.one_law import OneLaw, compared, share
+from balance.design.robustness.ranges import ranges_of
+from balance.design.robustness.retune import retune
+from balance.design.robustness.worst import worst_case
+from balance.goal.goal import LqrControl
+from balance.plant.record import Plant
 
 
-def gains(job: Job, tell: Tell = quiet) -> tuple[Design, ...]:
+def gains(job: Job, tell: Tell = quiet, worst: bool = True) -> tuple[Design, ...]:
     """Design the law of every stance of `job`, in the order of its stances.
 
-    `tell` hears one line before each stance.  Raises InputError as `balance.api.plant.plant` does.
+    With `worst`, the worst case within the tolerances is searched where any are stated.  Where the design file wants one
+    gain set, every stance of the machine has its say in it, also those not asked for.  `tell` hears one line before each
+    step.  Raises InputError as `balance.api.plant.plant` does.
     """
-    plants = plant(job.machine, job.stances, job.goal.fell)
-    designs = []
-    for built in plants:
-        tell(f"designing for stance {built.stance.name}")
-        designs.append(design_stance(built, job.goal))
-    return tuple(designs)
+    names = job.machine.stance_names() if job.goal.control.one_gain_set else job.stances
+    plants = plant(job.machine, names, job.goal.fell)
+    designs = tuple(_designed(job, built, tell) for built in plants)
+    if job.goal.control.one_gain_set:
+        designs = share(designs, job.goal)
+    asked = tuple(d for d in designs if d.plant.stance.name in job.stances)
+    return tuple(_tried(job, d, tell) for d in asked) if worst else asked
+
+
+def one_gain_set(designs: tuple[Design, ...]) -> OneLaw | None:
+    """Return one gain set for all stances compared with one per stance, or None where there is nothing to compare."""
+    return compared(designs)
+
+
+def _designed(job: Job, built: Plant, tell: Tell) -> Design:
+    """Design one stance, its weights chosen anew where the file asks for it."""
+    goal, changed = job.goal, None
+    if isinstance(goal.control, LqrControl) and goal.control.retune == "robust" and built.acts:
+        tell(f"retuning for stance {built.stance.name}")
+        goal, changed = retune(built, goal, _ranges(job, built))
+    tell(f"designing for stance {built.stance.name}")
+    return replace(design_stance(built, goal), retuned=changed)
+
+
+def _tried(job: Job, design: Design, tell: Tell) -> Design:
+    """Add the worst case within the tolerances."""
+    ranges = _ranges(job, design.plant)
+    if ranges:
+        tell(f"searching the worst case on stance {design.plant.stance.name}")
+    return replace(design, robustness=worst_case(design, ranges))
+
+
+def _ranges(job: Job, built: Plant) -> tuple[Range, ...]:
+    return ranges_of(built, job.machine.tolerances, job.goal.loop)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import asdict
 
-from balance.api.json_gains import json_margins
+from balance.api.json_margins import json_margins
 from balance.api.json_numbers import Tree, number, row
 from balance.design.forms import actuator_gains, pid_forms
 from balance.design.records import Design

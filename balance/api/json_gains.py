@@ -2,11 +2,11 @@
 
 from __future__ import annotations
 
-import math
-
+from balance.api.json_margins import json_margins
 from balance.api.json_numbers import Tree, complexes, number, row
+from balance.api.json_robust import json_robust
 from balance.design.law import Law
-from balance.design.records import Design, Ideal, Margins
+from balance.design.records import Design, Ideal
 
 
 def json_gains(designs: tuple[Design, ...]) -> Tree:
@@ -33,6 +33,7 @@ def _stance(design: Design) -> Tree:
             "least_peak_complementary": number(design.limits.least_peak_complementary),
             "total_delay_s": number(design.limits.total_delay),
         },
+        **json_robust(design),
     }
 
 
@@ -46,28 +47,3 @@ def _continuous(ideal: Ideal | None) -> Tree | None:
     if ideal is None:
         return None
     return {"K": row(ideal.K), "poles": complexes(ideal.poles), "margins": json_margins(ideal.margins)}
-
-
-def json_margins(margins: Margins) -> Tree:
-    """Write margins; everything but `stable` is null where the closed loop is unstable."""
-    return {
-        "stable": margins.stable,
-        "gain_lower": number(margins.gain_lower),
-        "gain_upper": number(margins.gain_upper),
-        "phase_deg": number(math.degrees(margins.phase)),
-        "phase_crossover_rad_s": number(margins.phase_crossover),
-        "delay_s": number(margins.delay),
-        "delay_estimate_s": number(margins.delay_estimate),
-        "modulus": number(margins.modulus),
-        "disk": number(margins.disk),
-        "peak_sensitivity": number(margins.peak_sensitivity),
-        "peak_complementary": number(margins.peak_complementary),
-        "crossings": [
-            {"kind": c.kind, "frequency_rad_s": number(c.frequency), **_crossing_value(c.kind, c.value)}
-            for c in margins.crossings
-        ],
-    }
-
-
-def _crossing_value(kind: str, value: float) -> Tree:
-    return {"phase_deg": number(math.degrees(value))} if kind == "phase" else {"factor": number(value)}

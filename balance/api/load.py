@@ -7,7 +7,7 @@ from __future__ import annotations
 
 import math
 import os
-from dataclasses import dataclass
+from dataclasses import dataclass, fields
 
 from balance.base.errors import InputError, Problem
 from balance.base.words import listed, nearest
@@ -65,6 +65,9 @@ def load(path: str, stance: str = "") -> Job:
     problem = stance_problem(goal, machine.stance_names())
     if problem and not stance:
         raise InputError([problem])
+    missing = tolerance_problem(goal, machine)
+    if missing:
+        raise InputError([missing])
     return Job(machine, goal, choose_stances(machine, stance or goal.stance))
 
 
@@ -79,6 +82,18 @@ def load_body(path: str, stance: str = "") -> Body:
         return Body(job.machine, job.stances, job.goal.fell)
     machine = read_machine(path)
     return Body(machine, choose_stances(machine, stance or EVERY), FELL)
+
+
+def tolerance_problem(goal: Goal, machine: Machine) -> Problem | None:
+    """Return what is wrong where a worst case is asked for and nothing may be other than stated, or None."""
+    asked = [f.name for f in fields(goal.require) if f.name.startswith("worst_") and getattr(goal.require, f.name)]
+    if not asked or machine.tolerances or goal.loop.latency_tolerance or goal.loop.jitter:
+        return None
+    key = f"require.{asked[0]}"
+    line, column = goal.marks.get(key, (0, 0))
+    return Problem(goal.source, line, column, key, "a worst case without tolerances",
+                   f"`tolerances` in {goal.machine}, or `latency_tolerance` or `jitter` under `loop`",
+                   "as `tolerances: {mass: 0.03, height: 5 mm}`")
 
 
 def machine_path(goal: Goal) -> str:

@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 
 from balance.check.records import Verdict
+from balance.check.tolerances import judge_tolerances
 from balance.design.records import Design, Margins
 from balance.design.steady import tolerable_offset
 from balance.goal.goal import Requirements
@@ -25,7 +26,7 @@ def judge_loop(require: Requirements, design: Design) -> list[Verdict]:
         verdicts.append(Verdict(name, stance, value, unit, limit, sense, passed, reason))
     if require.offset_error is not None:
         verdicts.append(_offset(require.offset_error, design))
-    return verdicts
+    return verdicts + judge_tolerances(require, design)
 
 
 def _stability(design: Design) -> Verdict:

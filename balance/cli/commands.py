@@ -51,23 +51,25 @@ def run_gains(asked: argparse.Namespace, progress: Progress) -> Outcome:
     from balance.api.load import load
 
     job = load(asked.file, asked.stance)
-    from balance.api.gains import gains
+    from balance.api.gains import gains, one_gain_set
     from balance.api.json_check import json_verdicts
     from balance.api.json_forms import json_forms
     from balance.api.json_gains import json_gains
+    from balance.api.json_robust import json_one_gain_set
     from balance.api.judge import judge_loop
     from balance.cli.show_gains import show_gains
 
     designs = gains(job, progress.tell)
-    verdicts = judge_loop(job, designs)
+    verdicts, shared = judge_loop(job, designs), one_gain_set(designs)
     answer = {
         "machine": job.machine.machine,
         "design": job.goal.design,
         **json_gains(designs),
+        "one_gain_set": json_one_gain_set(shared),
         "forms": [json_forms(d) for d in designs],
         **json_verdicts(verdicts),
     }
-    return Outcome(_code(answer), show_gains(designs, verdicts), answer)
+    return Outcome(_code(answer), show_gains(designs, verdicts, shared), answer)
 
 
 def run_recover(asked: argparse.Namespace, progress: Progress) -> Outcome:
@@ -82,7 +84,7 @@ def run_recover(asked: argparse.Namespace, progress: Progress) -> Outcome:
     from balance.api.recover import recover
     from balance.cli.show_recover import show_recover
 
-    designs = gains(job, progress.tell)
+    designs = gains(job, progress.tell, worst=False)
     trials = recover(job, designs, tell=progress.tell)
     verdicts = judge_trials(job, designs, trials)
     answer = {

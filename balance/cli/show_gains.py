@@ -7,8 +7,10 @@ from functools import partial
 from balance.base.tables import text_table
 from balance.check.records import Verdict
 from balance.cli.show_forms import show_forms
+from balance.cli.show_robust import show_one_gain_set, show_robust
 from balance.cli.words import closing, failures, folded, side_by_side, verdict_table
 from balance.design.records import Design
+from balance.design.robustness.one_law import OneLaw
 from balance.design.steady import standing
 from balance.report.amounts import amount, figure, spelt
 
@@ -16,13 +18,14 @@ ROUNDING = 1e-12
 """Share of the largest gain below which a gain is the arithmetic's own rounding, not a gain."""
 
 
-def show_gains(designs: tuple[Design, ...], verdicts: tuple[Verdict, ...]) -> str:
-    """Return the text of the answer."""
+def show_gains(designs: tuple[Design, ...], verdicts: tuple[Verdict, ...], shared: OneLaw | None) -> str:
+    """Return the text of the answer; `shared`: one gain set for all stances beside one per stance."""
     refused = [folded(f"{d.plant.stance.name}: no law: {d.refused}") for d in designs if d.refused]
     made = tuple(d for d in designs if not d.refused)
     parts = [_head(designs[0]), *refused]
     if made:
-        parts += [_laws(made), _margins(made), MEANING, _steady(made), *(show_forms(d) for d in made)]
+        parts += [_laws(made), _margins(made), MEANING, _steady(made), *(show_robust(d) for d in made),
+                  show_one_gain_set(shared), *(show_forms(d) for d in made)]
     if verdicts:
         parts += [verdict_table(verdicts), failures(verdicts)]
     return "\n\n".join(p for p in [*parts, closing(verdicts)] if p)

@@ -10,9 +10,13 @@ from typing import TypeVar
 from balance.base.tables import text_table
 from balance.check.records import Verdict
 from balance.cli.colour import NOT_MET
+from balance.report.subjects import grouped
 from balance.report.verdicts import limit_words, spoken, value_words
 
 Thing = TypeVar("Thing")
+
+AT_ONCE = 20
+"""Requirements that a screen shows one by one; beyond that they are grouped (`--json` and the report have every one)."""
 
 BESIDE = 3
 """Stances that fit beside each other on 80 columns."""
@@ -38,7 +42,19 @@ def side_by_side(
 
 
 def verdict_table(verdicts: Sequence[Verdict]) -> str:
-    """Return every requirement with stance, value, limit and whether it is met."""
+    """Return every requirement with stance, value, limit and whether it is met.
+
+    Where there are more than a screen shows: those not met, then how many are met by stance and subject.
+    """
+    if len(verdicts) <= AT_ONCE:
+        return _each(verdicts)
+    unmet = [v for v in verdicts if not v.passed]
+    rows = [[g.stance, g.subject, f"{g.met}/{g.count}", g.tightest] for g in grouped(verdicts)]
+    groups = text_table(["stance", "about", "met", "tightest of those met, share left"], rows, "llrl")
+    return "\n\n".join([*([_each(unmet)] if unmet else []), groups])
+
+
+def _each(verdicts: Sequence[Verdict]) -> str:
     rows = [[spoken(v.name), v.stance, _value(v), limit_words(v), "yes" if v.passed else NOT_MET] for v in verdicts]
     return text_table(["requirement", "stance", "value", "limit", "met?"], rows, "llrrl")
 

@@ -37,15 +37,25 @@ def design_stance(plant: Plant, goal: Goal) -> Design:
     sampled = sample_plant(plant, T, goal.loop.latency)
     if not plant.acts:
         return refusal(plant, sampled, SQUARE)
-    found = _law(plant, sampled, goal)
-    if isinstance(found, str):
-        return refusal(plant, sampled, found)
-    if isinstance(goal.estimator, Complementary):
-        found = complementary(found, goal.estimator.crossover)
-    poles = np.linalg.eigvals(close(sampled, found)).astype(np.complex128)
+    found = law_for(plant, sampled, goal)
+    return refusal(plant, sampled, found) if isinstance(found, str) else measured(plant, sampled, found, goal)
+
+
+def measured(plant: Plant, sampled: SampledPlant, law: Law, goal: Goal) -> Design:
+    """Return what a law does on a plant: poles, margins, the ideal beside it, what cannot be beaten."""
+    T = sampled.sample_time
+    poles = np.linalg.eigvals(close(sampled, law)).astype(np.complex128)
     ideal = ideal_lqr(plant, goal.control) if isinstance(goal.control, LqrControl) else None
-    return Design(plant, found, poles, equivalent(poles, T), margins_of(at_actuator(sampled, found)),
-                  loop_limits(plant, T, goal.loop.latency), ideal, response(sampled, found), "")
+    return Design(plant, law, poles, equivalent(poles, T), margins_of(at_actuator(sampled, law)),
+                  loop_limits(plant, T, goal.loop.latency), ideal, response(sampled, law), "")
+
+
+def law_for(plant: Plant, sampled: SampledPlant, goal: Goal) -> Law | str:
+    """Return the law with its estimator, or why there is none."""
+    found = _law(plant, sampled, goal)
+    if isinstance(found, Law) and isinstance(goal.estimator, Complementary):
+        return complementary(found, goal.estimator.crossover)
+    return found
 
 
 def _law(plant: Plant, sampled: SampledPlant, goal: Goal) -> Law | str:

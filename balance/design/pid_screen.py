@@ -35,8 +35,8 @@ def violation(loop: Complex, frequency: Array, noise: Array, wanted: Wanted) -> 
     back = 1 + loop                                                       # (c, f)
     sensitivity = 1 / np.min(np.abs(back), axis=1)
     skew = np.max(np.abs(0.5 * (1 - loop) / back), axis=1)                # 1/α
-    phase, delay = _unit_crossings(loop, frequency)
-    lower, upper = _axis_crossings(loop)
+    phase, delay = unit_crossings(loop, frequency)
+    lower, upper = axis_crossings(loop)
     over = [sensitivity / wanted.peak_sensitivity, skew * wanted.disk, noise / wanted.noise,
             wanted.phase / np.maximum(phase, 1e-9), wanted.delay / np.maximum(delay, 1e-12),
             lower / wanted.gain_lower, wanted.gain_upper / upper]
@@ -44,7 +44,7 @@ def violation(loop: Complex, frequency: Array, noise: Array, wanted: Wanted) -> 
     return np.where(np.isfinite(worst), worst, 1e9)
 
 
-def _unit_crossings(loop: Complex, frequency: Array) -> tuple[Array, Array]:
+def unit_crossings(loop: Complex, frequency: Array) -> tuple[Array, Array]:
     """Return (c,) smallest phase margin in rad and smallest phase/ω in s over all crossings of |L| = 1."""
     log = np.log(np.abs(loop))
     crossed = log[:, :-1] * log[:, 1:] < 0
@@ -58,7 +58,7 @@ def _unit_crossings(loop: Complex, frequency: Array) -> tuple[Array, Array]:
     return phase, delay
 
 
-def _axis_crossings(loop: Complex) -> tuple[Array, Array]:
+def axis_crossings(loop: Complex) -> tuple[Array, Array]:
     """Return (c,) largest gain factor below 1 and smallest above 1 at which L meets −1 (0 and inf where it never does)."""
     imag, real = loop.imag, loop.real
     crossed = imag[:, :-1] * imag[:, 1:] < 0

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 
 import numpy as np
@@ -80,3 +81,61 @@ class Design:
     ideal: Ideal | None
     response: Response
     refused: str              # "" or why no law could be designed ("cannot act about this line", …)
+    own: Margins | None = None          # of the stance's own gains, where one gain set for all stances is used instead
+    law_of: str = ""                    # the stance whose gains those are
+    retuned: Retuning | None = None     # what `retune: robust` changed
+    robustness: Robustness | None = None    # the worst case within the tolerances, where any are stated
+
+
+@dataclass(frozen=True)
+class Range:
+    """How far one number may lie from what the files state. `unit`: "" for a share of the nominal value, else SI."""
+
+    name: str
+    low: float
+    high: float
+    unit: str
+
+
+@dataclass(frozen=True)
+class WorstCase:
+    """One margin at its worst. `at`: the deviations there, those that cost most first; idle ones are left out.
+
+    `value` is in the margin's own unit (rad, s or none), NaN where the loop is unstable there.
+    """
+
+    margin: str                  # a field of `Margins`
+    nominal: float
+    value: float
+    at: Mapping[str, float]
+
+
+@dataclass(frozen=True)
+class Robustness:
+    """One stance's law held fixed while the machine and the delay move within their tolerances.
+
+    `stable` says whether the loop was stable wherever it was tried; `worst` is the machine, `late` its added latency (s),
+    `margins` and `response` its loop where the disk margin is smallest (or the loop unstable).
+    """
+
+    ranges: tuple[Range, ...]
+    stable: bool
+    cases: tuple[WorstCase, ...]
+    evaluations: int
+    worst: Plant
+    late: float
+    margins: Margins
+    response: Response
+
+
+@dataclass(frozen=True)
+class Retuning:
+    """What `retune: robust` did to the largest acceptable excursions, and to the disk margin in the worst case.
+
+    `scales`: factors on the allowed lean, lean rate and stored momentum; `tried`: weights whose loop was measured.
+    """
+
+    scales: Mapping[str, float]
+    before: float                # disk margin in the worst case with the weights as given (NaN: unstable there)
+    after: float
+    tried: int

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 
-from balance.files.fields import Shape, number, place, quantity, section, table, text, variant
+from balance.files.fields import Shape, choice, flag, number, place, quantity, section, table, text, variant
 from balance.goal.trials import Trial
 
 Marks = Mapping[str, tuple[int, int]]
@@ -15,12 +15,14 @@ Marks = Mapping[str, tuple[int, int]]
 class Loop:
     """The sampled loop. `latency` runs from the sampling instant to the torque command.
 
-    `jitter` makes each command later still, by up to that much, in every trial; margins are those of `latency`.
+    `jitter` makes each command later still, by up to that much, in every trial.  Margins are those of `latency`; their
+    worst case is searched over latency ± `latency_tolerance` and the jitter.
     `command_bits`: the input of each unit is rounded to one of 2^bits levels over its whole range, ± its limit.
     """
 
     rate: float = quantity("frequency", above=0)
     latency: float = quantity("time", least=0, default=0.0)
+    latency_tolerance: float = quantity("time", least=0, default=0.0, says="either way")
     jitter: float = quantity("time", least=0, default=0.0, says="largest extra latency of a command")
     command_bits: int | None = place(Shape("whole", least=2, most=32, says="bits of a unit's command"), None)
 
@@ -50,6 +52,9 @@ class LqrControl:
 
     allow: Allow | None = section(Allow, default=None)
     weights: Weights | None = section(Weights, default=None)
+    retune: str = choice(("as given", "robust"), default="as given",
+                         says="robust: the weights' proportions that keep the largest disk margin in the worst case")
+    one_gain_set: bool = flag(default=False, says="the same gains on every stance")
 
 
 @dataclass(frozen=True)
@@ -71,6 +76,7 @@ class PidControl:
     desaturation_time: float | None = quantity(
         "time", above=0, default=None, says="in which stored momentum is brought back")
     gains: PidGains | None = section(PidGains, default=None)
+    one_gain_set: bool = flag(default=False, says="the same gains on every stance")
 
 
 @dataclass(frozen=True)
@@ -104,6 +110,12 @@ class Requirements:
                                             says="amplitude of a lean that never dies out")
     offset_error: float | None = quantity("length", above=0, default=None,
                                           says="steady centre-of-mass error that must be tolerable for ever")
+    worst_phase_margin: float | None = quantity("angle", above=0, default=None, says="within the tolerances")
+    worst_gain_margin_lower: float | None = number(above=0, below=1, default=None, says="within the tolerances")
+    worst_gain_margin_upper: float | None = number(above=1, default=None, says="within the tolerances")
+    worst_delay_margin: float | None = quantity("time", above=0, default=None, says="within the tolerances")
+    worst_modulus_margin: float | None = number(above=0, below=1, default=None, says="within the tolerances")
+    worst_disk_margin: float | None = number(above=0, below=2, default=None, says="within the tolerances")
 
 
 @dataclass(frozen=True)

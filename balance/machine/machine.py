@@ -10,6 +10,7 @@ from balance.machine.legs import Feet, Leg
 from balance.machine.motors import Motor, Supply
 from balance.machine.solids import Part, Vector
 from balance.machine.stabilisers import STABILISERS, Stabiliser
+from balance.machine.tolerances import Tolerances
 
 STANDARD_GRAVITY = 9.80665
 """m/s², standard gravity (CGPM 1901)."""
@@ -84,6 +85,7 @@ class Machine:
     supply: Supply | None = section(Supply, default=None)
     imu: Imu | None = section(Imu, default=None)
     stances: dict[str, StancePlan] | None = table(StancePlan, default=None)
+    tolerances: Tolerances | None = section(Tolerances, default=None)
     # neither is a key of the file: its path, and dotted key -> (line, column) in it
     source: str = field(default="", metadata={"shape": None})
     marks: Marks = field(default_factory=dict, metadata={"shape": None}, compare=False)

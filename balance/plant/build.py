@@ -33,9 +33,9 @@ def build_plant(machine: Machine, stance: Stance, fell: float = pi / 6.0) -> Pla
     add_units(machine, stance, units, rows)
     body = _body(stance, rows, fell)
     add_body(stance, rows, body)
-    stiffness, inertia = _about_balance(body)
+    stiffness, inertia = about_balance(body)
     model = linear_model(body, rows, tuple(machine.stabilisers), stiffness, inertia)
-    free = _free(inertia, rows)
+    free = free_inertia(inertia, rows)
     pole = sqrt(stiffness / free) if stiffness > 0.0 else 0.0
     unstable = max(float(np.linalg.eigvals(model.A).real.max()), 0.0)
     shares = allotment(units, line_torque_per_input(rows))
@@ -60,16 +60,15 @@ def _body(stance: Stance, rows: Array, fell: float) -> Array:
     body[at.STIFF_COS] = stance.mass * down * stance.offset
     body[at.BODY_DRAG], body[at.MASS], body[at.GRAVITY] = stance.drag, stance.mass, down
     body[at.HEIGHT], body[at.OFFSET], body[at.FOOT_RADIUS] = stance.height, stance.offset, stance.foot_radius
-    body[at.BALANCED] = _balanced(stance)
+    body[at.BALANCED] = balanced(stance.offset, stance.height - stance.foot_radius)
     body[at.TOUCH_DOWN] = stance.touch_down_lean if stance.touch_down_lean is not None else inf
     body[at.FELL] = fell
     return body
 
 
-def _balanced(stance: Stance) -> float:
+def balanced(offset: float, above: float) -> float:
     """Return θ_b in rad: −atan(δ/(h − r)); feet as round as the machine is high (h = r) are no error."""
-    above = stance.height - stance.foot_radius
-    return -atan2(stance.offset, above) if above >= 0.0 else -atan(stance.offset / above)
+    return -atan2(offset, above) if above >= 0.0 else -atan(offset / above)
 
 
 def _rotor_about_line(row: Array) -> float:
@@ -81,7 +80,7 @@ def _rotor_about_line(row: Array) -> float:
     return float(row[at.COUNT] * (row[at.TRANSVERSE] * (1.0 - share) + (row[at.SPIN] + row[at.SPIN_HELD]) * share))
 
 
-def _about_balance(body: Array) -> tuple[float, float]:
+def about_balance(body: Array) -> tuple[float, float]:
     """Return (G in N·m/rad, inertia in kg·m²) at the balanced lean, rolling feet included."""
     r, h, d = body[at.FOOT_RADIUS], body[at.HEIGHT], body[at.OFFSET]
     s, c = sin(body[at.BALANCED]), cos(body[at.BALANCED])
@@ -90,7 +89,7 @@ def _about_balance(body: Array) -> tuple[float, float]:
     return float(weight * hypot(h - r, d) * (1.0 if h >= r else -1.0)), float(body[at.INERTIA] + rolled)
 
 
-def _free(inertia: float, rows: Array) -> float:
+def free_inertia(inertia: float, rows: Array) -> float:
     """Return J_rest in kg·m²: wheels free to spin, gimbals at angle zero."""
     total = inertia
     for row in rows:

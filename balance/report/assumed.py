@@ -36,15 +36,26 @@ def assumed(result: CheckResult) -> tuple[str, ...]:
 def unchecked(result: CheckResult) -> tuple[str, ...]:
     """Say what was not looked at, first what the design file could have asked for and did not."""
     require = result.goal.require
-    silent = tuple(spoken(one.name) for one in fields(require) if getattr(require, one.name) is None)
+    silent = tuple(spoken(one.name) for one in fields(require)
+                   if getattr(require, one.name) is None and not one.name.startswith("worst_"))
     said = [f"Not asked for in the design file, so not judged: {listed(silent)}."] if silent else []
     said += ["Strength of rotors, shafts, bearings, legs and gimbals; heat in motors and drives beyond the current limits.",
              "Walking itself: how the machine gets onto these feet, and off them again.",
-             "Tolerances: every number is the stated one. A machine as built differs from its file; weigh it, swing it, and "
-             "run the check again with what was measured.",
+             tolerances(result),
              f"Anything after the trials' {amount(longest(result), 's')}: a slow drift that fills the stabiliser later is "
              "only seen if the trial lasts long enough." if result.trials else "No trial was run."]
     return tuple(said)
+
+
+def tolerances(result: CheckResult) -> str:
+    """Say how far what was judged is the machine as stated."""
+    built = "A machine as built differs from its file; weigh it, swing it, and run the check again with what was measured."
+    if not any(design.robustness for design in result.designs):
+        return f"Tolerances: every number is the stated one. {built}"
+    asked = any(getattr(result.goal.require, one.name) is not None for one in fields(result.goal.require)
+                if one.name.startswith("worst_"))
+    limit = "" if asked else " No limit on the worst margins is asked for: only that the loop stays stable."
+    return f"Tolerances in the trials: they run the machine as stated; only the margins saw the tolerances.{limit} {built}"
 
 
 def longest(result: CheckResult) -> float:

@@ -7,6 +7,7 @@ import tempfile
 
 from balance.check.records import CheckResult
 from balance.design.records import Design
+from balance.design.robustness.one_law import compared
 from balance.report import page as html
 from balance.report.assumed import assumed, unchecked
 from balance.report.cautions import cautions
@@ -21,6 +22,7 @@ from balance.report.histories import picture_trials
 from balance.report.loops import LoopPicture, picture_loop
 from balance.report.margins import margin_table
 from balance.report.outline import outline
+from balance.report.robustness import one_law_table, retuned_words, worst_table
 from balance.report.seal import free_place
 from balance.report.told import told
 from balance.report.verdicts import headline, tally, verdict_tables
@@ -57,7 +59,7 @@ def compose(result: CheckResult) -> str:
     if designs:
         plants = tuple(design.plant for design in designs)
         sections.append(("machine", "The machine", "", [html.table(machine_table(plants)), html.table(unit_table(plants))]))
-        sections.append(("margins", "Margins", "", [html.table(margin_table(designs, pictures))]))
+        sections.append(("margins", "Margins", "", _margins(designs, pictures)))
     for i, (design, loop) in enumerate(zip(designs, pictures, strict=True)):
         name = design.plant.stance.name
         sections.append((f"stance-{i + 1}", f"Stance {name}", "stance", _stance(result, design, loop)))
@@ -80,6 +82,20 @@ def _verdicts(result: CheckResult) -> list[str]:
     first = [html.table(unmet)] if unmet is not None else []
     return [html.table(tally(result)), *first,
             *(html.folded(title, html.table(table), i == 0) for i, (title, table) in enumerate(stances))]
+
+
+def _margins(designs: tuple[Design, ...], pictures: tuple[LoopPicture | None, ...]) -> list[str]:
+    """Return the margins as stated, at their worst within the tolerances, and with one gain set for all stances."""
+    parts = [html.table(margin_table(designs, pictures))]
+    for i, design in enumerate(designs):
+        name, worst = design.plant.stance.name, worst_table(design)
+        if worst is not None:
+            title = f"{name}: worst case within the tolerances"
+            parts.append(html.table(worst) if len(designs) == 1 else html.folded(title, html.table(worst), i == 0))
+        if design.retuned is not None:
+            parts.append(html.paragraph(f"{name}: {retuned_words(design.retuned)}"))
+    shared = compared(designs)
+    return parts if shared is None else [*parts, html.table(one_law_table(shared))]
 
 
 def _stance(result: CheckResult, design: Design, loop: LoopPicture | None) -> list[str]:

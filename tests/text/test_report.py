@@ -140,8 +140,8 @@ def test_what_was_not_asked_for_is_named():
     result = answer("bench-rig-pid", "line")
     require = replace(result.goal.require, phase_margin=None)
     said = words(compose(replace(result, goal=replace(result.goal, require=require))))
-    assert re.search(r"not judged: [^.]*phase margin", said)
-    assert not re.search(r"not judged: [^.]*phase margin", words(page("bench-rig-pid", "line")))
+    assert re.search(r"not judged: phase margin", said), "the first of those left out"
+    assert not re.search(r"not judged: phase margin", words(page("bench-rig-pid", "line")))
 
 
 def test_two_wheels_say_how_the_command_is_shared():

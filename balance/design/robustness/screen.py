@@ -1,0 +1,108 @@
+"""Many deviated loops at once: stable or not by eigenvalues, then margins off one frequency grid.
+
+Good to a part in a thousand, for ranking; what is reported comes from `design.margins` with refined crossings.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from balance.design.law import Law
+from balance.design.loop import BrokenLoop, SampledPlant, actuator_break, sample_plant, sensor_break
+from balance.design.noise import output_rms, per_sample
+from balance.design.pid import GYRO_NOISE
+from balance.design.pid_screen import axis_crossings, unit_crossings
+from balance.design.robustness.ranges import LATENCY
+from balance.plant.deviation import deviated
+from balance.plant.record import Plant
+
+Array = NDArray[np.float64]
+Complex = NDArray[np.complex128]
+
+JUDGED = ("disk", "modulus", "phase", "gain_lower", "gain_upper", "delay")
+"""Margins that are searched, by their names in `Margins`; columns of what `scores` returns."""
+
+POINTS = 220
+"""Frequencies of the grid: neighbours 6 % apart, where a smooth loop's peak is found to 0.1 % (parabola through three)."""
+
+
+@dataclass(frozen=True)
+class Screen:
+    """One law on one stance's plant, and the frequencies (rad/s) its loops are looked at."""
+
+    plant: Plant
+    law: Law
+    frequency: Array
+
+    def sampled(self, by: Mapping[str, float]) -> SampledPlant:
+        """Return the deviated machine sampled under the deviated delay."""
+        late = max(self.law.latency + by.get(LATENCY, 0.0), 0.0)
+        return sample_plant(deviated(self.plant, by), self.law.sample_time, late)
+
+    def loop(self, by: Mapping[str, float]) -> BrokenLoop:
+        """Return the deviated machine under the law, cut at the physical torque."""
+        return actuator_break(self.sampled(by), self.law)
+
+    def slowest(self) -> float:
+        """Return the time constant (s) of the slowest mode of the nominal closed loop; inf where it does not decay."""
+        poles = np.abs(np.linalg.eigvals(self.loop({}).closed()))
+        rate = -math.log(max(float(poles.max()), 1e-300)) / self.law.sample_time
+        return 1.0 / rate if rate > 0.0 else math.inf
+
+    def shaken(self) -> float:
+        """Return the RMS of the nominal command under a small gyroscope's noise, as a share of the command's limit."""
+        law, sampled = self.law, self.sampled({})
+        name = "gyro" if "gyro" in law.measurements else "lean_rate"
+        cut, felt = actuator_break(sampled, law), sensor_break(sampled, law, name)
+        sigma, direct = per_sample(GYRO_NOISE, 1.0 / law.sample_time), law.D[law.measurements.index(name)]
+        rms = output_rms(cut.closed(), felt.b[:, None], np.array([sigma]), -cut.c[None, :], np.array([[direct]]))
+        return float(rms[0] / law.output_limit)
+
+    def scores(self, deviations: Sequence[Mapping[str, float]]) -> Array:
+        """Return (N, len(JUDGED)): how good each margin is, more is better; below 0 where the loop is unstable.
+
+        Factors are counted from 1: 1 − lower and upper − 1.  An unstable loop has minus its growth per sample.
+        """
+        loops = [self.loop(by) for by in deviations]
+        growth = np.array([np.abs(np.linalg.eigvals(one.closed())).max() - 1.0 for one in loops])
+        response = np.stack([one.response(self.frequency) for one in loops])
+        found = quick_margins(response, self.frequency)                      # (N, 6)
+        return np.where(growth[:, None] >= 0.0, -growth[:, None] - 1e-12, np.maximum(found, 0.0))
+
+
+def quick_margins(loop: Complex, frequency: Array) -> Array:
+    """Return (N, len(JUDGED)) off the grid for loops (N, f) that are stable; factors counted from 1."""
+    back = np.abs(1.0 + loop)
+    phase, delay = unit_crossings(loop, frequency)
+    lower, upper = axis_crossings(loop)
+    disk, modulus = 1.0 / top(0.5 * np.abs(1.0 - loop) / back), 1.0 / top(1.0 / back)
+    return np.stack([disk, modulus, phase, 1.0 - lower, upper - 1.0, delay], axis=1)
+
+
+def top(values: Array) -> Array:
+    """Return (N,) the highest values over the last axis, a parabola laid through the logarithms of three neighbours."""
+    at = np.argmax(values, axis=1)
+    middle = np.clip(at, 1, values.shape[1] - 2)
+    rows = np.arange(len(values))
+    a, b, c = (np.log(values[rows, middle + k]) for k in (-1, 0, 1))
+    bend = np.minimum(a - 2.0 * b + c, -1e-300)
+    peak = np.where(at == middle, b - (c - a) ** 2 / (8.0 * bend), np.log(values[rows, at]))
+    highest: Array = np.exp(peak)
+    return highest
+
+
+def screen_of(plant: Plant, law: Law, marks: Sequence[float] = ()) -> Screen:
+    """Return a screen with its grid: from far below the slowest mode up to the Nyquist frequency, denser near `marks`."""
+    nominal = actuator_break(sample_plant(plant, law.sample_time, law.latency), law)
+    poles = np.linalg.eigvals(nominal.closed()).astype(complex)
+    rates = np.abs(np.log(poles[np.abs(poles) > 1e-9])) / law.sample_time
+    highest = np.pi / law.sample_time * (1.0 - 1e-12)
+    lowest = max(0.02 * float(rates[rates > 1e-7 * highest].min(initial=highest)), 1e-6 * highest)
+    near = [m * (1.0 + s * d) for m in marks for d in np.geomspace(1e-3, 0.3, 12) for s in (-1.0, 1.0)]
+    grid = np.concatenate([np.geomspace(lowest, highest, POINTS), [x for x in near if lowest < x < highest]])
+    return Screen(plant, law, np.unique(grid))
