@@ -33,6 +33,18 @@ class Count:
 
 
 @dataclass(frozen=True)
+class WorstLoop:
+    """The loop at its worst within the tolerances; arrays as in `LoopPicture`, `modulus` NaN where it is unstable."""
+
+    frequency: Array       # (n,) rad/s
+    magnitude: Array       # (n,) dB
+    phase: Array           # (n,) degrees
+    loop: Array            # (n,) complex128
+    stable: bool
+    modulus: float
+
+
+@dataclass(frozen=True)
 class LoopPicture:
     """One loop, ready to draw. `phase` is unwrapped, in degrees, next to −180° at the first crossover."""
 
@@ -48,6 +60,7 @@ class LoopPicture:
     phase_crossings: tuple[Crossing, ...]
     gain_crossings: tuple[Crossing, ...]
     count: Count
+    worst: WorstLoop | None = None
 
 
 def count_turns(broken: BrokenLoop, lowest: float, frequency: Array, loop: Array) -> Count:
@@ -94,4 +107,16 @@ def picture_loop(design: Design) -> LoopPicture | None:
         stable=margins.stable, modulus=margins.modulus, nearest=complex(loop[int(np.argmin(np.abs(1.0 + loop)))]),
         phase_crossings=tuple(c for c in margins.crossings if c.kind == "phase"),
         gain_crossings=tuple(c for c in margins.crossings if c.kind == "gain" and c.value > 0.0),
-        count=count_turns(broken, LOWEST * nyquist, frequency, loop))
+        count=count_turns(broken, LOWEST * nyquist, frequency, loop), worst=worst_loop(design))
+
+
+def worst_loop(design: Design) -> WorstLoop | None:
+    """Gather the loop where the disk margin is smallest, or None where no tolerances are stated."""
+    found = design.robustness
+    if found is None:
+        return None
+    loop, frequency = np.asarray(found.response.loop), np.asarray(found.response.frequency)
+    usable = np.isfinite(loop) & (loop != 0.0)
+    loop, frequency = loop[usable], frequency[usable]
+    magnitude = 20.0 * np.log10(np.abs(loop))
+    return WorstLoop(frequency, magnitude, phase_degrees(loop, magnitude), loop, found.margins.stable, found.margins.modulus)

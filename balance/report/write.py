@@ -17,11 +17,13 @@ from balance.report.figures.machine import draw_view
 from balance.report.figures.nyquist import draw_nyquist
 from balance.report.figures.palette import as_bytes
 from balance.report.figures.recovery import draw_recovery
+from balance.report.figures.response import draw_response
 from balance.report.gains import gain_table, pole_table, share_table
 from balance.report.histories import picture_trials
 from balance.report.loops import LoopPicture, picture_loop
 from balance.report.margins import margin_table
 from balance.report.outline import outline
+from balance.report.responses import picture_responses
 from balance.report.robustness import one_law_table, retuned_words, worst_table
 from balance.report.seal import free_place
 from balance.report.told import told
@@ -115,6 +117,10 @@ def _stance(result: CheckResult, design: Design, loop: LoopPicture | None) -> li
         parts += [html.sub_heading("Loop, broken at the physical torque"), html.figures([
             html.picture(as_bytes(draw_bode(loop), "svg"), f"{name}, Bode diagram", "Bode: gain margins ■, phase margin ●"),
             html.picture(as_bytes(draw_nyquist(loop), "svg"), f"{name}, Nyquist diagram", "Nyquist, near the point −1")])]
+    drawn = [html.picture(as_bytes(draw_response(one), "svg"), f"{name}, {one.name}: lean, torque, momentum over time",
+                          f"{one.name} on the linear loop") for one in picture_responses(design)]
+    if drawn:
+        parts.append(html.folded(f"{name}: step and push on the linear loop, no limit acting", html.figures(drawn), True))
     return parts + _trials(result, design)
 
 

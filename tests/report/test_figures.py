@@ -16,9 +16,11 @@ from balance.report.figures.machine import draw_view, write_machine_figure
 from balance.report.figures.nyquist import draw_nyquist
 from balance.report.figures.palette import as_bytes, ink
 from balance.report.figures.recovery import draw_recovery
+from balance.report.figures.response import draw_response
 from balance.report.histories import picture_trials
 from balance.report.loops import picture_loop
 from balance.report.outline import outline
+from balance.report.responses import picture_responses
 
 CASES = [("bench-rig", "line"), ("bench-rig-short", "line"), ("bench-rig-pid", "line"), ("quay-gyros", "on-left-right"),
          ("scout-wheels", "on-fore-left")]
@@ -32,6 +34,7 @@ def drawings(result) -> dict[str, Figure]:
     loop = picture_loop(design)
     found = {which: draw_view(drawing, which) for which in ("top", "side")}
     found |= {"bode": draw_bode(loop), "nyquist": draw_nyquist(loop)}
+    found |= {one.name: draw_response(one) for one in picture_responses(design)}
     mine = tuple(t for t in result.trials if t.stance == stance.name)
     found |= {p.name: draw_recovery(p) for p in picture_trials(design, mine, result.goal.trials)}
     return found

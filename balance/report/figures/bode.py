@@ -10,7 +10,7 @@ from matplotlib.figure import Figure
 from matplotlib.ticker import FuncFormatter, MultipleLocator, NullLocator
 from numpy.typing import ArrayLike, NDArray
 
-from balance.report.figures.palette import DASHED, INK, NAVY, PLUM, RUST, SLATE, ink, sheet
+from balance.report.figures.palette import DASHED, INK, NAVY, PINE, PLUM, RUST, SLATE, ink, sheet
 from balance.report.loops import LoopPicture
 
 HERTZ = 1.0 / math.tau
@@ -31,8 +31,13 @@ def draw_bode(picture: LoopPicture) -> Figure:
     with ink():
         figure, (gain, phase) = sheet(4.6, rows=2, share=True)
         figure.subplots_adjust(left=0.145, right=0.955, top=0.875, bottom=0.105, hspace=0.14)
-        gain.semilogx(picture.frequency, picture.magnitude, color=NAVY)
+        gain.semilogx(picture.frequency, picture.magnitude, color=NAVY, label="as stated")
         phase.semilogx(picture.frequency, picture.phase, color=NAVY)
+        if picture.worst is not None:
+            worst = picture.worst
+            gain.semilogx(worst.frequency, worst.magnitude, color=PINE, ls=DASHED, zorder=3, label="worst case")
+            phase.semilogx(worst.frequency, worst.phase, color=PINE, ls=DASHED, zorder=3)
+            gain.legend(loc="lower left", fontsize=7)
         gain.set_ylabel("Magnitude (dB)")
         phase.set_ylabel("Phase (°)")
         phase.set_xlabel("Angular frequency (rad/s)")
@@ -61,7 +66,10 @@ def frame(gain: Axes, phase: Axes, picture: LoopPicture) -> None:
     reach = float(np.max(seen)) - float(np.min(seen))
     step = 45.0 if reach < 300.0 else 90.0 if reach < 700.0 else 180.0
     phase.yaxis.set_major_locator(MultipleLocator(step))
-    phase.set_ylim(min(float(np.min(seen)), -180.0) - 18.0, max(float(np.max(seen)), -180.0) + 30.0)
+    lowest = min(float(np.min(seen)), -180.0)
+    if picture.worst is not None:
+        lowest = max(min(lowest, float(np.min(picture.worst.phase))), lowest - 90.0)
+    phase.set_ylim(lowest - 18.0, max(float(np.max(seen)), -180.0) + 30.0)
     for turn in (-180.0, 180.0, -540.0):
         if phase.get_ylim()[0] < turn < phase.get_ylim()[1]:
             phase.axhline(turn, color=SLATE, lw=0.9)

@@ -9,8 +9,8 @@ from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 from matplotlib.patches import Circle
 
-from balance.report.figures.palette import DASHED, DOTTED, INK, NAVY, RUST, SLATE, SOLID, WIDTH, ink, sheet
-from balance.report.loops import LoopPicture
+from balance.report.figures.palette import DASHED, DOTTED, INK, MIXED, NAVY, PINE, RUST, SLATE, SOLID, WIDTH, ink, sheet
+from balance.report.loops import LoopPicture, WorstLoop
 
 TALL = 4.6
 """Inches."""
@@ -26,6 +26,8 @@ def draw_nyquist(picture: LoopPicture) -> Figure:
         axes.plot(loop.real, loop.imag, color=NAVY, ls=SOLID, label="L, frequency rising along the arrows")
         axes.plot(loop.real, -loop.imag, color=NAVY, ls=DASHED, lw=0.9, label="its mirror image")
         arrows(axes, loop)
+        if picture.worst is not None:
+            worst_case(axes, picture.worst)
         turn = np.linspace(0.0, math.tau, 181)
         axes.plot(np.cos(turn), np.sin(turn), color=SLATE, ls=DOTTED, lw=1.0, label="gain 1")
         if picture.stable and math.isfinite(picture.modulus):
@@ -42,12 +44,24 @@ def draw_nyquist(picture: LoopPicture) -> Figure:
     return figure
 
 
+def worst_case(axes: Axes, worst: WorstLoop) -> None:
+    """Draw the worst case within the tolerances over the nominal loop, with its own modulus circle."""
+    loop = thinned(worst.loop, axes)
+    axes.plot(loop.real, loop.imag, color=PINE, ls=MIXED, lw=1.2, label="L, worst case")
+    if worst.stable and math.isfinite(worst.modulus):
+        axes.add_patch(Circle((-1.0, 0.0), worst.modulus, fill=False, edgecolor=PINE, ls=DASHED, lw=0.9,
+                              label=f"modulus circle there, radius {worst.modulus:.3g}"))
+
+
 def count_words(picture: LoopPicture) -> str:
     """Say the stability count in two lines."""
     count = picture.count
     found = f"found {count.found}".replace("-", "−") if count.sure else "not countable on this response"
     end = "stable" if picture.stable else "NOT stable"
-    return f"Counter-clockwise turns about −1: needed {count.needed}, {found}.\nThe closed loop is {end}."
+    worst = picture.worst
+    also = "" if worst is None else ", also in the worst case" if worst.stable is picture.stable else \
+        "; in the worst case it is not"
+    return f"Counter-clockwise turns about −1: needed {count.needed}, {found}.\nThe closed loop is {end}{also}."
 
 
 def frame(axes: Axes, picture: LoopPicture) -> None:
