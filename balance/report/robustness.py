@@ -7,6 +7,9 @@ import math
 from balance.design.records import Design, Retuning, Robustness, WorstCase
 from balance.design.robustness.one_law import OneLaw
 from balance.design.robustness.ranges import told
+from balance.kernel.layout import ANGLE_STOP, MOMENTUM, RATE_LIMIT
+from balance.machine.tolerances import Tolerances
+from balance.plant.record import Plant
 from balance.report.amounts import amount, figure, share
 from balance.report.margins import factor
 from balance.report.tables import Row, Table
@@ -58,6 +61,26 @@ def within(found: Robustness) -> str:
             low = told({one.name: one.low}, found.ranges).rpartition(f"{one.name} ")[2]
             words.append(high.replace(f"{one.name} ", f"{one.name} {low} to ") if one.low else high.replace("+", "up to +"))
     return f"Within {', '.join(words)}."
+
+
+def across_words(plant: Plant, tolerances: Tolerances | None) -> str:
+    """Say what a mismatched pair does across the line, or nothing where there is none.
+
+    Momentum of ±H(1 ± m) at angles ε ± γ: 2 H (m cos γ − sin γ sin ε) stands along s₀, whose rate of change is at most
+    2 H γ̇ (m sin γ_max + sin ε).
+    """
+    mismatch = tolerances.pair_mismatch if tolerances else None
+    if mismatch is None or not (mismatch.momentum or mismatch.angle):
+        return ""
+    worst = 0.0
+    for unit, row in zip(plant.units, plant.unit_parameters, strict=True):
+        if unit.kind == "scissored pair":
+            part = mismatch.momentum * math.sin(row[ANGLE_STOP]) + math.sin(mismatch.angle)
+            worst += 2.0 * float(row[MOMENTUM] * row[RATE_LIMIT]) * part
+    if not worst:
+        return ""
+    return (f"The pair's mismatch leaves up to {amount(worst, 'N*m')} about the spin axis at the gimbals' rate limit, for "
+            "the feet to carry; a difference of momentum between the two does nothing about the line.")
 
 
 def one_law_table(found: OneLaw) -> Table:

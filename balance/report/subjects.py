@@ -12,6 +12,7 @@ from balance.report.verdicts import judged_value, limit_words, spoken
 
 LOOP = ("stable_loop", "phase_margin", "gain_margin_lower", "gain_margin_upper", "delay_margin", "modulus_margin",
         "disk_margin", "peak_sensitivity", "offset_error")
+OVER_TRIALS = ("momentum_used", "peak_lean", "settling_time", "friction_needed", "standing_swing", "feet_on_ground")
 WITHIN = "stable_within_tolerances"
 
 
@@ -34,7 +35,7 @@ def subject_of(verdict: Verdict) -> str:
         return "within tolerances"
     if isinstance(verdict.limit, str) and verdict.limit.startswith("recovered"):
         return "trials"
-    return "over all trials" if verdict.reason.startswith("worst: ") else "machine"
+    return "over all trials" if verdict.name in OVER_TRIALS or verdict.reason.startswith("worst: ") else "machine"
 
 
 def grouped(verdicts: Sequence[Verdict]) -> tuple[Group, ...]:

@@ -8,6 +8,7 @@ import tempfile
 from balance.check.records import CheckResult
 from balance.design.records import Design
 from balance.design.robustness.one_law import compared
+from balance.machine.machine import Machine
 from balance.report import page as html
 from balance.report.assumed import assumed, unchecked
 from balance.report.cautions import cautions
@@ -24,7 +25,7 @@ from balance.report.loops import LoopPicture, picture_loop
 from balance.report.margins import margin_table
 from balance.report.outline import outline
 from balance.report.responses import picture_responses
-from balance.report.robustness import one_law_table, retuned_words, worst_table
+from balance.report.robustness import across_words, one_law_table, retuned_words, worst_table
 from balance.report.seal import free_place
 from balance.report.told import told
 from balance.report.verdicts import headline, tally, verdict_tables
@@ -61,7 +62,7 @@ def compose(result: CheckResult) -> str:
     if designs:
         plants = tuple(design.plant for design in designs)
         sections.append(("machine", "The machine", "", [html.table(machine_table(plants)), html.table(unit_table(plants))]))
-        sections.append(("margins", "Margins", "", _margins(designs, pictures)))
+        sections.append(("margins", "Margins", "", _margins(result.machine, designs, pictures)))
     for i, (design, loop) in enumerate(zip(designs, pictures, strict=True)):
         name = design.plant.stance.name
         sections.append((f"stance-{i + 1}", f"Stance {name}", "stance", _stance(result, design, loop)))
@@ -86,7 +87,7 @@ def _verdicts(result: CheckResult) -> list[str]:
             *(html.folded(title, html.table(table), i == 0) for i, (title, table) in enumerate(stances))]
 
 
-def _margins(designs: tuple[Design, ...], pictures: tuple[LoopPicture | None, ...]) -> list[str]:
+def _margins(machine: Machine, designs: tuple[Design, ...], pictures: tuple[LoopPicture | None, ...]) -> list[str]:
     """Return the margins as stated, at their worst within the tolerances, and with one gain set for all stances."""
     parts = [html.table(margin_table(designs, pictures))]
     for i, design in enumerate(designs):
@@ -94,6 +95,9 @@ def _margins(designs: tuple[Design, ...], pictures: tuple[LoopPicture | None, ..
         if worst is not None:
             title = f"{name}: worst case within the tolerances"
             parts.append(html.table(worst) if len(designs) == 1 else html.folded(title, html.table(worst), i == 0))
+        across = across_words(design.plant, machine.tolerances)
+        if across:
+            parts.append(html.paragraph(f"{name}: {across}"))
         if design.retuned is not None:
             parts.append(html.paragraph(f"{name}: {retuned_words(design.retuned)}"))
     shared = compared(designs)

@@ -72,6 +72,29 @@ def test_the_short_wheel_does_not_pass_and_says_what_runs_out_and_by_how_much(ch
 
 
 @pytest.mark.parametrize("name", DESIGNS)
+def test_every_design_is_judged_on_its_worst_case_where_tolerances_are_stated(checked, name: str) -> None:
+    _, answer = checked(name)
+    worst = [v for v in answer["verdicts"] if v["name"].startswith("worst_") or v["name"] == "stable_within_tolerances"]
+    stances = [s["stance"] for s in answer["gains"]["stances"]]
+    if name == SHORT:  # its machine file states none
+        assert worst == []
+        assert all(s["worst_case"] is None for s in answer["gains"]["stances"])
+        return
+    assert all(v["passed"] for v in worst)
+    assert [v["stance"] for v in worst if v["name"] == "stable_within_tolerances"] == stances
+    assert [v["stance"] for v in worst if v["name"] == "worst_disk_margin"] == stances
+    for stance in answer["gains"]["stances"]:
+        found = stance["worst_case"]
+        assert found["stable"]
+        assert found["loops_tried"] > 100
+        by_name = {m["margin"]: m for m in found["margins"]}
+        for key in ("disk", "modulus", "phase_deg", "gain_upper", "delay_s"):
+            assert by_name[key]["worst"] < by_name[key]["nominal"] == stance["margins"][key]
+        assert by_name["gain_lower"]["worst"] > by_name["gain_lower"]["nominal"]
+        assert all(m["at"] for m in found["margins"]), "each names its cause"
+
+
+@pytest.mark.parametrize("name", DESIGNS)
 def test_every_command_gives_the_same_numbers_as_check(checked, command, name: str) -> None:
     _, whole = checked(name)
     file = ROOT / "designs" / f"{name}.yaml"

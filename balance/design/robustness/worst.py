@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping
+from dataclasses import replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -32,7 +33,8 @@ def worst_case(design: Design, ranges: tuple[Range, ...]) -> Robustness | None:
     screen = screen_of(design.plant, design.law)
     pool = search(lambda points: screen.scores([deviation(ranges, x) for x in points]), len(ranges))
     places = [pool.lowest(column) for column in range(len(JUDGED))]
-    exact = {_key(x): exact_margins(screen, deviation(ranges, x)) for x in places}
+    full = {_key(places[JUDGED.index(name)]) for name in ("disk", "delay")}
+    exact = {_key(x): exact_margins(screen, deviation(ranges, x), _key(x) in full) for x in places}
     cases = tuple(_case(design, screen, ranges, pool, column, exact) for column in range(len(JUDGED)))
     by = deviation(ranges, places[JUDGED.index("disk")])
     sampled = screen.sampled(by)
@@ -47,9 +49,13 @@ def deviation(ranges: tuple[Range, ...], x: Array) -> dict[str, float]:
     return {one.name: float(v * one.high if v > 0.0 else -v * one.low) for one, v in zip(ranges, x, strict=True)}
 
 
-def exact_margins(screen: Screen, by: Mapping[str, float]) -> Margins:
-    """Return the margins of one deviated loop, crossings refined and delay by eigenvalues."""
-    return margins_of(at_actuator(screen.sampled(by), screen.law))
+def exact_margins(screen: Screen, by: Mapping[str, float], delay: bool) -> Margins:
+    """Return the margins of one deviated loop, crossings refined; without `delay`, the dear one of them, it is NaN."""
+    loop = at_actuator(screen.sampled(by), screen.law)
+    if delay:
+        return margins_of(loop)
+    margins = margins_of(replace(loop, growth=lambda factor, late: 1.0 if late else loop.growth(factor, 0.0)))
+    return replace(margins, delay=math.nan)
 
 
 def _case(design: Design, screen: Screen, ranges: tuple[Range, ...], pool: Pool, column: int,
@@ -57,9 +63,9 @@ def _case(design: Design, screen: Screen, ranges: tuple[Range, ...], pool: Pool,
     """Return one margin's worst case: the least of everything that was measured exactly."""
     name = JUDGED[column]
     nominal = float(getattr(design.margins, name))
-    found = {key: float(getattr(m, name)) for key, m in exact.items()}
+    found = {key: float(getattr(m, name)) for key, m in exact.items() if name != "delay" or not math.isnan(m.delay)}
     worse = max if name == "gain_lower" else min
-    if any(math.isnan(v) for v in found.values()):
+    if not all(m.stable for m in exact.values()):
         value, x = math.nan, pool.lowest(column)
     else:
         key = worse(found, key=lambda k: found[k])
