@@ -1,6 +1,7 @@
 """What one loop costs in the search for the worst case, beside the margins that are reported.
 
-`python -m tests.speed.robustness` prints it.  Both in the same run on the same loops, so the ratio carries to another machine; no time fails a test.
+`python -m tests.speed.robustness` prints it.  Both ways in the same run on the same loops, so the ratio carries to another
+machine; no time fails a test.
 """
 
 from __future__ import annotations
