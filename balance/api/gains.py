@@ -6,6 +6,7 @@ from dataclasses import replace
 
 from balance.api.load import Job
 from balance.api.plant import plant
+from balance.api.retuned import borne_by_trials
 from balance.api.tell import Tell, quiet
 from balance.design.build import design_stance
 from balance.design.records import Design, Range
@@ -43,7 +44,7 @@ def _designed(job: Job, built: Plant, tell: Tell) -> Design:
     goal, changed = job.goal, None
     if isinstance(goal.control, LqrControl) and goal.control.retune == "robust" and built.acts:
         tell(f"retuning for stance {built.stance.name}")
-        goal, changed = retune(built, goal, _ranges(job, built))
+        goal, changed = retune(built, goal, _ranges(job, built), borne_by_trials(job, built))
     tell(f"designing for stance {built.stance.name}")
     return replace(design_stance(built, goal), retuned=changed)
 

@@ -52,6 +52,7 @@ def _retuned(changed: Retuning) -> Tree:
         "worst_disk_before": number(changed.before),
         "worst_disk_after": number(changed.after),
         "weights_tried": changed.tried,
+        "part_of_the_way": number(changed.part),
     }
 
 

@@ -132,10 +132,12 @@ class Robustness:
 class Retuning:
     """What `retune: robust` did to the largest acceptable excursions, and to the disk margin in the worst case.
 
-    `scales`: factors on the allowed lean, lean rate and stored momentum; `tried`: weights whose loop was measured.
+    `scales`: factors on the allowed lean, lean rate and stored momentum; `tried`: weights whose loop was measured;
+    `part`: of the way to the best of them, 1 unless the trials would bear no more (0: nothing was changed).
     """
 
     scales: Mapping[str, float]
     before: float                # disk margin in the worst case with the weights as given (NaN: unstable there)
     after: float
     tried: int
+    part: float = 1.0

@@ -111,9 +111,11 @@ def one_law_words(found: OneLaw) -> str:
 def retuned_words(changed: Retuning) -> str:
     """Say what retuning did to the weights and to the worst case."""
     before = "unstable" if math.isnan(changed.before) else figure(changed.before)
-    if all(value == 1.0 for value in changed.scales.values()):
-        return (f"Retuned for the worst case: none of {changed.tried} weights tried is better than those given (worst disk "
-                f"margin {before}).")
+    if changed.part == 0.0:
+        return (f"Retuned for the worst case: of {changed.tried} weights tried none is better than those given and passes "
+                f"the trials they pass (worst disk margin {before}).")
     scales = ", ".join(f"{name.replace('_', ' ')} × {figure(value)}" for name, value in changed.scales.items())
+    part = f" That is {share(changed.part)} of the way (in octaves) to the best: the trials bear no more."
+    held = "" if changed.part == 1.0 else part
     return (f"Retuned for the worst case, {changed.tried} weights tried: what is accepted became {scales}; the worst disk "
-            f"margin went from {before} to {figure(changed.after)}.")
+            f"margin went from {before} to {figure(changed.after)}.{held}")

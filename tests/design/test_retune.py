@@ -10,10 +10,11 @@ import numpy as np
 import pytest
 
 from balance.api.gains import gains
-from balance.api.judge import judge_loop
+from balance.api.judge import judge_loop, judge_trials
 from balance.api.load import load
+from balance.api.recover import recover
 from balance.design.pid import NOISE_SHARE
-from balance.design.robustness.retune import FREE, OCTAVES, scaled
+from balance.design.robustness.retune import FREE, OCTAVES, retune, scaled
 from balance.design.robustness.screen import screen_of
 from balance.goal.goal import Weights
 
@@ -64,6 +65,23 @@ def test_margin_is_not_bought_with_noise_or_sloth(retuned) -> None:
     screen = screen_of(design.plant, design.law)
     assert screen.shaken() <= NOISE_SHARE * (1.0 + 1e-9)
     assert screen.slowest() <= job.goal.require.settling_time / 4.0 * (1.0 + 1e-9)
+
+
+def test_what_the_trials_would_lose_is_taken_back(retuned) -> None:
+    """The best weights use 17.1 % of the momentum in the worst trial, those given 14.7 %: asked for are 16 %."""
+    job, design = retuned
+    strict = replace(job, goal=replace(job.goal, require=replace(job.goal.require, momentum_used=0.16)))
+    (held,) = gains(strict)
+    assert design.retuned.part == 1.0
+    assert 0.0 < held.retuned.part < 1.0
+    assert all(v.passed for v in judge_trials(strict, (held,), recover(strict, (held,))))
+    assert not all(v.passed for v in judge_trials(strict, (design,), recover(strict, (design,)))), "the twin: all the way"
+    assert held.retuned.before < held.retuned.after < design.retuned.after
+    assert held.retuned.after == pytest.approx(held.robustness.cases[0].value, rel=5e-3)       # the screen's grid
+    plant, ranges = design.plant, design.robustness.ranges
+    goal, changed = retune(plant, job.goal, ranges, lambda _: False)
+    assert goal == job.goal
+    assert changed.part == 0.0
 
 
 def test_the_same_weights_every_time(retuned) -> None:

@@ -58,7 +58,8 @@ def test_retuning_is_told_before_and_after() -> None:
     said = retuned_words(Retuning({"lean": 0.5, "lean_rate": 2.0}, math.nan, 1.1, 90))
     assert "lean × 0.500, lean rate × 2.00" in said
     assert "from unstable to 1.10" in said
-    assert "none of 90 weights" in retuned_words(Retuning({"lean": 1.0}, 0.9, 0.9, 90))
+    assert "of 90 weights tried none" in retuned_words(Retuning({"lean": 1.0}, 0.9, 0.9, 90, 0.0))
+    assert "75 % of the way" in retuned_words(Retuning({"lean": 0.7}, 0.9, 1.0, 90, 0.75)).replace("\u00a0", " ")
 
 
 def test_a_mismatched_pair_acts_across_the_line_as_far_as_its_momentum_can_turn(answered) -> None:

@@ -106,3 +106,16 @@ def test_the_comparison_of_lqr_and_pid_is_measured(command) -> None:
         for words, value in MEASURED.items():
             # written with three digits: half a unit of the third is at most 0.5 % of the value
             assert float(rows[words][column]) == pytest.approx(value(margins, trials), rel=0.005), (name, words)
+
+
+def test_what_retuning_gains_is_measured(command, tmp_path: Path) -> None:
+    found = re.search(r"bench rig from ([\d.]+) to ([\d.]+), with every trial", README.replace("\n", " "))
+    before, after = (float(number) for number in found.groups())
+    text = (ROOT / "designs" / "bench-rig.yaml").read_text(encoding="utf-8").replace("../plants", str(ROOT / "plants"))
+    (tmp_path / "d.yaml").write_text(text.replace("law: lqr", "law: lqr\n  retune: robust"), encoding="utf-8")
+    answer = command("check", tmp_path / "d.yaml", "--out", tmp_path, "--json").answer()
+    assert answer["passed"]
+    told = answer["gains"]["stances"][0]["retuned"]
+    # three digits: half a unit of the third
+    assert told["worst_disk_before"] == pytest.approx(before, abs=5e-4)
+    assert told["worst_disk_after"] == pytest.approx(after, abs=5e-3)

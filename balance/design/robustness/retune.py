@@ -4,14 +4,14 @@ Free are three factors, on the accepted lean, lean rate and stored momentum; the
 matter.  Each candidate is judged on the deviations found worst so far; the winner's own worst case is then searched and
 joins them, until it holds (a worst-case design by scenarios that are added as they bite; common practice).
 Kept meanwhile: the margins under `require`, modes quick enough for `settling_time`, and a command that a small gyroscope's
-noise does not shake by more than a twentieth of its limit (gain costs nothing in the linear model but that).  Trials are
-run by whoever asks for a verdict: weights that keep margins can ask for more torque or momentum in them.
+noise does not shake by more than a twentieth of its limit (gain costs nothing in the linear model but that).  Weights that
+keep margins can ask for more torque or momentum in the trials: whoever can run them says by `accept` what is too much.
 """
 
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -41,6 +41,8 @@ SETTLED = 4.0
 """Time constants of the slowest mode until 2 % of it is left (e⁻⁴)."""
 SLOWER = 1.5
 """How much slower than as given the slowest mode may become where no settling time is asked for."""
+PARTS = (1.0, 0.75, 0.5, 0.25)
+"""Of the way (in octaves) that are offered to `accept`, one after the other."""
 PENALTY = 10.0
 """Disk margin that a requirement missed by its whole amount costs: more than there is, so no margin buys a miss."""
 DISK = JUDGED.index("disk")
@@ -60,10 +62,17 @@ class _Task:
     shaken: float
 
 
-def retune(plant: Plant, goal: Goal, ranges: tuple[Range, ...]) -> tuple[Goal, Retuning | None]:
+def anything(_: Goal) -> bool:
+    """Accept whatever weights."""
+    return True
+
+
+def retune(plant: Plant, goal: Goal, ranges: tuple[Range, ...],
+           accept: Callable[[Goal], bool] = anything) -> tuple[Goal, Retuning | None]:
     """Return the goal with its weights rescaled, and what that changed; unchanged and None where no law can be made.
 
-    Raises InputError as `design_stance` does for weights that do not fit the states.
+    `accept` has the last word on what this room cannot know (the trials); what it refuses is taken back by quarters toward
+    the weights as given.  Raises InputError as `design_stance` does for weights that do not fit the states.
     """
     given = _law(plant, goal)
     if given is None:
@@ -81,10 +90,15 @@ def retune(plant: Plant, goal: Goal, ranges: tuple[Range, ...]) -> tuple[Goal, R
         if after >= expected * (1.0 - ENOUGH):
             break
         task = replace(task, known=(*task.known, *found))
-    if not after > before:
-        return goal, Retuning(dict.fromkeys(FREE, 1.0), _told(before), _told(before), tried)
-    scales = {name: float(2.0**x) for name, x in zip(FREE, best, strict=True)}
-    return scaled(goal, best), Retuning(scales, _told(before), _told(after), tried)
+    for part in (PARTS if after > before else ()):
+        found_goal = scaled(goal, part * best)
+        if not accept(found_goal):
+            continue
+        if part < 1.0:
+            after, _ = _worst(screen_of(plant, _made(plant, found_goal)), ranges)
+        scales = {name: float(2.0 ** (part * x)) for name, x in zip(FREE, best, strict=True)}
+        return found_goal, Retuning(scales, _told(before), _told(after), tried, part)
+    return goal, Retuning(dict.fromkeys(FREE, 1.0), _told(before), _told(before), tried, 0.0)
 
 
 def scaled(goal: Goal, octaves: Array) -> Goal:
