@@ -40,6 +40,9 @@ motors:
     bandwidth: 300 Hz       # of the driver's current loop
 
 supply: {voltage: 22.2 V, resistance: 50 mohm, peak_current: 40 A, regenerates: true}
+
+# How far the machine as built may differ, either way (0.05: 5 %); the margins must bear all of it at once.
+tolerances: {mass: 0.03, height: 5 mm, inertia: 0.05, torque_constant: 0.08}
 """
 
 DESIGN = """\
@@ -64,6 +67,7 @@ require:
   gain_margin_upper: 2
   delay_margin: 5 ms
   peak_sensitivity: 2
+  worst_disk_margin: 0.4         # within the machine's tolerances
   momentum_used: 0.9             # share of what the wheel can store, in any trial
 
 # Each trial is run outward and inward unless it says `toward:`.
