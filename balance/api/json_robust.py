@@ -31,7 +31,7 @@ def _worst(found: Robustness) -> Tree:
         "loops_tried": found.evaluations,
         "tolerances": [_range(one) for one in found.ranges],
         "margins": [_case(one, units) for one in found.cases],
-        "at_least_disk": json_margins(found.margins),
+        "margins_at_worst_disk": json_margins(found.margins),
     }
 
 

@@ -42,6 +42,7 @@ class WorstLoop:
     loop: Array            # (n,) complex128
     stable: bool
     modulus: float
+    count: Count
 
 
 @dataclass(frozen=True)
@@ -119,4 +120,8 @@ def worst_loop(design: Design) -> WorstLoop | None:
     usable = np.isfinite(loop) & (loop != 0.0)
     loop, frequency = loop[usable], frequency[usable]
     magnitude = 20.0 * np.log10(np.abs(loop))
-    return WorstLoop(frequency, magnitude, phase_degrees(loop, magnitude), loop, found.margins.stable, found.margins.modulus)
+    law = design.law
+    broken = actuator_break(sample_plant(found.worst, law.sample_time, max(law.latency + found.late, 0.0)), law)
+    count = count_turns(broken, LOWEST * math.pi / law.sample_time, frequency, loop)
+    margins = found.margins
+    return WorstLoop(frequency, magnitude, phase_degrees(loop, magnitude), loop, margins.stable, margins.modulus, count)

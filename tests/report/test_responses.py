@@ -12,6 +12,7 @@ from balance.api.load import load
 from balance.design.loop import close, sample_plant
 from balance.goal.trials import Push, TorqueStep, Trial
 from balance.machine.tolerances import Tolerances
+from balance.report.figures.nyquist import count_words
 from balance.report.loops import picture_loop
 from balance.report.responses import PART, disturbed, picture_responses, respond
 from balance.simulate.run import run_one
@@ -89,6 +90,8 @@ def test_the_worst_case_is_the_machine_that_was_found(answered) -> None:
     assert picture_responses(replace(design, robustness=None))[1].worst is None
     loop = picture_loop(design)
     assert loop.worst.stable
+    assert loop.worst.count.found == loop.worst.count.needed == 1
+    assert count_words(loop).endswith("stable, also in the worst case.")
     assert np.abs(1.0 + loop.worst.loop).min() == pytest.approx(loop.worst.modulus, rel=2e-3)    # grid of 1200 points
     assert loop.worst.modulus < loop.modulus
 
@@ -97,7 +100,11 @@ def test_an_unstable_worst_case_is_drawn_as_a_loop_only(root) -> None:
     job = load(str(root / "designs" / "bench-rig.yaml"))
     job = replace(job, machine=replace(job.machine, tolerances=Tolerances(torque_constant=0.8)))
     design = gains(job)[0]
-    assert not picture_loop(design).worst.stable
+    worst = picture_loop(design).worst
+    assert not worst.stable
+    assert worst.count.sure
+    assert worst.count.found != worst.count.needed, "Nyquist says so too"
+    assert "in the worst case NOT stable" in count_words(picture_loop(design))
     assert all(one.worst is None for one in picture_responses(design))
     broken = replace(design, margins=replace(design.margins, stable=False))
     assert picture_responses(broken) == ()

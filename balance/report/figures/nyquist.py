@@ -10,7 +10,7 @@ from matplotlib.figure import Figure
 from matplotlib.patches import Circle
 
 from balance.report.figures.palette import DASHED, DOTTED, INK, MIXED, NAVY, PINE, RUST, SLATE, SOLID, WIDTH, ink, sheet
-from balance.report.loops import LoopPicture, WorstLoop
+from balance.report.loops import Count, LoopPicture, WorstLoop
 
 TALL = 4.6
 """Inches."""
@@ -54,14 +54,25 @@ def worst_case(axes: Axes, worst: WorstLoop) -> None:
 
 
 def count_words(picture: LoopPicture) -> str:
-    """Say the stability count in two lines."""
-    count = picture.count
-    found = f"found {count.found}".replace("-", "−") if count.sure else "not countable on this response"
-    end = "stable" if picture.stable else "NOT stable"
+    """Say the stability count in two lines, that of the worst case beside it."""
     worst = picture.worst
-    also = "" if worst is None else ", also in the worst case" if worst.stable is picture.stable else \
-        "; in the worst case it is not"
-    return f"Counter-clockwise turns about −1: needed {count.needed}, {found}.\nThe closed loop is {end}{also}."
+    said = f"Counter-clockwise turns about −1: needed {picture.count.needed}, {found(picture.count)}"
+    end = f"The closed loop is {verdict(picture.stable)}"
+    if worst is None:
+        return f"{said}.\n{end}."
+    needed = f"needed {worst.count.needed}, " if worst.count.needed != picture.count.needed else ""
+    also = ", also in the worst case" if worst.stable is picture.stable else f"; in the worst case {verdict(worst.stable)}"
+    return f"{said}; worst case {needed}{found(worst.count)}.\n{end}{also}."
+
+
+def found(count: Count) -> str:
+    """Say what was counted."""
+    return f"found {count.found}".replace("-", "−") if count.sure else "not countable"
+
+
+def verdict(stable: bool) -> str:
+    """Say whether a loop is stable."""
+    return "stable" if stable else "NOT stable"
 
 
 def frame(axes: Axes, picture: LoopPicture) -> None:
