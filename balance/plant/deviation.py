@@ -1,6 +1,6 @@
 """The plant of a machine that is not quite as its file says: the same model with some of its numbers moved.
 
-What the law knows (allotment, levelling, momentum row, limits) stays that of the file: the law was made for it.
+How the law shares its command (allotment, levelling) and the limits stay those of the file: the law was made for it.
 """
 
 from __future__ import annotations
@@ -16,6 +16,7 @@ from balance.kernel import layout as at
 from balance.plant.build import about_balance, balanced, free_inertia
 from balance.plant.linear import linear_model
 from balance.plant.record import Plant, Unit
+from balance.plant.sharing import momentum_row
 
 Array = NDArray[np.float64]
 
@@ -35,8 +36,10 @@ def deviated(plant: Plant, by: Mapping[str, float]) -> Plant:
     push = np.array([1.0 + by.get(unit_key(plant, i, "torque_constant"), 0.0) for i in range(len(plant.units))])
     model = replace(model, B=model.B * push)
     units = tuple(_unit(plant.units[i], rows[i], by) for i in range(len(rows)))
+    first = [model.states.index(s) for s in model.states if s.split(".")[-1] in ("wheel_speed", "gimbal_angle")]
     return replace(plant, units=units, model=model, stiffness=stiffness, inertia_free=free_inertia(inertia, rows),
-                   balanced_lean=float(body[at.BALANCED]), body_parameters=body, unit_parameters=rows)
+                   momentum_row=momentum_row(rows, first, len(model.states)), balanced_lean=float(body[at.BALANCED]),
+                   body_parameters=body, unit_parameters=rows)
 
 
 def unit_key(plant: Plant, i: int, word: str) -> str:

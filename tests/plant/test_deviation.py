@@ -71,6 +71,7 @@ def test_the_flywheels_momentum_and_the_pairs_mirror() -> None:
     plant, _ = shipped("quay-gyros", "on-left-right")
     rate = plant.model.states.index("gimbal_rate")
     moved = deviated(plant, {"flywheel_momentum": -0.03, "pair_angle": 0.1})
+    assert np.allclose(moved.momentum_row, 0.97 * np.cos(0.1) * plant.momentum_row, rtol=SAME)
     assert moved.model.A[1, rate] == pytest.approx(0.97 * np.cos(0.1) * plant.model.A[1, rate], rel=SAME)
     servo = deviated(plant, {"bandwidth": -0.25})
     assert servo.model.A[rate, rate] == pytest.approx(0.75 * plant.model.A[rate, rate], rel=SAME)
