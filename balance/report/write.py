@@ -97,7 +97,7 @@ def _margins(machine: Machine, designs: tuple[Design, ...], pictures: tuple[Loop
             parts.append(html.table(worst) if len(designs) == 1 else html.folded(title, html.table(worst), i == 0))
         across = across_words(design.plant, machine.tolerances)
         if across:
-            parts.append(html.paragraph(f"{name}: {across}"))
+            parts.append(html.paragraph(f"{name}: {across}", "note"))
         if design.retuned is not None:
             parts.append(html.paragraph(f"{name}: {retuned_words(design.retuned)}"))
     shared = compared(designs)
