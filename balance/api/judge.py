@@ -11,7 +11,7 @@ from balance.design.records import Design
 from balance.goal.goal import Goal, Requirements
 from balance.simulate.records import TrialResult
 
-ON_TRIALS = ("momentum_used", "peak_lean", "settling_time", "friction_needed", "standing_swing")
+ON_TRIALS = ("momentum_used", "peak_lean", "settling_time", "friction_needed", "standing_swing", "bus_voltage")
 """Requirements that only a trial can answer."""
 
 

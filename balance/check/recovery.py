@@ -64,6 +64,10 @@ def _worst_cases(goal: Goal, design: Design, trials: Sequence[TrialResult]) -> l
     if friction is not None:
         verdicts.append(_worst("friction_needed", trials, lambda r: r.friction_needed, "", friction, lambda r, v, lim:
                                f"{_which(r)} needs {v:.2f} under the feet, {v - lim:.2f} too much: they would slip"))
+    if require.bus_voltage is not None and plant.supply_parameters is not None:
+        verdicts.append(_worst("bus_voltage", trials, lambda r: r.peak_bus_voltage, "V", require.bus_voltage,
+                               lambda r, v, lim: f"{_which(r)} pumps the bus {v - lim:.2g} V too high: braking wheels give "
+                                                 "back more than supply, capacitor and brake resistor take"))
     if require.standing_swing is not None:
         verdicts.append(_worst("standing_swing", trials, lambda r: r.standing_swing, "rad", require.standing_swing,
                                lambda r, v, lim: f"{_which(r)} keeps swinging {math.degrees(v - lim):.2g}° too far"

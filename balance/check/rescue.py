@@ -6,6 +6,7 @@ from collections.abc import Callable
 from dataclasses import replace
 
 import numpy as np
+from numpy.typing import NDArray
 
 from balance.design.records import Design
 from balance.goal.goal import Goal
@@ -17,13 +18,17 @@ from balance.kernel.layout import (
     GIMBAL_INERTIA,
     KIND,
     MOMENTUM,
+    OVERVOLTAGE,
     RATE_LIMIT,
+    SOURCE_AMPS,
     SPEED_LIMIT,
     TORQUE_LIMIT,
     WHEEL,
 )
 from balance.plant.record import Plant
 from balance.simulate.run import run_one
+
+Array = NDArray[np.float64]
 
 MOST = 4.0
 """Larger factors are no advice any more: another stabiliser is needed."""
@@ -62,7 +67,7 @@ def more_momentum(design: Design, factor: float) -> Design:
                 D[j] *= factor
                 B[:, j] *= factor
     changed = replace(law, allotment=allotment, levelling=levelling, D=D, B=B)
-    return replace(design, plant=_with(design.plant, rows, factor), law=changed)
+    return replace(design, plant=_with(design.plant, rows, factor, 1.0), law=changed)
 
 
 def more_torque(design: Design, factor: float) -> Design:
@@ -72,7 +77,7 @@ def more_torque(design: Design, factor: float) -> Design:
         places = (TORQUE_LIMIT, CURRENT_LIMIT) if row[KIND] == WHEEL else (RATE_LIMIT, DRIVE_TORQUE)
         row[list(places)] *= factor
     changed = replace(law, output_limit=law.output_limit * factor, input_limits=law.input_limits * factor)
-    return replace(design, plant=_with(design.plant, rows, 1.0), law=changed)
+    return replace(design, plant=_with(design.plant, rows, 1.0, factor), law=changed)
 
 
 def _both(design: Design, factor: float) -> Design:
@@ -102,7 +107,13 @@ def _gimbal_states(plant: Plant, i: int) -> tuple[str, str]:
     return plant.model.states[where], plant.model.states[where + 1]
 
 
-def _with(plant: Plant, rows: np.ndarray[tuple[int, ...], np.dtype[np.float64]], factor: float) -> Plant:
-    """Return the plant with other unit rows and `factor` times the momentum capacity."""
-    units = tuple(replace(u, momentum_capacity=u.momentum_capacity * factor) for u in plant.units)
-    return replace(plant, unit_parameters=rows, units=units, momentum_capacity=plant.momentum_capacity * factor)
+def _with(plant: Plant, rows: Array, momentum: float, torque: float) -> Plant:
+    """Return the plant with other unit rows, `momentum` times its capacity, and a supply to match."""
+    units = tuple(replace(u, momentum_capacity=u.momentum_capacity * momentum) for u in plant.units)
+    supply = plant.supply_parameters
+    if supply is not None:
+        supply = supply.copy()
+        supply[[BUS_VOLTAGE, OVERVOLTAGE]] *= momentum
+        supply[SOURCE_AMPS] *= torque
+    return replace(plant, unit_parameters=rows, units=units, momentum_capacity=plant.momentum_capacity * momentum,
+                   supply_parameters=supply)

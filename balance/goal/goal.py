@@ -106,6 +106,7 @@ class Requirements:
     peak_lean: float | None = quantity("angle", above=0, default=None)
     settling_time: float | None = quantity("time", above=0, default=None)
     friction_needed: float | None = number(above=0, default=None)
+    bus_voltage: float | None = quantity("voltage", above=0, default=None, says="highest in any trial")
     standing_swing: float | None = quantity("angle", above=0, default=None,
                                             says="amplitude of a lean that never dies out")
     offset_error: float | None = quantity("length", above=0, default=None,

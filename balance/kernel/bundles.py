@@ -85,7 +85,9 @@ SPARE = 9         # its next memory
 MEASURED = 10
 LINE = 11         # first: the law's limited line command; second: time reached
 SPARE_METRICS = 12
-NUMBERS = 13
+SERVO_ASKED = 13  # rad: angle a servo has been asked for, from its start
+SERVO_SENT = 14   # rad: angle its drive has followed to
+NUMBERS = 15
 
 # rows of Work.flags
 HELD = 0          # 1, -1: the unit's gimbal is on its upper, lower stop

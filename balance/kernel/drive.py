@@ -15,6 +15,7 @@ from balance.kernel.equations import gimbal_terms
 from balance.kernel.layout import (
     ANGLE_STOP,
     BACK_EMF,
+    BEHIND_PLAY,
     BUS_VOLTAGE,
     CURRENT_LAG,
     CURRENT_LIMIT,
@@ -22,9 +23,11 @@ from balance.kernel.layout import (
     GIMBAL_INERTIA,
     GIMBAL_SERVO,
     KIND,
+    MOTOR,
     OWN_INERTIA,
     RATE_LIMIT,
     RESISTANCE,
+    ROLE,
     SPEED_LIMIT,
     TORQUE_LIMIT,
     TORQUE_PER_AMP,
@@ -70,7 +73,7 @@ def current_target(units: Array, i: int, speed: float, command: float) -> tuple[
             met = outcome.TORQUE
         torque = units[i, TORQUE_LIMIT] if torque > 0.0 else -units[i, TORQUE_LIMIT]
     room = units[i, SPEED_LIMIT] - speed if torque > 0.0 else units[i, SPEED_LIMIT] + speed
-    cap = max(units[i, OWN_INERTIA] * limiter_gain(units, i) * room, 0.0)
+    cap = max((units[i, OWN_INERTIA] + units[i, BEHIND_PLAY]) * limiter_gain(units, i) * room, 0.0)
     if abs(torque) > cap:
         met = outcome.SPEED
         torque = cap if torque > 0.0 else -cap
@@ -128,6 +131,8 @@ def unit_input(units: Array, i: int, first: float, second: float, lean_rate: flo
     (its second state is mechanical and belongs to `equations`).
     """
     if units[i, KIND] == WHEEL:
+        if units[i, ROLE] != MOTOR:
+            return 0.0, 0.0, outcome.NO_LIMIT
         target, met = current_target(units, i, first, command)
         if units[i, CURRENT_LAG] == np.inf:
             return units[i, TORQUE_PER_AMP] * target, 0.0, met
@@ -147,9 +152,12 @@ def torque_available(units: Array, i: int, first: float, share: float, sign: flo
     rad/s of gimbal rate.
     """
     if units[i, KIND] == WHEEL:
+        if units[i, ROLE] != MOTOR:
+            return 0.0
         way = 1.0 if sign * share >= 0.0 else -1.0
         room = units[i, SPEED_LIMIT] - way * first
-        cap = min(units[i, TORQUE_LIMIT], max(units[i, OWN_INERTIA] * limiter_gain(units, i) * room, 0.0))
+        turned = units[i, OWN_INERTIA] + units[i, BEHIND_PLAY]
+        cap = min(units[i, TORQUE_LIMIT], max(turned * limiter_gain(units, i) * room, 0.0))
         low, high = current_window(units, i, first)
         current = high if way * units[i, TORQUE_PER_AMP] > 0.0 else -low
         return float(abs(share) * max(min(cap, current * abs(units[i, TORQUE_PER_AMP])), 0.0))

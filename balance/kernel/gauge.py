@@ -13,6 +13,7 @@ from balance.kernel.feet import foot_forces
 from balance.kernel.layout import (
     BACK_EMF,
     BALANCED,
+    BUS_VOLTAGE,
     COUNT,
     COUPLING,
     E_GXS0,
@@ -20,16 +21,20 @@ from balance.kernel.layout import (
     GIMBAL_INERTIA,
     KIND,
     MOMENTUM,
+    MOTOR,
     OWN_INERTIA,
     RESISTANCE,
+    ROLE,
+    TAKES_BACK,
     WHEEL,
 )
+from balance.kernel.supply import bus_row, bus_voltage, motor_power
 
 Array = NDArray[np.float64]
 Flags = NDArray[np.int64]
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
 def line_torque(X: Array, dX: Array, units: Array) -> float:
     """Return T = dq/dt in N·m: the torque about the line all units take from the body."""
     total = 0.0
@@ -42,7 +47,7 @@ def line_torque(X: Array, dX: Array, units: Array) -> float:
     return total
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
 def line_momentum(X: Array, units: Array) -> float:
     """Return q in N·m·s: the momentum about the line stored in all units (a gimbal at angle zero stores none)."""
     total = 0.0
@@ -57,7 +62,7 @@ def line_momentum(X: Array, units: Array) -> float:
     return total
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
 def momentum_slope(angle: float, units: Array, i: int) -> float:
     """Return dq/dγ in N·m·s/rad of all rotors of a gimballed unit; in a mirrored pair the e·s₀ parts cancel."""
     lead = 0.0 if units[i, COUNT] > 1.5 else units[i, E_S0]
@@ -65,7 +70,7 @@ def momentum_slope(angle: float, units: Array, i: int) -> float:
     return float(units[i, COUNT] * units[i, MOMENTUM] * slope)
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
 def available(X: Array, units: Array, sign: float) -> float:
     """Return the torque about the line in N·m all units could give now toward `sign`."""
     total = 0.0
@@ -78,7 +83,7 @@ def available(X: Array, units: Array, sign: float) -> float:
     return total
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
 def bus_power(X: Array, dX: Array, units: Array) -> tuple[float, float]:
     """Return (electrical power of wheels plus mechanical power of gimbal drives in W, largest |current| in A).
 
@@ -90,7 +95,7 @@ def bus_power(X: Array, dX: Array, units: Array) -> tuple[float, float]:
         a, b = X[2 + 2 * i], X[3 + 2 * i]
         if units[i, KIND] == WHEEL:
             power += b * (units[i, RESISTANCE] * b + units[i, BACK_EMF] * a)
-            current = max(current, abs(b))
+            current = max(current, abs(b) if units[i, ROLE] == MOTOR else 0.0)
         else:
             _, _, coupling, back = gimbal_terms(i, a, b, X[1], units)
             drive = units[i, GIMBAL_INERTIA] * dX[3 + 2 * i] + coupling * dX[1] - back
@@ -98,7 +103,7 @@ def bus_power(X: Array, dX: Array, units: Array) -> tuple[float, float]:
     return power, current
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
 def watch(t: float, h: float, X: Array, dX: Array, body: Array, units: Array, met: Flags, metrics: Array,
           first: Array) -> None:
     """Gather the metrics of one sub-step of length h that starts at t (h = 0: only the peaks)."""
@@ -125,7 +130,21 @@ def watch(t: float, h: float, X: Array, dX: Array, body: Array, units: Array, me
         metrics[outcome.SATURATED] += h
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+def watch_bus(X: Array, units: Array, live: Array, metrics: Array) -> None:
+    """Gather the peaks of the bus: voltage, sag below the healthy supply's own voltage, current out of the supply."""
+    bus = bus_row(units)
+    if bus < 0:
+        return
+    power = motor_power(X, units)
+    volts = bus_voltage(X, power, live, bus)
+    metrics[outcome.PEAK_BUS] = max(metrics[outcome.PEAK_BUS], volts)
+    metrics[outcome.DEEPEST_SAG] = max(metrics[outcome.DEEPEST_SAG], units[bus, BUS_VOLTAGE] - volts)
+    if units[bus, TAKES_BACK] == 1.0 or (X[2 + 2 * bus] <= 0.0 and power >= 0.0):
+        metrics[outcome.PEAK_SUPPLY] = max(metrics[outcome.PEAK_SUPPLY], power / volts)
+
+
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
 def note(t: float, stored: float, row: int, limit: int, first: Array) -> None:
     """Keep the time and the stored momentum when a limit was met first."""
     if t < first[row, limit, 0]:

@@ -13,7 +13,7 @@ from numpy.typing import NDArray
 from balance.kernel import outcome
 from balance.kernel.drive import LIMITER_GAIN, unit_input
 from balance.kernel.equations import derivative
-from balance.kernel.gauge import watch
+from balance.kernel.gauge import watch, watch_bus
 from balance.kernel.layout import (
     ANGLE_STOP,
     BALANCED,
@@ -27,14 +27,23 @@ from balance.kernel.layout import (
     INERTIA,
     KIND,
     MASS,
+    MOTOR,
     OFFSET,
+    OWN_INERTIA,
+    PARTNER,
     RATE_LAG,
+    ROLE,
     STIFF_COS,
     STIFF_SIN,
+    TAKES_BACK,
+    TOOTH_STIFFNESS,
+    TOOTHED,
     TORQUE_PER_AMP,
     TOUCH_DOWN,
     WHEEL,
 )
+from balance.kernel.supply import CLAMP_GAIN, bus_row, put_voltage, share_bus
+from balance.kernel.teeth import press_teeth
 
 Array = NDArray[np.float64]
 Flags = NDArray[np.int64]
@@ -47,13 +56,24 @@ OF_LAG = 0.25
 
 
 @njit(cache=True, error_model="numpy")
+def flank_frequency(units: Array, i: int) -> float:
+    """Return how fast toothed wheel i and its motor swing on touching flanks in rad/s."""
+    motor = int(units[i, PARTNER])
+    return float(np.sqrt(units[i, TOOTH_STIFFNESS] * (1.0 / units[i, OWN_INERTIA] + 1.0 / units[motor, OWN_INERTIA])))
+
+
+@njit(cache=True, error_model="numpy")
 def longest_step(units: Array) -> float:
     """Return the longest sub-step in s: 0.5 ms, or OF_LAG of the fastest lag's time constant."""
     h = min(LONGEST_STEP, OF_LAG / LIMITER_GAIN)
     for i in range(units.shape[0]):
         lag = 0.0
-        if units[i, KIND] == WHEEL:
+        if units[i, KIND] == WHEEL and units[i, ROLE] == MOTOR:
             lag = units[i, CURRENT_LAG]
+        elif units[i, KIND] == WHEEL and units[i, ROLE] == TOOTHED:
+            lag = flank_frequency(units, i)
+        elif units[i, KIND] == WHEEL:
+            lag = CLAMP_GAIN if units[i, TAKES_BACK] == 0.0 else 0.0
         elif units[i, KIND] == GIMBAL_SERVO:
             lag = units[i, RATE_LAG]
         if np.isfinite(lag) and lag > 0.0:
@@ -61,7 +81,7 @@ def longest_step(units: Array) -> float:
     return h
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
 def disturbance_at(t: float, active: Array, count: int) -> float:
     """Return the torque about the line in N·m at time t from the first `count` rows of `active`."""
     total = 0.0
@@ -73,7 +93,7 @@ def disturbance_at(t: float, active: Array, count: int) -> float:
     return total
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
 def vary(t: float, active: Array, count: int, base: Array, body: Array) -> None:
     """Put what the rows of `active` make of the body at time t.
 
@@ -92,12 +112,21 @@ def vary(t: float, active: Array, count: int, base: Array, body: Array) -> None:
     body[STIFF_COS], body[OFFSET] = base[STIFF_COS] + across, base[OFFSET] + across / weight
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
 def rates(X: Array, torque: float, commands: Array, body: Array, live: Array, met: Flags, inputs: Array,
           slopes: Array, out: Array) -> None:
     """Fill `out` with dX/dt under held commands and a torque about the line; `met` with each unit's limit."""
+    bus = bus_row(live)
+    power = put_voltage(X, bus, live) if bus >= 0 else 0.0
+    geared = 0
     for i in range(live.shape[0]):
         inputs[i], slopes[i], met[i] = unit_input(live, i, X[2 + 2 * i], X[3 + 2 * i], X[1], commands[i])
+        if live[i, KIND] == WHEEL and live[i, ROLE] == TOOTHED:
+            geared = 1
+    if bus >= 0:
+        share_bus(X, power, bus, live, slopes, met, inputs)
+    if geared == 1:
+        press_teeth(X, live, inputs, slopes)
     derivative(X, inputs, torque, body, live, out)
     for i in range(live.shape[0]):
         if live[i, KIND] == WHEEL:
@@ -108,7 +137,7 @@ def rates(X: Array, torque: float, commands: Array, body: Array, live: Array, me
                 met[i] = outcome.DRIVE
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
 def march(X: Array, begin: float, h: float, steps: int, commands: Array, active: Array, count: int, varying: int,
           base: Array, body: Array, units: Array, live: Array, held: Flags, met: Flags, inputs: Array, slopes: Array,
           rate: Array, total: Array, probe: Array, metrics: Array, first: Array) -> tuple[int, int]:
@@ -134,6 +163,7 @@ def march(X: Array, begin: float, h: float, steps: int, commands: Array, active:
             if stage == 0:
                 settle_currents(X, inputs, live, met, held)
                 watch(t, h, X, rate, body, units, met, metrics, first)
+                watch_bus(X, units, live, metrics)
             weight = h / 3.0 if 0 < stage < 3 else h / 6.0
             for j in range(X.size):
                 total[j] += weight * rate[j]
@@ -147,17 +177,17 @@ def march(X: Array, begin: float, h: float, steps: int, commands: Array, active:
     return steps, outcome.RAN
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
 def settle_currents(X: Array, inputs: Array, live: Array, met: Flags, held: Flags) -> None:
     """Show the current of wheels without a current lag (no state of its own), and that a held gimbal is limited."""
     for i in range(live.shape[0]):
-        if live[i, KIND] == WHEEL and live[i, CURRENT_LAG] == np.inf:
+        if live[i, KIND] == WHEEL and live[i, ROLE] == MOTOR and live[i, CURRENT_LAG] == np.inf:
             X[3 + 2 * i] = inputs[i] / live[i, TORQUE_PER_AMP]
         if held[i] != 0:
             met[i] = outcome.STOP
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
 def beyond_stop(X: Array, units: Array, held: Flags) -> int:
     """Return the first gimballed unit that is past its stop and not held there, or -1."""
     for i in range(units.shape[0]):
@@ -166,7 +196,7 @@ def beyond_stop(X: Array, units: Array, held: Flags) -> int:
     return -1
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
 def ended(X: Array, body: Array) -> int:
     """Return how the trial has ended in this state (RAN: it has not)."""
     lean = X[0] - body[BALANCED]
@@ -179,7 +209,7 @@ def ended(X: Array, body: Array) -> int:
     return outcome.RAN
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
 def jump(column: int, X: Array, body: Array, live: Array, inputs: Array, rest: Array, push: Array) -> None:
     """Fill `push` with the change of all rates per impulse: about the line (column -1), or in input `column`.
 

@@ -44,8 +44,32 @@ CURRENT_LIMIT = 10 # A
 CURRENT_LAG = 11   # rad/s: bandwidth of the current loop
 SPEED_LIMIT = 12   # rad/s, relative to the body
 TORQUE_LIMIT = 13  # N·m at the wheel
+STICTION = 14      # N·m: what breaks a standing wheel loose; 0: no more than its Coulomb drag
+BEHIND_PLAY = 15   # kg·m²: turns with the wheel behind the play of its gear, not part of OWN_INERTIA
 COUPLING_U = 16    # kg·m²: (a·u)(I + s N J_r) at θ = 0
 COUPLING_W = 17    # kg·m²: (a·w)(I + s N J_r)
+PLAY = 18          # rad at the wheel, from flank to flank; 0: motor and wheel turn as one
+TOOTH_STIFFNESS = 19  # N·m/rad at the wheel
+TOOTH_DAMPING = 20    # N·m·s/rad
+ROTOR_INERTIA = 21    # kg·m²: N² J_r, the part of OWN_INERTIA on the motor's side of the play
+ROTOR_PART = 22       # s N J_r/(I + s N J_r): the part of COUPLING on the motor's side
+ROLE = 23          # one of the roles below
+
+# roles of a row of kind WHEEL; the last two are not stabilisers but stand behind them (`simulate.setup.kernel_units`)
+MOTOR = 0          # a wheel with its motor; states (Ω, i)
+TOOTHED = 1        # a wheel behind a gear with play; states (Ω, gap: how far its motor is ahead)
+BUS = 2            # the supply; states (energy above the open-circuit voltage in J, energy burnt in the brake resistor)
+
+# a toothed wheel beside what a wheel has (its row has no motor: 0 at TORQUE_PER_AMP)
+PARTNER = 12       # row of its motor
+
+# the supply: COUPLING 0, OWN_INERTIA 1, so that the equations of motion pass it by; BUS_VOLTAGE is its open-circuit voltage
+SOURCE_OHMS = 12
+SOURCE_AMPS = 13   # inf: no limit
+TAKES_BACK = 18    # 1: takes current back
+CAPACITANCE = 19   # F
+OVERVOLTAGE = 20   # V: the drives stop pumping; inf: they never do
+BRAKE_OHMS = 21    # 0: none
 
 # gimballed flywheel; `COUNT` 1: single, 2: mirrored pair (one coordinate γ, second gimbal at -γ with -H)
 E_S0 = 1           # e·s₀
@@ -69,4 +93,6 @@ GXS0_U = 18        # u·(g × s₀)
 GXS0_W = 19
 AXIS_U = 20        # u·g
 AXIS_W = 21
+RESOLUTION = 22    # rad: step of a servo's commanded angle
+DEAD_BAND = 23     # rad: a servo rests while its commanded angle is nearer than this
 UNIT_SIZE = 24

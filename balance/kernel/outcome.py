@@ -24,6 +24,9 @@ END_TIME = 9         # s
 END_LEAN = 10        # rad
 END_MOMENTUM = 11    # N·m·s
 SAMPLES = 12         # samples taken, the start included
+PEAK_BUS = 13        # V, highest bus voltage
+DEEPEST_SAG = 14     # V, most by which the bus stood below the open-circuit voltage
+PEAK_SUPPLY = 15     # A, from the supply
 METRIC_SIZE = 16
 
 # limits
@@ -36,7 +39,10 @@ RATE = 5             # gimbal rate limit
 DRIVE = 6            # gimbal drive's strength
 STOP = 7             # gimbal stop
 OUTPUT = 8           # the law's limit of its line command (last row)
-LIMITS = 9
+SUPPLY = 9           # the supply gives no more current
+OVERVOLTAGE = 10     # the bus takes no more of what braking gives back
+FORCED = 11          # back-EMF above the bus voltage: the wheel is braked, whatever is asked
+LIMITS = 12
 
 # columns of a recorded sample
 TIME = 0

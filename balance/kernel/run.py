@@ -25,6 +25,8 @@ from balance.kernel.bundles import (
     NEXT_JUMP,
     PROBE,
     RATE,
+    SERVO_ASKED,
+    SERVO_SENT,
     SPARE,
     TORQUES_ON,
     VARYING,
@@ -35,10 +37,24 @@ from balance.kernel.bundles import (
 )
 from balance.kernel.gauge import available, line_momentum, line_torque, note
 from balance.kernel.integrate import jump
-from balance.kernel.layout import BALANCED, GRAVITY, KIND, MASS, OFFSET, STIFF_COS, WHEEL
+from balance.kernel.layout import (
+    BALANCED,
+    BUS_VOLTAGE,
+    DEAD_BAND,
+    GIMBAL_SERVO,
+    GRAVITY,
+    KIND,
+    MASS,
+    OFFSET,
+    RATE_LIMIT,
+    RESOLUTION,
+    STIFF_COS,
+    WHEEL,
+)
 from balance.kernel.sensing import digitised, scrambled
 from balance.kernel.stops import rates_now, release_stops, run_piece
-from balance.kernel.tick import law_tick, measure, reads_sensor, share_out
+from balance.kernel.supply import bus_row
+from balance.kernel.tick import law_tick, measure, reads_sensor, servo_steps, share_out
 
 Array = NDArray[np.float64]
 
@@ -65,7 +81,7 @@ def run_trial(X: Array, units: Array, law: LawArrays, events: Events, work: Work
     return end
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
 def tick(X: Array, start: float, sample: int, units: Array, law: LawArrays, events: Events, work: Work,
          output: Output) -> None:
     """Take a sample and compute the command that acts `latency` later; until the release it is held at zero."""
@@ -94,14 +110,19 @@ def tick(X: Array, start: float, sample: int, units: Array, law: LawArrays, even
     short = share_out(limited, numbers[MEASURED], law.allotment, law.levelling, law.input_limits, law.line_share,
                       queue[0])
     for j in range(law.allotment.size):
-        queue[0, j] = digitised(queue[0, j], law.input_steps[j], np.inf) if free else 0.0
+        asked = digitised(queue[0, j], law.input_steps[j], np.inf) if free else 0.0
+        if free and units[j, KIND] == GIMBAL_SERVO and units[j, RESOLUTION] + units[j, DEAD_BAND] > 0.0:
+            asked, numbers[SERVO_ASKED, j], numbers[SERVO_SENT, j] = servo_steps(
+                asked, law.sample_time, numbers[SERVO_ASKED, j], numbers[SERVO_SENT, j], units[j, RESOLUTION],
+                units[j, DEAD_BAND], units[j, RATE_LIMIT])
+        queue[0, j] = asked
     numbers[LINE, 0] = limited
     if free and (short or abs(v) > most * (1.0 + 1e-9)):
         work.flags[AT, CLIPPED] = 1
         note(start, stored, units.shape[0], outcome.OUTPUT, output.first)
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
 def run_period(X: Array, start: float, stop: float, sample: int, sample_time: float, units: Array,
                events: Events, work: Work, output: Output) -> int:
     """Integrate from one sample to the next, piece by piece between sudden changes; return how it ended."""
@@ -110,7 +131,7 @@ def run_period(X: Array, start: float, stop: float, sample: int, sample_time: fl
     t, end = start, outcome.RAN
     while t < stop - tiny and end == outcome.RAN:
         until = min(stop, newest_due(t + tiny, work))
-        change(X, t, tiny, events, work)
+        change(X, t, tiny, units, events, work)
         if work.flags[AT, NEXT_BREAK] < events.breaks.size:
             until = min(until, events.breaks[work.flags[AT, NEXT_BREAK]])
         if t == start and output.trace.shape[0] > 0:
@@ -125,7 +146,7 @@ def run_period(X: Array, start: float, stop: float, sample: int, sample_time: fl
     return end
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
 def newest_due(t: float, work: Work) -> float:
     """Put what the newest command that acts at t asks of each unit; return when the next one takes over, in s.
 
@@ -142,7 +163,7 @@ def newest_due(t: float, work: Work) -> float:
     return next_one
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
 def missed(start: float, sample: int, events: Events) -> bool:
     """Return whether the sample is one that the controller does not take."""
     for i in range(events.spells.shape[0]):
@@ -151,7 +172,7 @@ def missed(start: float, sample: int, events: Events) -> bool:
     return False
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
 def lateness(start: float, sample: int, events: Events) -> float:
     """Return by how much in s the command of this sample is later than the latency."""
     most = 0.0
@@ -161,14 +182,14 @@ def lateness(start: float, sample: int, events: Events) -> float:
     return float(most * scrambled(events.seed + 1, 2 * sample + 1)) if most > 0.0 else 0.0
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
 def in_spell(t: float, spell: Array) -> bool:
     """Return whether a spell is on, to a ten-thousandth of a millisecond."""
     return bool(spell[outcome.START] <= t + 1e-7 < spell[outcome.END])
 
 
-@njit(cache=True, error_model="numpy")
-def change(X: Array, t: float, tiny: float, events: Events, work: Work) -> None:
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+def change(X: Array, t: float, tiny: float, units: Array, events: Events, work: Work) -> None:
     """Apply what changes suddenly at t: release, kicks and shifts due, and which torques act from now on."""
     at = work.flags[AT]
     if events.release > 0.0 and abs(t - events.release) <= tiny:
@@ -195,9 +216,24 @@ def change(X: Array, t: float, tiny: float, events: Events, work: Work) -> None:
                     at[VARYING] = 1
             on += 1
     at[TORQUES_ON] = on
+    weaken_supply(t + tiny, units, events, work)
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+def weaken_supply(t: float, units: Array, events: Events, work: Work) -> None:
+    """Let the supply's own voltage fall to what is left of it at t."""
+    bus = bus_row(units)
+    if bus < 0:
+        return
+    left = 1.0
+    for i in range(events.spells.shape[0]):
+        spell = events.spells[i]
+        if spell[outcome.WHAT] == outcome.SUPPLY_LEFT and spell[outcome.START] <= t < spell[outcome.END]:
+            left *= spell[outcome.VALUE]
+    work.live[bus, BUS_VOLTAGE] = left * units[bus, BUS_VOLTAGE]
+
+
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
 def change_body(X: Array, row: Array, work: Work) -> None:
     """Add what changes of the body; what comes at rest takes its share of the momentum about the line.
 
@@ -209,7 +245,7 @@ def change_body(X: Array, row: Array, work: Work) -> None:
     kick(X, -row[outcome.AT_REST] * X[1], work)
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
 def kick(X: Array, impulse: float, work: Work) -> None:
     """Let an angular impulse about the line in N·m·s act at once: rates jump by M⁻¹·[impulse, 0, …]; 0: nothing."""
     if impulse == 0.0:
@@ -222,7 +258,7 @@ def kick(X: Array, impulse: float, work: Work) -> None:
         X[place] += impulse * step[place]
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
 def write(X: Array, t: float, units: Array, work: Work, out: Array) -> None:
     """Record one sample in the row `out`."""
     release_stops(X, t, units, work)
@@ -238,7 +274,7 @@ def write(X: Array, t: float, units: Array, work: Work, out: Array) -> None:
         out[outcome.TRACE_SIZE + i - 2] = X[i]
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
 def finish(X: Array, sample: int, units: Array, work: Work, output: Output) -> None:
     """Record the end state and the last peaks."""
     metrics, lean, stored = output.metrics, X[0] - work.body[BALANCED], line_momentum(X, units)

@@ -26,7 +26,7 @@ def measure(X: Array, acceleration: float, body: Array, places: Places, sensor: 
             y[j] = X[places[j]] - body[BALANCED] if places[j] == 0 else X[places[j]]
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
 def reads_sensor(places: Places) -> bool:
     """Return whether any measurement is the inertial sensor's."""
     found = False
@@ -89,8 +89,23 @@ def share_out(v: float, y: Array, allotment: Array, levelling: Array, most: Arra
     return limited
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
 def _room(missing: float, line_share: float, most: float, given: float) -> float:
     """Return the torque about the line a unit can still add toward `missing`, as a magnitude."""
     way = 1.0 if missing * line_share >= 0.0 else -1.0
     return abs(line_share) * max(most - way * given, 0.0)
+
+
+@njit(cache=True, error_model="numpy", forceinline=True)
+def servo_steps(rate: float, sample_time: float, asked: float, sent: float, resolution: float, dead_band: float,
+                most: float) -> tuple[float, float, float]:
+    """Return (rate its drive turns at, angle asked for, angle sent) of a position servo in one sample.
+
+    The commanded rate adds up to an angle, which the servo knows in whole steps of its resolution and follows only
+    where it is further away than its dead band, no faster than `most`: rounding, then play. All in rad and rad/s.
+    """
+    asked += rate * sample_time
+    told = resolution * np.floor(asked / resolution + 0.5) if resolution > 0.0 else asked
+    goal = min(max(sent, told - dead_band), told + dead_band)
+    way = min(max(goal - sent, -most * sample_time), most * sample_time)
+    return way / sample_time, asked, sent + way

@@ -30,6 +30,9 @@ class Gear:
     sense: str = choice(["same", "reversed"], default="same")
     efficiency: float = number(above=0, most=1, default=1.0)
     includes_rotor: bool = flag(default=False, says="the wheel's inertia already holds the rotor's")
+    backlash: float = quantity("angle", least=0, default=0.0, says="play at the wheel, from flank to flank")
+    tooth_stiffness: float | None = quantity(
+        "angular stiffness", above=0, default=None, says="at the wheel; left out: peak torque winds up a tenth of the play")
 
 
 @dataclass(frozen=True)

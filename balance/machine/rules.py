@@ -9,7 +9,7 @@ from itertools import combinations
 from balance.base.words import listed
 from balance.files.walk import Fault, Rules
 from balance.machine.machine import Lumped, StancePlan
-from balance.machine.motors import Motor, Supply
+from balance.machine.motors import Gear, Motor, Supply
 from balance.machine.solids import (
     Cylinder,
     Disc,
@@ -22,7 +22,7 @@ from balance.machine.solids import (
     Tube,
     TubeSize,
 )
-from balance.machine.stabilisers import GimballedFlywheel, Rotor, ScissoredPair
+from balance.machine.stabilisers import Drag, GimballedFlywheel, ReactionWheel, Rotor, ScissoredPair
 from balance.machine.tensors import SLACK, check_tensor
 
 _ROUND = ("cylinder", "disc", "tube", "ring", "rim_and_web")
@@ -108,6 +108,30 @@ def check_supply(supply: Supply) -> Iterator[Fault]:
     """The clamp acts above the working voltage."""
     if supply.overvoltage <= supply.voltage:
         yield Fault("overvoltage", f"{supply.overvoltage:g} V", f"more than `voltage`, {supply.voltage:g} V")
+    if not supply.regenerates and supply.capacitance == 0.0:
+        yield Fault("capacitance", "a supply that takes no current back, on a bus without a capacitor",
+                    "`capacitance` above 0 F", "a braked wheel pumps the bus: say what it holds, such as `470 uF`")
+    if supply.brake_resistor > 0.0 and math.isinf(supply.overvoltage):
+        yield Fault("brake_resistor", "a brake resistor that never comes on", "`overvoltage`: where it acts")
+
+
+def check_drag(drag: Drag) -> Iterator[Fault]:
+    """Breaking loose takes at least what turning takes."""
+    if 0.0 < drag.stiction < drag.coulomb:
+        yield Fault("stiction", f"{drag.stiction:g} N*m", f"at least `coulomb`, {drag.coulomb:g} N*m",
+                    "it counts from nothing, not on top")
+
+
+def check_wheel(wheel: ReactionWheel) -> Iterator[Fault]:
+    """A wheel kept turning needs room on both sides."""
+    if abs(wheel.bias_speed) >= wheel.speed_limit:
+        yield Fault("bias_speed", f"{wheel.bias_speed:.4g} rad/s", f"below `speed_limit`, {wheel.speed_limit:.4g} rad/s")
+
+
+def check_gear(gear: Gear) -> Iterator[Fault]:
+    """Flanks without play touch always: their stiffness is not modelled."""
+    if gear.tooth_stiffness is not None and gear.backlash == 0.0:
+        yield Fault("tooth_stiffness", "`tooth_stiffness` without `backlash`", "both, or neither")
 
 
 def check_lumped(body: Lumped) -> Iterator[Fault]:
@@ -138,5 +162,6 @@ def _mm(length: float) -> str:
 RULES: Rules = {
     Tensor: check_tensor, Part: check_part, TubeSize: check_tube, RimWebSize: check_rim, Rotor: check_rotor,
     GimballedFlywheel: check_gimbal_axes, ScissoredPair: check_gimbal_axes, Motor: check_motor,
-    Supply: check_supply, Lumped: check_lumped, StancePlan: check_stance,
+    Supply: check_supply, Drag: check_drag, ReactionWheel: check_wheel, Gear: check_gear,
+    Lumped: check_lumped, StancePlan: check_stance,
 }

@@ -30,6 +30,7 @@ class Drag:
 
     coulomb: float = quantity("torque", least=0, default=0.0)
     viscous: float = quantity("angular damping", least=0, default=0.0)
+    stiction: float = quantity("torque", least=0, default=0.0, says="what breaks a standing wheel loose, coulomb included")
 
 
 @dataclass(frozen=True)
@@ -45,6 +46,8 @@ class ReactionWheel:
     torque_limit: float = quantity(
         "torque", above=0, default=float("inf"), says="at the wheel, on top of the motor's own")
     drag: Drag | None = section(Drag, default=None)
+    bias_speed: float = quantity(
+        "angular speed", default=0.0, says="the law keeps the wheel turning at this speed, away from stiction")
 
 
 @dataclass(frozen=True)

@@ -15,7 +15,7 @@ from balance.plant.off_line import add_body, add_units
 from balance.plant.record import Bounds, Plant, Unit
 from balance.plant.sensor import sensor_parameters
 from balance.plant.sharing import allotment, levelling, line_torque_per_input, momentum_row
-from balance.plant.units import discounted, on_line
+from balance.plant.units import discounted, on_line, supply_row
 from balance.stance.record import Stance
 
 Array = NDArray[np.float64]
@@ -48,7 +48,7 @@ def build_plant(machine: Machine, stance: Stance, fell: float = pi / 6.0) -> Pla
         bounds=_bounds(units, rows, stance.height, stiffness, free, pole), model=model,
         momentum_row=momentum_row(rows, first, len(model.states)), allotment=shares,
         levelling=levelling(rows, shares, first, len(model.states)), body_parameters=body, unit_parameters=rows,
-        sensor_parameters=sensor_parameters(machine, stance))
+        sensor_parameters=sensor_parameters(machine, stance), supply_parameters=supply_row(machine))
 
 
 def _body(stance: Stance, rows: Array, fell: float) -> Array:

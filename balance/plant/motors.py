@@ -69,19 +69,19 @@ def drive_of(motor: Motor, gear: Gear | None, supply: Supply | None) -> Drive:
 
     K_t = K_e in SI.  Values stated per phase (star, sinusoidal): line K = √3 × phase, line R = 2 × phase.  Stated per
     RMS ampere: K is per ampere of amplitude after division by √2, and the stated currents are multiplied by it.
-    Without a supply the voltage is no limit.
+    Without a supply the voltage is no limit; the supply's own current limit is the bus's, shared by all
+    (`kernel.supply`).
     """
     gear = gear or DIRECT
     constant = motor.torque_constant * (sqrt(3.0) if motor.values == "phase" else 1.0)
     resistance = motor.resistance * (2.0 if motor.values == "phase" else 1.0)
     amplitude = sqrt(2.0) if motor.amplitude == "rms" else 1.0
     constant /= amplitude
-    most = min(motor.peak_current * amplitude, supply.peak_current if supply else inf)
     return Drive(
         torque_per_amp=gear.efficiency * gear.ratio * constant,
         back_emf=gear.ratio * constant,
         resistance=resistance,
         voltage=supply.voltage if supply else inf,
-        current_limit=most,
+        current_limit=motor.peak_current * amplitude,
         bandwidth=2.0 * 3.141592653589793 * motor.bandwidth,
     )

@@ -45,6 +45,7 @@ class Unit:
     axis_T: Array                # (3,) spin axis, trunk frame
     gimbal_axis_T: Array | None  # (3,)
     at_T: Array                  # (3,)
+    bias_speed: float = 0.0      # rad/s the law keeps a wheel turning at
 
 
 @dataclass(frozen=True)
@@ -83,6 +84,7 @@ class Plant:
     body_parameters: Array       # kernel.layout, (BODY_SIZE,)
     unit_parameters: Array       # kernel.layout, (units, UNIT_SIZE)
     sensor_parameters: Array     # kernel.sensing, (SENSOR_SIZE,)
+    supply_parameters: Array | None = None   # kernel.layout, (UNIT_SIZE,): the supply all wheels share; None: no limit
 
     @property
     def acts(self) -> bool:

@@ -2,13 +2,14 @@
 
 from __future__ import annotations
 
-from math import inf, log, sin
+from math import inf, log, sin, sqrt
 
 import numpy as np
 from numpy.typing import NDArray
 
 from balance.kernel import layout as at
 from balance.machine.machine import Machine
+from balance.machine.motors import Gear
 from balance.machine.stabilisers import GimballedFlywheel, ReactionWheel, ScissoredPair, Stabiliser
 from balance.maths.inertia import rotated
 from balance.maths.rotations import unit
@@ -16,7 +17,7 @@ from balance.plant.limits import gimbal_discounted, wheel_discounted
 from balance.plant.motors import Drive, drive_of
 from balance.plant.record import Unit
 from balance.stance.facing import faced_axes
-from balance.stance.rotors import frame_tensor, rotor_mass, wheel_drive
+from balance.stance.rotors import WheelDrive, frame_tensor, rotor_mass, wheel_drive
 
 Array = NDArray[np.float64]
 
@@ -46,11 +47,41 @@ def _wheel(machine: Machine, name: str, wheel: ReactionWheel, e_T: Array) -> tup
     row[at.RESISTANCE], row[at.BUS_VOLTAGE] = drive.resistance, drive.voltage
     row[at.CURRENT_LIMIT], row[at.CURRENT_LAG] = drive.current_limit, drive.bandwidth
     row[at.SPEED_LIMIT], row[at.TORQUE_LIMIT] = wheel.speed_limit, wheel.torque_limit
+    row[at.STICTION] = wheel.drag.stiction if wheel.drag else 0.0
     most = min(drive.stall_torque, wheel.torque_limit)
     top = min(wheel.speed_limit, drive.no_load_speed)
+    if wheel.gear is not None and wheel.gear.backlash > 0.0:
+        put_play(row, wheel.gear, inertia, most)
     return Unit(name, "reaction wheel", "torque", share, inertia.wheel + inertia.motor * inertia.ratio**2,
                 abs(row[at.COUPLING]) * top, abs(row[at.COUPLING]) / inertia.own * most, most, top, drive.bandwidth,
-                axis, None, np.array(wheel.at)), row
+                axis, None, np.array(wheel.at), wheel.bias_speed), row
+
+
+FLANK_DAMPING = 0.3
+"""Damping ratio of flanks that meet: they bounce once or twice (common practice; nobody states it)."""
+
+
+def put_play(row: Array, gear: Gear, inertia: WheelDrive, most: float) -> None:
+    """Put a gear's play into a wheel's row. Without a stated stiffness the peak torque winds up a tenth of the play."""
+    rotor = inertia.ratio**2 * inertia.motor
+    stiffness = gear.tooth_stiffness or most / (0.1 * gear.backlash)
+    row[at.PLAY], row[at.TOOTH_STIFFNESS] = gear.backlash, stiffness
+    row[at.TOOTH_DAMPING] = 2.0 * FLANK_DAMPING * sqrt(stiffness * rotor * inertia.wheel / (rotor + inertia.wheel))
+    row[at.ROTOR_INERTIA] = rotor
+    row[at.ROTOR_PART] = inertia.sense * inertia.ratio * inertia.motor / inertia.coupled
+
+
+def supply_row(machine: Machine) -> Array | None:
+    """Return the kernel's row of the supply, (UNIT_SIZE,); None without a supply or without a wheel that draws on it."""
+    supply = machine.supply
+    if supply is None or not any(isinstance(unit_, ReactionWheel) for unit_ in machine.stabilisers.values()):
+        return None
+    row = np.zeros(at.UNIT_SIZE)
+    row[at.KIND], row[at.ROLE], row[at.OWN_INERTIA] = at.WHEEL, at.BUS, 1.0
+    row[at.BUS_VOLTAGE], row[at.SOURCE_OHMS], row[at.SOURCE_AMPS] = supply.voltage, supply.resistance, supply.peak_current
+    row[at.TAKES_BACK], row[at.CAPACITANCE] = float(supply.regenerates), supply.capacitance
+    row[at.OVERVOLTAGE], row[at.BRAKE_OHMS] = supply.overvoltage, supply.brake_resistor
+    return row
 
 
 def _gimballed(name: str, flywheel: GimballedFlywheel, e_T: Array) -> tuple[Unit, Array]:
@@ -74,6 +105,8 @@ def _gimballed(name: str, flywheel: GimballedFlywheel, e_T: Array) -> tuple[Unit
     row[at.ANGLE_STOP], row[at.RATE_LIMIT] = gimbal.angle_limit, gimbal.rate_limit
     row[at.DRIVE_TORQUE], row[at.RATE_LAG] = gimbal.torque_limit, 2.0 * np.pi * gimbal.bandwidth
     row[at.COUNT] = 2 if pair else 1
+    if servo:
+        row[at.RESOLUTION], row[at.DEAD_BAND] = gimbal.resolution, gimbal.dead_band
     row[at.SPIN] = rotor.spin
     line_momentum = row[at.COUNT] * row[at.MOMENTUM] * abs(acting)
     return Unit(name, "scissored pair" if pair else "gimballed flywheel", "rate" if servo else "torque", acting,

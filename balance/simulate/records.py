@@ -48,4 +48,7 @@ class TrialResult:
     standing_swing: float       # rad, amplitude of the lean about its trend in the last second; inf when it fell
     end_lean: float             # rad
     end_momentum: float         # N·m·s
+    peak_bus_voltage: float     # V; NaN without a supply that wheels draw on, as the next two
+    deepest_sag: float          # V, most below the supply's own voltage
+    peak_supply_current: float  # A
     trace: Trace | None

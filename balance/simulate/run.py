@@ -22,7 +22,7 @@ from balance.machine.machine import Machine
 from balance.plant.record import Plant
 from balance.simulate.events import Happening, directions, happening
 from balance.simulate.records import Trace, TrialResult
-from balance.simulate.setup import empty_output, law_arrays, start_state
+from balance.simulate.setup import empty_output, kernel_units, law_arrays, start_state
 from balance.simulate.story import limit_story, settling_time, standing_swing, time_to_full
 
 FELL_WORDS = {
@@ -37,13 +37,13 @@ def run_trials(design: Design, goal: Goal, machine: Machine, record: bool) -> tu
     """
     if design.refused:
         return ()
-    refuse_loads(goal, design.plant)
+    refuse(goal, design.plant)
     return tuple(run_one(design, goal, name, trial, toward, record)
                  for name, trial in goal.trials.items() for toward in directions(trial))
 
 
-def refuse_loads(goal: Goal, plant: Plant) -> None:
-    """Raise InputError where a trial takes off more than there is: mass, or inertia about the line."""
+def refuse(goal: Goal, plant: Plant) -> None:
+    """Raise InputError where a trial takes off more mass or inertia than there is, or weakens a supply that is not there."""
     problems = []
     for name, trial in goal.trials.items():
         load = trial.payload
@@ -55,24 +55,34 @@ def refuse_loads(goal: Goal, plant: Plant) -> None:
             line, column = goal.marks.get(key, (0, 0))
             problems.append(Problem(goal.source, line, column, key, f"{load.mass:g} kg",
                                     f"less than {most:.3g} kg taken off at this height on {plant.stance.name}"))
+    if plant.supply_parameters is None:
+        problems += _needs_supply(goal)
     if problems:
         raise InputError(problems)
 
 
+def _needs_supply(goal: Goal) -> list[Problem]:
+    """Return what cannot be asked of a machine without a supply that wheels draw on."""
+    asked = [f"trials.{name}.supply" for name, trial in goal.trials.items() if trial.supply is not None]
+    asked += ["require.bus_voltage"] if goal.require.bus_voltage is not None else []
+    return [Problem(goal.source, *goal.marks.get(key, (0, 0)), key, "a bus voltage asked of this machine",
+                    "a machine with reaction wheels and a `supply`", "add `supply:` to the machine file") for key in asked]
+
+
 def run_one(design: Design, goal: Goal, name: str, trial: Trial, toward: str, record: bool) -> TrialResult:
     """Run one trial in one direction. Sensor noise is drawn from the trial's name and direction: every run is alike."""
-    plant = design.plant
-    event = happening(trial, toward, plant.body_parameters, goal.loop, longest_step(plant.unit_parameters),
+    plant, units = design.plant, kernel_units(design.plant)
+    event = happening(trial, toward, plant.body_parameters, goal.loop, longest_step(units),
                       plant.sensor_parameters, crc32(f"{name} {toward}".encode()))
     samples = math.ceil(trial.lasts / design.law.sample_time - 1e-9)
-    output = empty_output(plant, samples, record)
+    output = empty_output(len(units), samples, record)
     body = plant.body_parameters.copy()
     body[FELL] = goal.fell
     law = law_arrays(design.law, plant, goal.loop.command_bits)
-    work = fresh_work(body, plant.unit_parameters, law, event.events)
+    work = fresh_work(body, units, law, event.events)
     if ESTIMATE in design.law.memory:                        # the estimator has run before the trial begins
         work.numbers[MEMORY, design.law.memory.index(ESTIMATE)] = event.lean
-    ended = run_trial(start_state(plant, event), plant.unit_parameters, law, event.events, work, output)
+    ended = run_trial(start_state(plant, event, units), units, law, event.events, work, output)
     return _result(design, name, event, ended, output)
 
 
@@ -107,7 +117,15 @@ def _result(design: Design, name: str, event: Happening, ended: int, output: Out
         friction_needed=float(metrics[outcome.FRICTION]), lift_off=bool(metrics[outcome.LIFTED] > 0.0),
         standing_swing=standing_swing(time, lean) if ended == outcome.RAN else math.inf,
         end_lean=float(metrics[outcome.END_LEAN]), end_momentum=float(metrics[outcome.END_MOMENTUM]),
-        trace=_trace(output, taken))
+        peak_bus_voltage=_of_bus(plant, metrics[outcome.PEAK_BUS]),
+        deepest_sag=_of_bus(plant, metrics[outcome.DEEPEST_SAG]),
+        peak_supply_current=_of_bus(plant, metrics[outcome.PEAK_SUPPLY]),
+        trace=_trace(output, taken, len(plant.units)))
+
+
+def _of_bus(plant: Plant, value: float) -> float:
+    """Return a number of the bus; NaN where no supply is stated or no wheel draws on it."""
+    return float(value) if plant.supply_parameters is not None else math.nan
 
 
 def end_lean(plant: Plant, event: Happening) -> float:
@@ -115,13 +133,13 @@ def end_lean(plant: Plant, event: Happening) -> float:
     return float(standing_lean(event.end_body, plant.unit_parameters, event.end_torque))
 
 
-def _trace(output: Output, taken: int) -> Trace | None:
+def _trace(output: Output, taken: int, units: int) -> Trace | None:
     """Return the recorded histories by name; None where nothing was recorded."""
     if output.trace.shape[0] == 0:
         return None
     rows = output.trace[:taken]
     columns = [rows[:, k].copy() for k in range(outcome.TRACE_SIZE)]
-    return Trace(*columns, *[rows[:, outcome.TRACE_SIZE:].copy()])
+    return Trace(*columns, *[rows[:, outcome.TRACE_SIZE:outcome.TRACE_SIZE + 2 * units].copy()])
 
 
 def _share(peak: float, capacity: float) -> float:

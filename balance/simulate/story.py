@@ -24,6 +24,8 @@ WORDS = {
     outcome.TORQUE: "torque limit", outcome.CURRENT: "current limit", outcome.VOLTAGE: "voltage limit",
     outcome.SPEED: "wheel speed limit", outcome.RATE: "gimbal rate limit",
     outcome.DRIVE: "strength of the gimbal drive", outcome.STOP: "gimbal stop",
+    outcome.SUPPLY: "supply's current limit", outcome.OVERVOLTAGE: "bus overvoltage limit",
+    outcome.FORCED: "speed at which the bus brakes the wheel by itself",
 }
 FULL = (outcome.VOLTAGE, outcome.SPEED, outcome.STOP)
 """Limits that mean: no more momentum."""

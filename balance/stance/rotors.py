@@ -143,5 +143,9 @@ def check_rotors(machine: Machine) -> None:
                     f"a spin inertia of {drive.wheel + held:.4g} kg*m^2",
                     f"more than the rotor as the wheel feels it, ratio² × rotor_inertia = {held:.4g} kg*m^2",
                     "leave includes_rotor out if the wheel was weighed without its motor"))
+            if unit_.gear is not None and unit_.gear.backlash > 0.0 and drive.motor <= 0.0:
+                found.append(problem(machine, f"stabilisers.{name}.gear.backlash",
+                                     f"play behind the motor `{unit_.motor}`, which has no `rotor_inertia`",
+                                     "a motor with `rotor_inertia`", "it is what crosses the play"))
     if found:
         raise InputError(found)

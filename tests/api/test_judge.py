@@ -14,7 +14,7 @@ from balance.goal.goal import Requirements
 
 ASKED = Requirements(phase_margin=0.6, gain_margin_lower=0.6, gain_margin_upper=2.0, delay_margin=0.006, modulus_margin=0.5,
                      disk_margin=0.5, peak_sensitivity=1.8, momentum_used=0.8, peak_lean=0.05, settling_time=4.0,
-                     friction_needed=0.5, standing_swing=0.01, offset_error=0.001, worst_phase_margin=0.5,
+                     friction_needed=0.5, standing_swing=0.01, bus_voltage=30.0, offset_error=0.001, worst_phase_margin=0.5,
                      worst_gain_margin_lower=0.7,
                      worst_gain_margin_upper=1.5, worst_delay_margin=0.004, worst_modulus_margin=0.4, worst_disk_margin=0.4)
 

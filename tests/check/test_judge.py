@@ -177,8 +177,9 @@ def test_the_momentum_asked_for_is_enough_and_hardly_less_is_not(short):
     def verdict(factor):
         rows = design.plant.unit_parameters.copy()
         rows[:, at.SPEED_LIMIT] *= factor
-        rows[:, at.BUS_VOLTAGE] *= factor
-        larger = replace(design, plant=replace(design.plant, unit_parameters=rows))
+        supply = design.plant.supply_parameters.copy()
+        supply[at.BUS_VOLTAGE] *= factor
+        larger = replace(design, plant=replace(design.plant, unit_parameters=rows, supply_parameters=supply))
         return run_one(larger, goal, "shove", trial, "outward", False).verdict
 
     assert verdict(more * 1.005) == "recovered"                   # the words round to whole percents

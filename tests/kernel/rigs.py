@@ -33,6 +33,16 @@ def wheel(inertia=4e-3, share=1.0, lag=np.inf, torque=0.8, speed=400.0, volts=1e
     return out
 
 
+def bus(volts=24.0, ohms=0.0, amps=np.inf, back=True, farads=1e-3, over=np.inf, brake=0.0):
+    """Return a supply's row; it stands below the wheels' rows."""
+    out = np.zeros((1, at.UNIT_SIZE))
+    row = out[0]
+    row[at.KIND], row[at.ROLE], row[at.OWN_INERTIA], row[at.BUS_VOLTAGE] = at.WHEEL, at.BUS, 1.0, volts
+    row[at.SOURCE_OHMS], row[at.SOURCE_AMPS], row[at.TAKES_BACK] = ohms, amps, float(back)
+    row[at.CAPACITANCE], row[at.OVERVOLTAGE], row[at.BRAKE_OHMS] = farads, over, brake
+    return out
+
+
 def pair(kind=at.GIMBAL_SERVO, momentum=0.5, stop=1.0471975511965976, rate=4.0, drive=np.inf, lag=100.0, inertia=2e-3,
          kappa=0.0, count=2, transverse=0.0):
     """Return one gimballed unit: e·s₀ = 0, e·(g × s₀) = 1."""

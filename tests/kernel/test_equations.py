@@ -13,7 +13,7 @@ import pytest
 import sympy as sp
 
 from balance.kernel import layout as at
-from balance.kernel.equations import derivative, gravity_torque, lean_acceleration, wheel_drag
+from balance.kernel.equations import STICKS, derivative, gravity_torque, lean_acceleration, wheel_drag
 
 TOLERANCE = 1e-9
 """Relative: both sides are doubles, the symbolic one with a few hundred operations."""
@@ -281,11 +281,11 @@ def test_units_add_up():
 
 def test_coulomb_drag():
     """It opposes turning, is whole from 1 rad/s on and fades to nothing at rest."""
-    assert wheel_drag(0.0, 0.02, 1e-5) == 0.0
+    assert wheel_drag(0.0, 0.02, 1e-5, 0.0) == 0.0
     for speed in (1.0, 7.0, 300.0):
-        assert wheel_drag(speed, 0.02, 1e-5) == pytest.approx(0.02 + 1e-5 * speed, rel=1e-12)
-        assert wheel_drag(-speed, 0.02, 1e-5) == -wheel_drag(speed, 0.02, 1e-5)
-    assert wheel_drag(0.5, 0.02, 0.0) == pytest.approx(0.01, rel=1e-12)
+        assert wheel_drag(speed, 0.02, 1e-5, 0.0) == pytest.approx(0.02 + 1e-5 * speed, rel=1e-12)
+        assert wheel_drag(-speed, 0.02, 1e-5, 0.0) == -wheel_drag(speed, 0.02, 1e-5, 0.0)
+    assert wheel_drag(0.5, 0.02, 0.0, 0.0) == pytest.approx(0.01, rel=1e-12)
 
 
 def test_one_acceleration_for_both_doors():
@@ -297,3 +297,16 @@ def test_one_acceleration_for_both_doors():
     X, out = np.array([0.1, 0.4, 30.0, 0.0]), np.zeros(4)
     alone = lean_acceleration(X, np.array([0.3]), 1.0, body, unit, out)
     assert alone == kernel(X, [0.3], 1.0, body, unit)[1]
+
+
+def test_stiction_falls_from_its_peak_to_the_coulomb_drag():
+    """Nothing at rest, all of it just above, half way down at 1 rad/s, Coulomb's far above; odd in speed."""
+    def drag(speed):
+        return wheel_drag(speed, 0.01, 0.0, 0.03)
+
+    assert drag(0.0) == 0.0
+    assert drag(STICKS) == pytest.approx(0.01 + 0.02 / (1.0 + STICKS**2), rel=1e-12)
+    assert drag(1.0) == pytest.approx(0.02, rel=1e-12)
+    assert drag(100.0) == pytest.approx(0.01, rel=1e-3)
+    assert drag(-0.4) == -drag(0.4)
+    assert drag(0.5) > wheel_drag(0.5, 0.01, 0.0, 0.0)            # the twin: without stiction it fades near rest

@@ -45,6 +45,17 @@ def test_shipped_machines_are_read(file):
      "stances.on-left-right", "left"),
     ("quay-carrier", "gimbal_axis: [0, 1, 0]", "gimbal_axis: [0, 1, 1]", "stabilisers.gyros.gimbal_axis", "square to"),
     ("quay-carrier", "angle_limit: 60 deg", "angle_limit: 95 deg", "stabilisers.gyros.gimbal.angle_limit", "less than"),
+    ("bench-rig", "peak_current: 20 A}", "peak_current: 20 A, regenerates: false}", "supply.capacitance", "470 uF"),
+    ("bench-rig", "peak_current: 20 A}", "peak_current: 20 A, brake_resistor: 4 ohm}", "supply.brake_resistor",
+     "overvoltage"),
+    ("bench-rig", "peak_current: 20 A}", "peak_current: 20 A, overvoltage: 20 V}", "supply.overvoltage",
+     "more than `voltage`"),
+    ("bench-rig", "coulomb: 3 mN*m", "coulomb: 3 mN*m, stiction: 1 mN*m", "stabilisers.wheel.drag.stiction",
+     "at least `coulomb`"),
+    ("bench-rig", "speed_limit: 3600 rpm", "speed_limit: 3600 rpm\n    bias_speed: 4000 rpm", "stabilisers.wheel.bias_speed",
+     "speed_limit"),
+    ("bench-rig", "motor: hub-motor", "motor: hub-motor\n    gear: {tooth_stiffness: 5 N*m/rad}",
+     "stabilisers.wheel.gear.tooth_stiffness", "without `backlash`"),
     ("bench-rig", "lumped: {", "body: {a: {mass: 1 kg, solid: {point: 0 mm}}}\nlumped: {", "", "lumped")])
 def test_each_rule(tmp_path, file, old, new, key, says):
     found = problems(tmp_path, file, (old, new))

@@ -101,7 +101,7 @@ def test_gear_and_winding_conventions():
         assert (twin.torque_per_amp, twin.back_emf, twin.resistance, twin.current_limit) == pytest.approx(
             (ours.torque_per_amp, ours.back_emf, ours.resistance, ours.current_limit), rel=1e-12)
     assert (ours.torque_per_amp, ours.back_emf) == pytest.approx((0.9 * 4 * 0.05, 4 * 0.05), rel=1e-12)
-    assert ours.current_limit == 8.0                                # the battery's limit is nearer than the motor's
+    assert ours.current_limit == 10.0                # the battery's 8 A bound the bus, not the winding (`kernel.supply`)
     assert drive_of(plain, gear, None).current_limit == 10.0
     # torque is held by the current up to the corner, by the voltage beyond, and gone at no load
     corner = ours.corner_speed

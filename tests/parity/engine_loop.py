@@ -99,7 +99,8 @@ class Loop:
 
     def wheel_rates(self, y, commands, torque):
         """Return dy/dt with every wheel's motor: current loop, voltage and current limits, speed limiter, drag."""
-        slopes, forces = [], []
+        forces, targets = [], []
+        volts = self.bus_voltage(y)
         for i, (_, wheel) in enumerate(self.units):
             motor = self.machine.motors[wheel.motor]
             speed, current = y[2 + 2 * i], y[3 + 2 * i]
@@ -111,16 +112,40 @@ class Loop:
             ask = np.clip(commands[i], -most, most)
             ask = min(ask, max(cut * (wheel.speed_limit - speed), 0.0)) if ask > 0 else \
                 max(ask, -max(cut * (wheel.speed_limit + speed), 0.0))
-            ohms = motor.resistance + self.supply.resistance
-            ends = [np.clip((s * self.supply.voltage - kt * speed) / ohms, -most / kt, most / kt) for s in (-1, 1)]
-            slopes.append(bandwidth * (np.clip(ask / kt, *ends) - current))
+            ends = [np.clip((s * volts - kt * speed) / motor.resistance, -most / kt, most / kt) for s in (-1, 1)]
+            targets.append(np.clip(ask / kt, *ends))
             fade = np.clip(speed, -1.0, 1.0)
             forces.append(kt * current - wheel.drag.coulomb * fade - wheel.drag.viscous * speed)
         q = self.accelerate(y, forces, torque)
         out = [y[1], q[self.at["line"]]]
-        for i, (name, _) in enumerate(self.units):
-            out += [q[self.at[name]], slopes[i]]
+        for i, ((name, _), target) in enumerate(zip(self.units, self.within_supply(targets, y), strict=True)):
+            bandwidth = 2 * np.pi * self.machine.motors[self.units[i][1].motor].bandwidth
+            out += [q[self.at[name]], bandwidth * (target - y[3 + 2 * i])]
         return np.array(out)
+
+    def electrical(self, i, current, speed):
+        """Return the power motor i takes from the bus, R i² + K i Ω."""
+        motor = self.machine.motors[self.units[i][1].motor]
+        return current * (motor.resistance * current + motor.torque_constant * speed)
+
+    def bus_voltage(self, y):
+        """Return V behind the supply's resistance under the power of all motors: V² − V₀ V + R P = 0."""
+        power = sum(self.electrical(i, y[3 + 2 * i], y[2 + 2 * i]) for i in range(len(self.units)))
+        return 0.5 * (self.supply.voltage + max(self.supply.voltage**2 - 4.0 * self.supply.resistance * power, 0.0) ** 0.5)
+
+    def within_supply(self, targets, y):
+        """Scale down the drawing motors' targets, by bisection, where the supply's current limit asks for it."""
+        amps, powers = self.supply.peak_current, [self.electrical(i, t, y[2 + 2 * i]) for i, t in enumerate(targets)]
+        most = amps * (self.supply.voltage - self.supply.resistance * amps)
+        if sum(powers) <= most:
+            return targets
+        low, high = 0.0, 1.0
+        for _ in range(50):
+            part = 0.5 * (low + high)
+            cut = [t * part if p >= 0.0 else t for t, p in zip(targets, powers, strict=True)]
+            too_much = sum(self.electrical(i, t, y[2 + 2 * i]) for i, t in enumerate(cut)) > most
+            low, high = (low, part) if too_much else (part, high)
+        return [t * low if p >= 0.0 else t for t, p in zip(targets, powers, strict=True)]
 
     def momentum(self, y):
         """Return what is stored about the line, from the definition: Σ I α (Ω + α θ̇), or 2 H e·(g × s₀) sin γ."""

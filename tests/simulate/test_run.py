@@ -13,12 +13,14 @@ from balance.design.build import design_stance
 from balance.goal.goal import Loop
 from balance.goal.read import read_goal
 from balance.goal.trials import LiftOff, OffsetShift, Payload, Push, Slope, Start, TorqueStep, Trial
-from balance.goal.troubles import Jitter, Missed
+from balance.goal.troubles import Jitter, Missed, SupplyDrop
 from balance.kernel import layout as at
+from balance.machine.motors import Gear, Supply
 from balance.machine.read import read_machine
+from balance.machine.stabilisers import Drag
 from balance.plant.build import build_plant
 from balance.simulate.run import run_one, run_trials
-from balance.simulate.setup import start_state
+from balance.simulate.setup import kernel_units, start_state
 from balance.stance.build import build_stance
 
 
@@ -138,9 +140,10 @@ def test_stored_momentum_is_shared_by_capacity():
     machine = read_machine("plants/trellis-scout.yaml")
     plant = build_plant(machine, build_stance(machine, "on-fore-right"))
     from balance.simulate.events import happening
+    units = kernel_units(plant)
     X = start_state(plant, happening(Trial(start=Start(0.0, 0.0, 0.4)), "outward", plant.body_parameters, Loop(500.0), 1e-4,
-                                      np.zeros(0), 0))
-    speeds = X[2::2]
+                                      np.zeros(0), 0), units)
+    speeds = X[2:6:2]
     assert plant.unit_parameters[:, at.COUPLING] @ speeds == pytest.approx(0.4, rel=1e-12)
     assert abs(speeds[0]) == pytest.approx(abs(speeds[1]), rel=1e-9)              # equal wheels: equal speeds
 
@@ -208,3 +211,86 @@ def test_troubles_make_a_trial_harder(rig, trouble):
     easy, hard = ran(rig, shove), ran(rig, replace(shove, **trouble))
     assert easy.verdict == "recovered"
     assert hard.verdict != "recovered" or hard.peak_lean > 1.05 * easy.peak_lean
+
+
+def remade(rig, law="designs/bench-rig.yaml", supply=None, **wheel):
+    """Return (goal, design) of the bench rig with another wheel or supply."""
+    goal = read_goal(law)
+    parts = {"wheel": replace(rig[0].stabilisers["wheel"], **wheel)}
+    machine = replace(rig[0], stabilisers=parts, supply=supply or rig[0].supply)
+    return goal, design_stance(build_plant(machine, build_stance(machine, "line")), goal)
+
+
+NUDGE = Trial(push=Push(0.1, 0.3, toward="outward"), lasts=8.0)
+
+
+SHORT = replace(NUDGE, lasts=1.0)
+
+
+def nudged(case, trial=NUDGE):
+    return run_one(case[1], case[0], "it", trial, "outward", False)
+
+
+def test_stiction_makes_a_pid_swing_for_ever_and_a_bias_speed_cures_it(rig):
+    """0.3 N·m to break loose: the wheel sticks, the lean grows, the wheel jumps. Turning at 30 rad/s it never sticks."""
+    sticky, pid = Drag(0.003, 8e-6, 0.3), "designs/bench-rig-pid.yaml"
+    smooth, sticks, cured = (nudged(remade(rig, pid, drag=drag, bias_speed=bias)) for drag, bias in
+                             ((Drag(0.003, 8e-6), 0.0), (sticky, 0.0), (sticky, 30.0)))
+    assert sticks.standing_swing > math.radians(0.02)
+    assert smooth.standing_swing < 1e-3 * sticks.standing_swing
+    assert cured.standing_swing < 1e-3 * sticks.standing_swing
+    assert cured.end_momentum == pytest.approx(30.0 * rig[2].plant.unit_parameters[0, at.COUPLING], rel=0.01)
+
+
+def test_play_in_the_gear_leaves_a_swing_that_grows_with_it(rig):
+    """Without play none; the swing is in proportion to the play (a describing function knows no other length)."""
+    none, fine, coarse = (nudged(remade(rig, gear=Gear(4.0, backlash=math.radians(play)))) for play in (0.0, 0.5, 2.0))
+    assert none.standing_swing < math.radians(1e-5)
+    assert coarse.standing_swing > math.radians(1e-3)
+    assert coarse.standing_swing == pytest.approx(4.0 * fine.standing_swing, rel=0.25)
+    assert coarse.peak_lean == pytest.approx(none.peak_lean, rel=0.02)
+
+
+def test_hardly_any_play_is_no_play(rig):
+    none, hardly = (nudged(remade(rig, gear=Gear(4.0, backlash=play)), SHORT) for play in (0.0, 1e-4))
+    assert hardly.peak_lean == pytest.approx(none.peak_lean, rel=1e-3)
+    assert hardly.peak_momentum == pytest.approx(none.peak_momentum, rel=1e-3)
+
+
+def test_a_weak_supply_is_no_match_for_a_push(rig):
+    """At a third of the voltage the wheel runs out of speed: 8 V/55 mV·s = 145 rad/s of 377."""
+    goal, design = remade(rig)
+    shove = Trial(push=Push(0.45, 0.3, toward="outward"))
+    assert nudged((goal, design), shove).verdict == "recovered"
+    weak = nudged((goal, design), replace(shove, supply=SupplyDrop(1.0 / 3.0, 0.0)))
+    assert weak.verdict == "fell outward"
+    assert "voltage limit" in weak.reason
+    assert weak.deepest_sag > 16.0
+
+
+def test_a_bus_that_takes_nothing_back_is_pumped_and_told(rig):
+    goal, plain = remade(rig)
+    pumped = remade(rig, supply=Supply(24.0, regenerates=False, capacitance=2e-3))[1]
+    trial = Trial(push=Push(0.35, 0.3, toward="outward"))
+    assert nudged((goal, plain), trial).peak_bus_voltage < 24.5
+    high = nudged((goal, pumped), trial)
+    assert high.peak_bus_voltage > 30.0
+    clamped = remade(rig, supply=Supply(24.0, regenerates=False, capacitance=2e-3, overvoltage=27.0, brake_resistor=3.0))[1]
+    assert nudged((goal, clamped), trial).peak_bus_voltage < 28.0
+
+
+def test_a_coarse_servo_swings(quay):
+    """Steps of 0.2 deg leave a limit cycle, a fine servo none."""
+    rows = quay[2].plant.unit_parameters.copy()
+    rows[0, at.RESOLUTION] = math.radians(0.2)
+    coarse = replace(quay[2], plant=replace(quay[2].plant, unit_parameters=rows))
+    trial = Trial(push=Push(2.0, 1.0, toward="outward"), lasts=8.0)
+    fine, swings = ran(quay, trial), ran(quay, trial, design=coarse)
+    assert fine.verdict == swings.verdict == "recovered"
+    assert swings.standing_swing > 20.0 * fine.standing_swing
+
+
+def test_a_supply_that_is_not_there_cannot_be_weakened(quay):
+    asked = replace(quay[1], trials={"dark": replace(NUDGE, supply=SupplyDrop(0.5))})
+    with pytest.raises(InputError, match=r"trials\.dark\.supply.*add `supply:`"):
+        run_trials(quay[2], asked, quay[0], False)

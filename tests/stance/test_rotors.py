@@ -10,6 +10,7 @@ import pytest
 
 from balance.base.errors import InputError
 from balance.machine.motors import Gear
+from balance.machine.read import read_machine
 from balance.machine.solids import Disc, RoundSize
 from balance.machine.stabilisers import Rotor
 from balance.maths.rotations import about, unit
@@ -125,3 +126,16 @@ class TestPair:
         assert both.inertia_locked - none.inertia_locked == pytest.approx(squares + own, rel=1e-12)   # a difference
         fixed = build_stance(three_legged(stabilisers={"gyros": pair(turntable=False)}), "without-fore")
         assert fixed.inertia_locked < both.inertia_locked - 1e-3  # rotors along the line: nearer to it
+
+
+def test_play_needs_a_rotor_that_crosses_it():
+    machine = read_machine("plants/bench-rig.yaml")
+    wheel = machine.stabilisers["wheel"]
+    for inertia, wrong in ((0.0, True), (6e-5, False)):
+        motors = {"hub-motor": replace(machine.motors["hub-motor"], rotor_inertia=inertia)}
+        geared = replace(machine, motors=motors, stabilisers={"wheel": replace(wheel, gear=Gear(3.0, backlash=0.01))})
+        if wrong:
+            with pytest.raises(InputError, match=r"gear\.backlash.*rotor_inertia"):
+                build_stance(geared, "line")
+        else:
+            assert build_stance(geared, "line").mass > 0.0
