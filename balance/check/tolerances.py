@@ -7,6 +7,7 @@ import math
 from balance.check.records import Verdict
 from balance.design.records import Design
 from balance.design.robustness.ranges import told
+from balance.design.steady import tolerable_offset
 from balance.goal.goal import Requirements
 
 LIMITS = (
@@ -21,10 +22,10 @@ LIMITS = (
 
 
 def judge_tolerances(require: Requirements, design: Design) -> list[Verdict]:
-    """Return whether the loop stays stable within the tolerances, where any act, and one verdict per limit asked for."""
+    """Return what the tolerances themselves ask for, where any act (stability, a standing offset), then each limit."""
     asked = [(name, margin, unit, sense) for name, margin, unit, sense in LIMITS if getattr(require, name) is not None]
     moved = design.robustness is not None and design.margins.stable
-    verdicts = [_stability(design)] if moved else []
+    verdicts = [_stability(design), *_offset(design)] if moved else []
     return verdicts + [_judged(design, *one, limit=float(getattr(require, one[0]))) for one in asked]
 
 
@@ -38,6 +39,20 @@ def _stability(design: Design) -> Verdict:
         reason = f"unstable at {told(where.at, found.ranges)}"
     return Verdict("stable_within_tolerances", design.plant.stance.name, "stable" if found.stable else "unstable", "",
                    "stable", "is", found.stable, reason)
+
+
+def _offset(design: Design) -> list[Verdict]:
+    """Return whether a centre of mass off by its whole tolerance is borne for ever; no margin shows that."""
+    assert design.robustness is not None
+    limit = next((one.high for one in design.robustness.ranges if one.name == "offset"), None)
+    if limit is None:
+        return []
+    value = float(tolerable_offset(design))
+    borne = bool(value >= limit)
+    reason = "" if borne else (f"a centre of mass {1e3 * value:.1f} mm off fills the momentum in the long run; the "
+                               f"machine file allows {1e3 * limit:.1f} mm")
+    name = "offset_within_tolerances"
+    return [Verdict(name, design.plant.stance.name, value, "m", limit, "at least", borne, reason)]
 
 
 def _judged(design: Design, name: str, margin: str, unit: str, sense: str, limit: float) -> Verdict:

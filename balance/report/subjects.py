@@ -13,7 +13,6 @@ from balance.report.verdicts import judged_value, limit_words, spoken
 LOOP = ("stable_loop", "phase_margin", "gain_margin_lower", "gain_margin_upper", "delay_margin", "modulus_margin",
         "disk_margin", "peak_sensitivity", "offset_error")
 OVER_TRIALS = ("momentum_used", "peak_lean", "settling_time", "friction_needed", "standing_swing", "feet_on_ground")
-WITHIN = "stable_within_tolerances"
 
 
 @dataclass(frozen=True)
@@ -31,7 +30,7 @@ def subject_of(verdict: Verdict) -> str:
     """Return what a verdict is about."""
     if verdict.name in LOOP:
         return "loop"
-    if verdict.name == WITHIN or verdict.name.startswith("worst_"):
+    if verdict.name.endswith("_within_tolerances") or verdict.name.startswith("worst_"):
         return "within tolerances"
     if isinstance(verdict.limit, str) and verdict.limit.startswith("recovered"):
         return "trials"

@@ -11,6 +11,7 @@ import pytest
 from balance.api.gains import gains
 from balance.api.judge import judge_loop
 from balance.api.load import load
+from balance.design.steady import tolerable_offset
 from balance.machine.tolerances import Tolerances
 
 WORST = {"worst_phase_margin": 0.1, "worst_gain_margin_lower": 0.9, "worst_gain_margin_upper": 1.1,
@@ -52,6 +53,18 @@ def test_a_limit_between_nominal_and_worst_fails_and_says_where(job, designs, na
     assert not verdict.passed
     assert "the machine as stated has" in verdict.reason
     assert next(iter(case.at)).replace("_", " ") in verdict.reason
+
+
+def test_a_standing_offset_within_the_tolerances_must_be_borne(job, designs) -> None:
+    """The rig's own file allows 2 mm; the law bears what `steady` says and no more."""
+    verdict = judged(job, designs)["offset_within_tolerances"]
+    assert (verdict.passed, verdict.limit, verdict.value) == (True, 0.002, tolerable_offset(designs[0]))
+    wide = replace(job, machine=replace(job.machine, tolerances=Tolerances(offset=1.05 * verdict.value)))
+    failed = judged(wide, gains(wide))["offset_within_tolerances"]
+    assert not failed.passed
+    assert "fills the momentum in the long run" in failed.reason
+    none = replace(job, machine=replace(job.machine, tolerances=Tolerances(mass=0.01)))
+    assert "offset_within_tolerances" not in judged(none, gains(none))
 
 
 def test_a_loop_lost_within_the_tolerances_fails(job) -> None:
