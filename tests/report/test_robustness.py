@@ -8,6 +8,8 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
+from balance.api.gains import gains
+from balance.api.load import load
 from balance.check.records import Verdict
 from balance.design.records import Range, Retuning
 from balance.design.robustness.one_law import OneLaw, one_law
@@ -41,9 +43,8 @@ def test_the_table_holds_every_margin_and_names_what_is_lost(answered) -> None:
     assert worst_table(replace(design, robustness=None)) is None
 
 
-def test_one_gain_set_says_which_is_better_and_by_how_much(answered) -> None:
-    result = answered("scout-wheels", "every")
-    found = one_law(result.designs)
+def test_one_gain_set_says_which_is_better_and_by_how_much(root) -> None:
+    found = one_law(gains(load(str(root / "designs" / "quay-gyros.yaml")), worst=False))
     assert "same within 1 %" in one_law_words(found)
     worse = replace(found, shared=tuple(replace(m, disk=0.8 * m.disk) for m in found.own))
     assert "20 % smaller" in one_law_words(worse).replace("\u00a0", " ")
