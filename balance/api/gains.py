@@ -8,6 +8,7 @@ from balance.api.load import Job
 from balance.api.plant import plant
 from balance.api.retuned import borne_by_trials
 from balance.api.tell import Tell, quiet
+from balance.base.errors import InputError, Problem
 from balance.design.build import design_stance
 from balance.design.records import Design, Range
 from balance.design.robustness.one_law import OneLaw, compared, share
@@ -23,7 +24,7 @@ def gains(job: Job, tell: Tell = quiet, worst: bool = True) -> tuple[Design, ...
 
     With `worst`, the worst case within the tolerances is searched where any are stated.  Where the design file wants one
     gain set, every stance of the machine has its say in it, also those not asked for.  `tell` hears one line before each
-    step.  Raises InputError as `balance.api.plant.plant` does.
+    step.  Raises InputError as `balance.api.plant.plant` does, and for tolerances wider than the machine is high.
     """
     names = job.machine.stance_names() if job.goal.control.one_gain_set else job.stances
     plants = plant(job.machine, names, job.goal.fell)
@@ -58,4 +59,11 @@ def _tried(job: Job, design: Design, tell: Tell) -> Design:
 
 
 def _ranges(job: Job, built: Plant) -> tuple[Range, ...]:
-    return ranges_of(built, job.machine.tolerances, job.goal.loop)
+    """Return what may move on this stance; InputError where the centre of mass could be below the line."""
+    given, stance = job.machine.tolerances, built.stance
+    if given is not None and given.height >= stance.height > 0.0:
+        key = "tolerances.height"
+        line, column = job.machine.marks.get(key, (0, 0))
+        raise InputError([Problem(job.machine.source, line, column, key, f"{given.height:g} m",
+                                  f"less than the height of the centre of mass on {stance.name}, {stance.height:.4g} m")])
+    return ranges_of(built, given, job.goal.loop)

@@ -26,6 +26,7 @@ def check_loop(loop: Loop) -> Iterator[Fault]:
     if loop.latency * loop.rate > LONGEST_DELAY:
         yield Fault("latency", f"{loop.latency:g} s, {loop.latency * loop.rate:.0f} samples",
                     f"at most {LONGEST_DELAY} samples, {LONGEST_DELAY / loop.rate:g} s at this rate")
+    yield from _jitter("latency_tolerance", loop.latency_tolerance, loop.rate)
     yield from _jitter("jitter", loop.jitter, loop.rate)
 
 

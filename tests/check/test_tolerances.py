@@ -85,6 +85,24 @@ def test_where_no_tolerance_acts_the_margin_as_stated_is_judged(job) -> None:
     assert found["worst_disk_margin"].reason == "worst at the machine as stated"
 
 
+@pytest.mark.parametrize(("given", "key", "says"), [
+    ("mass: 3 %", "tolerances.mass", "0.03 is ±3 %"), ("mass: 3", "tolerances.mass", "less than 0.9"),
+    ("height: 0.1", "tolerances.height", "with its unit"), ("height: 290 mm", "tolerances.height", "less than the height"),
+    ("weight: 0.1", "tolerances.weight", "`height`")])
+def test_tolerances_that_cannot_be_meant_are_input_errors(command, root, tmp_path, given: str, key: str, says: str) -> None:
+    machine = (root / "plants" / "bench-rig.yaml").read_text(encoding="utf-8")
+    (tmp_path / "bench-rig.yaml").write_text(machine[:machine.index("tolerances:")] + f"tolerances: {{{given}}}\n",
+                                             encoding="utf-8")
+    design = (root / "designs" / "bench-rig.yaml").read_text(encoding="utf-8").replace("../plants/", "")
+    (tmp_path / "d.yaml").write_text(design, encoding="utf-8")
+    answer = command("gains", tmp_path / "d.yaml", "--json")
+    assert answer.code == 2
+    (error,) = answer.answer()["errors"]
+    assert error["key"] == key
+    assert says in error["allowed"]
+    assert error["line"] == machine[:machine.index("tolerances:")].count("\n") + 1
+
+
 def test_a_worst_case_without_tolerances_is_an_input_error(command, root: Path, tmp_path: Path) -> None:
     machine = (root / "plants" / "bench-rig.yaml").read_text(encoding="utf-8")
     (tmp_path / "bench-rig.yaml").write_text(machine[:machine.index("tolerances:")], encoding="utf-8")

@@ -57,6 +57,16 @@ def resonant_loop(points: np.ndarray, frequency: np.ndarray) -> np.ndarray:
     return (crossing / s + mode) * np.exp(-s * delay)
 
 
+def test_a_grid_point_on_a_pole_of_the_loop_is_no_hole() -> None:
+    frequency = np.geomspace(0.1, 1500.0, 400)
+    loop = resonant_loop(np.zeros((2, 2)), frequency)
+    holed = loop.copy()
+    holed[1, 3] = np.nan
+    margins = quick_margins(holed, frequency)
+    assert np.all(np.isfinite(margins[1, :3]))
+    assert np.allclose(margins[0, :3], margins[1, :3])
+
+
 def test_the_planted_worst_delay_lies_inside_where_no_corner_sees_it() -> None:
     """With the mode turned by half a turn L comes to about −0.75 there: modulus 0.25; at the ends of the range it is 0.7."""
     frequency = np.unique(np.concatenate([np.geomspace(0.1, 1500.0, 400), np.linspace(180.0, 220.0, 200)]))

@@ -51,6 +51,7 @@ def test_shipped_designs_are_read(path):
     ("height: 300 mm}", "height: 300 mm}, supply: {falls_to: 1.5}", "trials.shove.supply.falls_to", "less than 1"),
     ("height: 300 mm}", "height: 300 mm}, jitter: {up_to: 80 ms}", "trials.shove.jitter.up_to", "40 samples"),
     ("latency: 2 ms", "latency: 2 ms, jitter: 80 ms", "loop.jitter", "at most 20 samples"),
+    ("latency: 2 ms", "latency: 2 ms, latency_tolerance: 80 ms", "loop.latency_tolerance", "at most 20 samples"),
     ("latency: 2 ms", "latency: 2 ms, command_bits: 40", "loop.command_bits", "at most 32"),
     ("{push: {impulse: 0.25 N*s, height: 300 mm}}", "{ramp: {to: 1 N*m}}", "trials.shove.ramp.for", "missing"),
     ("{push: {impulse: 0.25 N*s, height: 300 mm}}", "{payload: {mass: 0 kg, height: 300 mm}}",

@@ -35,6 +35,8 @@ RINGS = 0.15
 AROUND = 61
 """Points within 20 % of such a mode: 0.7 % apart, a third of the width of a peak damped by 0.01."""
 
+ENDLESS = 1e12
+
 
 @dataclass(frozen=True)
 class Screen:
@@ -81,7 +83,11 @@ class Screen:
 
 
 def quick_margins(loop: Complex, frequency: Array) -> Array:
-    """Return (N, len(JUDGED)) off the grid for loops (N, f) that are stable; factors counted from 1."""
+    """Return (N, len(JUDGED)) off the grid for loops (N, f) that are stable; factors counted from 1.
+
+    A frequency that falls on a pole of the loop counts as one of endless gain: there feedback is perfect.
+    """
+    loop = np.where(np.isfinite(loop), loop, ENDLESS)
     back = np.abs(1.0 + loop)
     phase, delay = unit_crossings(loop, frequency)
     lower, upper = axis_crossings(loop)
