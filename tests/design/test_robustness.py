@@ -155,3 +155,30 @@ def test_nothing_to_move_or_nothing_to_hold_is_no_worst_case() -> None:
     assert worst_case(replace(design, refused="nothing acts"), some) is None
     unstable = Margins(False, *[math.nan] * 10, ())
     assert worst_case(replace(design, margins=unstable), some) is None
+
+
+def test_a_motor_off_by_a_share_divides_both_gain_limits() -> None:
+    """In closed form: the loop gain is times 1 + k, so the factors left are the nominal ones over it; the rest follows."""
+    asked = goal()
+    design = design_stance(plant_of(wheel_machine()), asked)
+    worst = worst_case(design, ranges_of(design.plant, Tolerances(torque_constant=0.1), asked.loop))
+    cases = {case.margin: case for case in worst.cases}
+    assert cases["gain_lower"].value == pytest.approx(design.margins.gain_lower / 0.9, rel=1e-8)     # refined crossings
+    assert cases["gain_upper"].value == pytest.approx(design.margins.gain_upper / 1.1, rel=1e-8)
+    assert cases["gain_lower"].at["torque_constant"] == pytest.approx(-0.1, rel=1e-12)
+    assert cases["gain_upper"].at["torque_constant"] == pytest.approx(0.1, rel=1e-12)
+
+
+def test_mass_moves_no_pole_but_takes_gain() -> None:
+    """More of the same mass: stiffness and inertia grow alike, the pole stays, and the same torque does less by 1 + μ.
+
+    The rotor's own inertia (0.7 % of the body's) is scaled with it in J but not in the wheel's row: a part in a thousand.
+    """
+    asked = goal()
+    design = design_stance(plant_of(wheel_machine()), asked)
+    worst = worst_case(design, ranges_of(design.plant, Tolerances(mass=0.1), asked.loop))
+    assert worst.worst.stiffness / worst.worst.inertia_free == pytest.approx(
+        design.plant.stiffness / design.plant.inertia_free, rel=1e-3)
+    lower = next(case for case in worst.cases if case.margin == "gain_lower")
+    assert lower.at == {"mass": pytest.approx(0.1)}
+    assert lower.value > 1.1 * design.margins.gain_lower, "and the wheel's own momentum, which mass does not slow, weighs more"
