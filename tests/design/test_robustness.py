@@ -181,4 +181,4 @@ def test_mass_moves_no_pole_but_takes_gain() -> None:
         design.plant.stiffness / design.plant.inertia_free, rel=1e-3)
     lower = next(case for case in worst.cases if case.margin == "gain_lower")
     assert lower.at == {"mass": pytest.approx(0.1)}
-    assert lower.value > 1.1 * design.margins.gain_lower, "and the wheel's own momentum, which mass does not slow, weighs more"
+    assert lower.value > 1.1 * design.margins.gain_lower, "the wheel's own momentum, which mass does not slow, weighs more"
