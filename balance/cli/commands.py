@@ -18,6 +18,7 @@ def run(asked: argparse.Namespace) -> Outcome:
         "check": run_check,
         "plant": run_plant,
         "gains": run_gains,
+        "firmware": run_firmware,
         "recover": run_recover,
         "new": run_new,
         "schema": run_schema,
@@ -70,6 +71,31 @@ def run_gains(asked: argparse.Namespace, progress: Progress) -> Outcome:
         **json_verdicts(verdicts),
     }
     return Outcome(_code(answer), show_gains(designs, verdicts, shared), answer)
+
+
+def run_firmware(asked: argparse.Namespace, progress: Progress) -> Outcome:
+    """`balance firmware FILE`: the law as C; the requirements on margins are judged beside it."""
+    from balance.api.load import load
+
+    job = load(asked.file, asked.stance)
+    from balance.api.firmware import firmware
+    from balance.api.gains import gains
+    from balance.api.json_check import json_verdicts
+    from balance.api.json_firmware import json_firmware
+    from balance.api.judge import judge_loop
+    from balance.cli.show_firmware import show_firmware
+
+    folder = asked.out or os.path.join(output_folder(asked.file), "firmware")
+    designs = gains(job, progress.tell)
+    package, verdicts = firmware(job, designs, folder, progress.tell), judge_loop(job, designs)
+    answer = {
+        "machine": job.machine.machine,
+        "design": job.goal.design,
+        **json_firmware(package, folder),
+        **json_verdicts(verdicts),
+    }
+    whole = answer["passed"] and not isinstance(package, str) and not package.refused
+    return Outcome(MET if whole else UNMET, show_firmware(package, folder, verdicts), {**answer, "passed": whole})
 
 
 def run_recover(asked: argparse.Namespace, progress: Progress) -> Outcome:

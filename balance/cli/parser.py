@@ -33,6 +33,7 @@ COMMANDS = {
     "check": "build, design, try and judge one design file, and write its report",
     "plant": "what each contact line sees: mass, height, inertia, pole, what the stabilisers can do",
     "gains": "the controller's gains with their margins, for each stance",
+    "firmware": "write the law as portable C, with the proof that it does what was designed",
     "recover": "run the design file's recovery trials",
     "new": "write a commented machine and design file to start from",
     "schema": "print the JSON Schema of machine or design files, for editors",
@@ -105,6 +106,16 @@ def _own_words(name: str, parser: argparse.ArgumentParser) -> None:
     if name == "plant":
         drawing = "draw the machine to scale into a .svg or .png file"
         parser.add_argument("--figure", metavar="PATH", default="", help=drawing)
+    if name == "firmware":
+        parser.add_argument(
+            "--out",
+            metavar="FOLDER",
+            default="",
+            help="folder to write into (default: `firmware` in a folder named like the design file)",
+        )
+    if name == "recover":
+        compiled = "run the trials on the written C, compiled here, in place of the simulator's own law"
+        parser.add_argument("--with-firmware", action="store_true", help=compiled)
     if name == "check":
         parser.add_argument(
             "--out",
