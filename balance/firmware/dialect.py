@@ -116,9 +116,10 @@ def update(dialect: Dialect, program: Program) -> str:
     """Return reset, init and update."""
     p, kind, nought = dialect.prefix, dialect.kind, dialect.nought
     k, m = max(len(program.memory), 1), len(program.readings)
-    zero = "\n".join(f"        command->{name} = {nought};" for name in commands_of(program))
+    safe = "\n".join(f"        command->{name} = {nought};" for name in commands_of(program))
+    zero = "\n".join(f"            command->{name} = {nought};" for name in commands_of(program))
     remember = "        remember(state, line);\n" if program.memory else ""
-    voltage = "        look_at_voltage(state, command, &flags);\n" if any(program.windows) else ""
+    voltage = "            look_at_voltage(state, command, &flags);\n" if any(program.windows) else ""
     return f"""void {p}_reset({p}_state *state)
 {{
     uint8_t i;
@@ -141,15 +142,20 @@ uint16_t {p}_update({p}_state *state, const {p}_reading *reading, {p}_command *c
     if (state->refused > PATIENCE) {{
         uint8_t i;
         for (i = 0u; i < {k}u; i++) {{ state->memory[i] = {nought}; }}
-{zero}
+{safe}
         flags |= FLAG_SAFE;
     }} else {{
-        const {kind} most = {dialect.fetch}(line_limit[state->stance][0]);
+        const {kind} most = (reading->held != 0u) ? {nought} : {dialect.fetch}(line_limit[state->stance][0]);
         const {kind} asked = wanted(state);
         const {kind} line = within(asked, most);
-        if ((line < asked) || (line > asked)) {{ flags |= FLAG_LINE_LIMITED; }}
         allot(state, line, command);
-{remember}        hold(command, state->stance, &flags);
-{voltage}    }}
+{remember}        if (reading->held != 0u) {{
+{zero}
+            flags |= FLAG_HELD;
+        }} else {{
+            if ((line < asked) || (line > asked)) {{ flags |= FLAG_LINE_LIMITED; }}
+            hold(command, state->stance, &flags);
+{voltage}        }}
+    }}
     return flags;
 }}"""

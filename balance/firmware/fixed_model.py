@@ -64,18 +64,20 @@ class FixedModel:
         self.last = [0 for _ in self.program.readings]
         self.refused = 255
 
-    def update(self, raw: Sequence[int]) -> tuple[int, list[int]]:
-        """Return (flags, commands) of one sample and move the memory on."""
+    def update(self, raw: Sequence[int], held: bool = False) -> tuple[int, list[int]]:
+        """Return (flags, commands) of one sample and move the memory on; `held`: the machine cannot fall yet."""
         flags = self._take(raw)
         if self.refused > self.program.patience:
             self.memory = [0 for _ in self.memory]
             return flags | BIT["SAFE"], [0 for _ in self.program.units]
         row = self.fixed.line
-        wanted, most = self._sum(row, 0), row.limits[self.stance]
+        wanted, most = self._sum(row, 0), 0 if held else row.limits[self.stance]
         line = min(max(wanted, -most), most)
-        flags |= BIT["LINE_LIMITED"] if line != wanted else 0
+        flags |= BIT["LINE_LIMITED"] if line != wanted and not held else 0
         commands = [self._sum(each, line) for each in self.fixed.inputs]
         self.memory = [self._sum(each, line, old) for each, old in zip(self.fixed.moves, self.memory, strict=True)]
+        if held:
+            return flags | BIT["HELD"], [0 for _ in self.program.units]
         return flags | self._share(commands) | self._short(commands), commands
 
     def _take(self, raw: Sequence[int]) -> int:

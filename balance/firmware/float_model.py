@@ -38,16 +38,18 @@ class FloatModel:
         self.last = [ZERO for _ in self.program.readings]
         self.refused = 255
 
-    def update(self, raw: Floats) -> tuple[int, list[np.float32]]:
-        """Return (flags, commands) of one sample and move the memory on."""
+    def update(self, raw: Floats, held: bool = False) -> tuple[int, list[np.float32]]:
+        """Return (flags, commands) of one sample and move the memory on; `held`: the machine cannot fall yet."""
         with np.errstate(all="ignore"):
             flags = self._take(raw)
             if self.refused > self.program.patience:
                 self.memory = [ZERO for _ in self.memory]
                 return flags | BIT["SAFE"], [ZERO for _ in self.program.units]
-            more, line = self._line()
+            more, line = (0, ZERO) if held else self._line()
             commands = [self._sum(row, line) for row in self.program.inputs]
             self.memory = [self._sum(row, line) for row in self.program.moves]
+            if held:
+                return flags | BIT["HELD"], [ZERO for _ in self.program.units]
             return flags | more | self._share(commands) | self._short(commands), commands
 
     def _take(self, raw: Floats) -> int:

@@ -50,6 +50,7 @@ void control_tick(void)                 /* every {program.period_us} microsecond
     {p}_command command;
     uint16_t flags;
 {_fill(program)}
+    reading.held = /* not 0 while more feet are down or a hand holds it */;
     flags = {p}_update(&state, &reading, &command);
 {_use(program)}
     if ((flags & {big}_SAFE) != 0u) {{ /* no good reading for too long: catch the machine */ }}

@@ -14,6 +14,7 @@ def write_selftest(program: Program, vectors: Vectors, kind: str, suffix: str) -
     p, fields, commands = program.prefix + suffix, fields_of(program), commands_of(program)
     n, big = len(vectors.flags), (program.prefix + suffix).upper()
     reading = "\n".join(f"    reading->{f.name} = {_value('readings', str(i), kind)};" for i, f in enumerate(fields))
+    reading += "\n    reading->held = FETCH_BYTE(held[at]);"
     checks = "\n".join(
         f"    if (alike(command->{name}, {_value('answers', str(i), kind)}, {_limit(program, i, kind)}) == 0u) "
         "{ same = 0u; }"
@@ -45,6 +46,8 @@ def write_selftest(program: Program, vectors: Vectors, kind: str, suffix: str) -
 {_bytes("actions", vectors.actions, "before the reading: 0 nothing, 1 reset, 2 init")}
 
 {_bytes("stances", vectors.stances, "the stance to init")}
+
+{_bytes("held", vectors.held, "whether the machine is held")}
 
 {_bytes("flags_due", vectors.flags, "flags")}
 

@@ -20,6 +20,9 @@ Array = NDArray[np.float64]
 UPDATE, RESET, INIT = 0, 1, 2
 """What is done before the reading of a vector is given; INIT goes to the next stance."""
 
+HELD = (2, 3, 4)
+"""Samples of each part in which the machine is held."""
+
 PER_PART = 24
 """Samples of each part of the sequence."""
 
@@ -32,6 +35,7 @@ class Plan:
     actions: tuple[int, ...]
     stances: tuple[int, ...]
     odd: tuple[tuple[int, int, int], ...]  # (row, field, which odd number)
+    held: tuple[int, ...]
 
 
 def plan_vectors(program: Program, least: int = 512, seed: int = 7) -> Plan:
@@ -59,7 +63,8 @@ def plan_vectors(program: Program, least: int = 512, seed: int = 7) -> Plan:
                 spell = min(program.patience + 2, PER_PART - 4)
                 odd += [(first + 1 + i, 0, 0) for i in range(spell)]
         stance = (stance + 1) % len(program.stances)
-    return Plan(np.vstack(rows), tuple(actions), tuple(stances), tuple(odd))
+    held = tuple(int(i % PER_PART in HELD) for i in range(len(actions)))
+    return Plan(np.vstack(rows), tuple(actions), tuple(stances), tuple(odd), held)
 
 
 def _motion(rng: np.random.Generator, program: Program, n: int, lean: float, rate: float, spread: float = 0.6) -> Array:

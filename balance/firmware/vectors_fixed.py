@@ -20,12 +20,12 @@ def fixed_vectors(fixed: Fixed, plan: Plan) -> Vectors:
         edge = fixed.believed[field]
         rows[row, field] = (LEAST, MOST, -MOST, edge + 1, -edge - 1, edge, -edge, 0)[which % 8]
     model, commands, flags = FixedModel(fixed), [], []
-    for row, action, stance in zip(rows.tolist(), plan.actions, plan.stances, strict=True):
+    for row, action, stance, held in zip(rows.tolist(), plan.actions, plan.stances, plan.held, strict=True):
         if action == INIT:
             model.init(stance)
         elif action == RESET:
             model.reset()
-        said, given = model.update(row)
+        said, given = model.update(row, bool(held))
         flags.append(said)
         commands.append(given)
     return Vectors(
@@ -34,4 +34,5 @@ def fixed_vectors(fixed: Fixed, plan: Plan) -> Vectors:
         plan.stances,
         (np.array(commands, dtype=np.int64) % 2**32).astype(np.uint32),
         tuple(flags),
+        plan.held,
     )

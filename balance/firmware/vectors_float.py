@@ -26,6 +26,7 @@ class Vectors:
     stances: tuple[int, ...]
     commands: Words
     flags: tuple[int, ...]
+    held: tuple[int, ...]
 
 
 def float_vectors(program: Program, plan: Plan) -> Vectors:
@@ -34,12 +35,12 @@ def float_vectors(program: Program, plan: Plan) -> Vectors:
     for row, field, which in plan.odd:
         words[row, field] = ODD[which % len(ODD)]
     model, commands, flags = FloatModel(program), [], []
-    for row, action, stance in zip(words, plan.actions, plan.stances, strict=True):
+    for row, action, stance, held in zip(words, plan.actions, plan.stances, plan.held, strict=True):
         if action == INIT:
             model.init(stance)
         elif action == RESET:
             model.reset()
-        said, given = model.update(row.view(np.float32))
+        said, given = model.update(row.view(np.float32), bool(held))
         flags.append(said)
         commands.append(np.array(given, dtype=np.float32).view(np.uint32))
-    return Vectors(words, plan.actions, plan.stances, np.array(commands), tuple(flags))
+    return Vectors(words, plan.actions, plan.stances, np.array(commands), tuple(flags), plan.held)

@@ -85,30 +85,54 @@ def run_trial(X: Array, units: Array, law: LawArrays, events: Events, work: Work
 def tick(X: Array, start: float, sample: int, units: Array, law: LawArrays, events: Events, work: Work,
          output: Output) -> None:
     """Take a sample and compute the command that acts `latency` later; until the release it is held at zero."""
-    numbers, queue, stored = work.numbers, work.queue, line_momentum(X, units)
+    if not sense(X, start, sample, units, law, events, work, output):
+        return
+    numbers = work.numbers
+    most = law.output_limit if is_free(start, law.sample_time, events) else 0.0
+    v, limited = law_tick(numbers[MEMORY], numbers[MEASURED], law.A, law.B, law.E, law.C, law.D, most,
+                          numbers[SPARE])
+    short = share_out(limited, numbers[MEASURED], law.allotment, law.levelling, law.input_limits, law.line_share,
+                      work.queue[0])
+    numbers[LINE, 0] = limited
+    send(start, sample, short or abs(v) > most * (1.0 + 1e-9), units, law, events, work, output)
+
+
+@njit(cache=True, error_model="numpy")
+def is_free(start: float, sample_time: float, events: Events) -> bool:
+    """Return whether the machine is no longer held."""
+    return bool(start >= events.release - TINY * sample_time)
+
+
+@njit(cache=True, error_model="numpy")
+def sense(X: Array, start: float, sample: int, units: Array, law: LawArrays, events: Events, work: Work,
+          output: Output) -> bool:
+    """Put the measurements into their row and make room for a command; return whether the sample was taken at all."""
+    numbers, queue = work.numbers, work.queue
     output.history[sample, 0] = X[0] - work.body[BALANCED]
-    output.history[sample, 1] = stored
+    output.history[sample, 1] = line_momentum(X, units)
     work.flags[AT, CLIPPED] = 0
     if missed(start, sample, events):
-        return
+        return False
     for i in range(queue.shape[0] - 1, 0, -1):
         for j in range(queue.shape[1]):
             queue[i, j] = queue[i - 1, j]
     queue[0, queue.shape[1] - 1] = start + law.latency + lateness(start, sample, events)
-    free = start >= events.release - TINY * law.sample_time
     acceleration = 0.0
-    if free and reads_sensor(law.places):
+    if is_free(start, law.sample_time, events) and reads_sensor(law.places):
         release_stops(X, start, units, work)
         rates_now(X, start, work)
         acceleration = numbers[RATE, 1]
     measure(X, acceleration, work.body, law.places, events.sensor, events.seed, sample, numbers[MEASURED])
     for j in range(law.resting.size):
         numbers[MEASURED, j] -= law.resting[j]
-    most = law.output_limit if free else 0.0
-    v, limited = law_tick(numbers[MEMORY], numbers[MEASURED], law.A, law.B, law.E, law.C, law.D, most,
-                          numbers[SPARE])
-    short = share_out(limited, numbers[MEASURED], law.allotment, law.levelling, law.input_limits, law.line_share,
-                      queue[0])
+    return True
+
+
+@njit(cache=True, error_model="numpy")
+def send(start: float, sample: int, clipped: bool, units: Array, law: LawArrays, events: Events, work: Work,
+         output: Output) -> None:
+    """Round the command that stands in the newest row as the actuators' inputs do; note that it was clipped."""
+    numbers, queue, free = work.numbers, work.queue, is_free(start, law.sample_time, events)
     for j in range(law.allotment.size):
         asked = digitised(queue[0, j], law.input_steps[j], np.inf) if free else 0.0
         if free and units[j, KIND] == GIMBAL_SERVO and units[j, RESOLUTION] + units[j, DEAD_BAND] > 0.0:
@@ -116,10 +140,9 @@ def tick(X: Array, start: float, sample: int, units: Array, law: LawArrays, even
                 asked, law.sample_time, numbers[SERVO_ASKED, j], numbers[SERVO_SENT, j], units[j, RESOLUTION],
                 units[j, DEAD_BAND], units[j, RATE_LIMIT])
         queue[0, j] = asked
-    numbers[LINE, 0] = limited
-    if free and (short or abs(v) > most * (1.0 + 1e-9)):
+    if free and clipped:
         work.flags[AT, CLIPPED] = 1
-        note(start, stored, units.shape[0], outcome.OUTPUT, output.first)
+        note(start, output.history[sample, 1], units.shape[0], outcome.OUTPUT, output.first)
 
 
 @njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)

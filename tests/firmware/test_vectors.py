@@ -60,7 +60,7 @@ def test_the_vectors_are_many_and_meet_everything(case: str) -> None:
     vectors = float_vectors(program, plan)
     assert len(vectors.flags) >= 512
     met = {name for name, (bit, _) in FLAGS.items() if any(flags & bit for flags in vectors.flags)}
-    expected = {"LINE_LIMITED", "STALE", "SAFE"}
+    expected = {"LINE_LIMITED", "STALE", "SAFE", "HELD"}
     if len(program.units) > 1:
         expected |= {"UNIT_LIMITED", "SHARED_OUT"}
     if program.inertial:

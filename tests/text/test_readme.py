@@ -35,7 +35,7 @@ QUOTED = quoted(README)
 @pytest.mark.parametrize(("words", "shown"), QUOTED, ids=[words for words, _ in QUOTED])
 def test_the_quoted_output_is_the_real_one(command, tmp_path: Path, monkeypatch, words: str, shown: list[str]) -> None:
     monkeypatch.chdir(ROOT)
-    given = [*shlex.split(words), *(["--out", str(tmp_path)] if words.startswith("check") else [])]
+    given = [*shlex.split(words), *(["--out", str(tmp_path)] if words.startswith(("check", "firmware")) else [])]
     answer = command(*given)
     assert answer.code in (0, 1)
     assert shown
