@@ -7,9 +7,14 @@ from __future__ import annotations
 
 import argparse
 import os
+from typing import TYPE_CHECKING
 
 from balance.cli.outcome import MET, UNMET, Outcome
 from balance.cli.progress import Progress
+
+if TYPE_CHECKING:
+    from balance.api.load import Job
+    from balance.design.records import Design
 
 
 def run(asked: argparse.Namespace) -> Outcome:
@@ -111,6 +116,8 @@ def run_recover(asked: argparse.Namespace, progress: Progress) -> Outcome:
     from balance.cli.show_recover import show_recover
 
     designs = gains(job, progress.tell, worst=False)
+    if asked.with_firmware:
+        return _recover_compiled(asked, job, designs, progress)
     trials = recover(job, designs, tell=progress.tell)
     verdicts = judge_trials(job, designs, trials)
     answer = {
@@ -120,6 +127,36 @@ def run_recover(asked: argparse.Namespace, progress: Progress) -> Outcome:
         **json_verdicts(verdicts),
     }
     return Outcome(_code(answer), show_recover(designs, trials, verdicts), answer)
+
+
+def _recover_compiled(asked: argparse.Namespace, job: Job, designs: tuple[Design, ...], progress: Progress) -> Outcome:
+    """The trials on the compiled firmware: its verdicts must be the law's."""
+    from balance.api.compiled import recover_compiled
+    from balance.api.json_check import json_verdicts
+    from balance.api.json_recover import json_recover
+    from balance.api.judge import judge_trials
+    from balance.cli.show_firmware import show_compiled
+    from balance.cli.show_recover import show_recover
+
+    ran = recover_compiled(job, designs, "fixed" if asked.fixed_point else "float", progress.tell)
+    if isinstance(ran, str):
+        return Outcome(UNMET, f"No firmware to run: {ran}.", {"passed": False, "firmware": {"refused": ran}})
+    verdicts = judge_trials(job, designs, ran.trials)
+    answer = {
+        "machine": job.machine.machine,
+        "design": job.goal.design,
+        **json_recover(ran.trials),
+        **json_verdicts(verdicts),
+        "firmware": {
+            "refused": "",
+            "variant": ran.variant,
+            "same_verdicts": not ran.other_verdicts,
+            "other_verdicts": list(ran.other_verdicts),
+            "peak_lean_apart_rad": ran.peak_lean_apart,
+        },
+    }
+    answer["passed"] = bool(answer["passed"]) and not ran.other_verdicts
+    return Outcome(_code(answer), f"{show_recover(designs, ran.trials, verdicts)}\n\n{show_compiled(ran)}", answer)
 
 
 def run_check(asked: argparse.Namespace, progress: Progress) -> Outcome:

@@ -116,6 +116,7 @@ def _own_words(name: str, parser: argparse.ArgumentParser) -> None:
     if name == "recover":
         compiled = "run the trials on the written C, compiled here, in place of the simulator's own law"
         parser.add_argument("--with-firmware", action="store_true", help=compiled)
+        parser.add_argument("--fixed-point", action="store_true", help="with --with-firmware: its fixed-point variant")
     if name == "check":
         parser.add_argument(
             "--out",
@@ -135,4 +136,7 @@ def read_words(words: Sequence[str]) -> argparse.Namespace:
             ", ".join(COMMANDS),
             f"did you mean `balance {near[0]}`?" if near else "see `balance --help`",
         )
-    return build_parser().parse_args(list(words))
+    asked = build_parser().parse_args(list(words))
+    if getattr(asked, "fixed_point", False) and not asked.with_firmware:
+        raise UsageError("--fixed-point alone", "--with-firmware --fixed-point", "it chooses the firmware's variant")
+    return asked

@@ -2,9 +2,11 @@
 
 from __future__ import annotations
 
+import math
 import textwrap
 from collections.abc import Sequence
 
+from balance.api.compiled import Compared
 from balance.base.tables import text_table
 from balance.check.records import Verdict
 from balance.firmware.header import CAUTION
@@ -43,3 +45,13 @@ def show_firmware(package: Package | str, folder: str, verdicts: Sequence[Verdic
             *textwrap.wrap(CAUTION, 80),
         ]
     )
+
+
+def show_compiled(ran: Compared) -> str:
+    """Return how the compiled firmware's trials differ from the law's."""
+    variant = "fixed-point" if ran.variant == "fixed" else "float32"
+    if ran.other_verdicts:
+        return "\n".join([f"the compiled {variant} firmware does NOT do what the law does:", *ran.other_verdicts])
+    apart = math.degrees(ran.peak_lean_apart)
+    says = f"every verdict is the law's own; peak leans differ by at most {apart:.2g} deg"
+    return "\n".join(textwrap.wrap(f"run on the compiled {variant} firmware: {says}", 80))

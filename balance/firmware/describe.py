@@ -31,6 +31,7 @@ from balance.firmware.reach import memory_reach
 from balance.kernel import layout as at
 from balance.plant.record import Plant
 from balance.plant.sharing import line_torque_per_input
+from balance.simulate.setup import resting
 
 Array = NDArray[np.float64]
 
@@ -142,7 +143,7 @@ def _reading(designs: Sequence[Design], j: int) -> Reading:
     """Return the j-th measurement: which C field it is, and where it stops being believed."""
     name = designs[0].law.measurements[j]
     balanced = tuple(float(d.plant.balanced_lean) for d in designs)
-    none = tuple(0.0 for _ in designs)
+    none = tuple(float(resting(d.law, d.plant)[j]) for d in designs)
     if name == "tilt":
         return Reading(name, "", "rad", TILT, TILT_REACH, balanced)
     if name == "gyro":

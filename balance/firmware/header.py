@@ -71,7 +71,7 @@ extern "C" {{
 {comment("What is measured at the sampling instant." + scaled)}
 typedef struct {{
 {_fields(program, numbers)}
-    uint8_t held; /* not 0 while the machine cannot fall (more feet down, a hand): commands stay zero, the estimator goes on */
+    uint8_t held; /* not 0 while the machine cannot fall (more feet down): commands stay zero, the estimator goes on */
 }} {p}_reading;
 
 {comment("What the units are asked for." + scaled)}

@@ -97,13 +97,13 @@ def tick(X: Array, start: float, sample: int, units: Array, law: LawArrays, even
     send(start, sample, short or abs(v) > most * (1.0 + 1e-9), units, law, events, work, output)
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
 def is_free(start: float, sample_time: float, events: Events) -> bool:
     """Return whether the machine is no longer held."""
     return bool(start >= events.release - TINY * sample_time)
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
 def sense(X: Array, start: float, sample: int, units: Array, law: LawArrays, events: Events, work: Work,
           output: Output) -> bool:
     """Put the measurements into their row and make room for a command; return whether the sample was taken at all."""
@@ -128,7 +128,7 @@ def sense(X: Array, start: float, sample: int, units: Array, law: LawArrays, eve
     return True
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
 def send(start: float, sample: int, clipped: bool, units: Array, law: LawArrays, events: Events, work: Work,
          output: Output) -> None:
     """Round the command that stands in the newest row as the actuators' inputs do; note that it was clipped."""

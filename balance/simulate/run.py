@@ -23,6 +23,7 @@ from balance.plant.record import Plant
 from balance.simulate.events import Happening, directions, happening
 from balance.simulate.records import Trace, TrialResult
 from balance.simulate.setup import empty_output, kernel_units, law_arrays, start_state
+from balance.simulate.stepped import Controller, run_stepped
 from balance.simulate.story import limit_story, settling_time, standing_swing, time_to_full
 
 FELL_WORDS = {
@@ -30,7 +31,8 @@ FELL_WORDS = {
 }
 
 
-def run_trials(design: Design, goal: Goal, machine: Machine, record: bool) -> tuple[TrialResult, ...]:
+def run_trials(design: Design, goal: Goal, machine: Machine, record: bool,
+               controller: Controller | None = None) -> tuple[TrialResult, ...]:
     """Run every trial of `goal` in every direction it asks for; none where the design was refused.
 
     `record`: keep the time histories, one row per sample. The controller is never told what disturbs it.
@@ -38,7 +40,7 @@ def run_trials(design: Design, goal: Goal, machine: Machine, record: bool) -> tu
     if design.refused:
         return ()
     refuse(goal, design.plant)
-    return tuple(run_one(design, goal, name, trial, toward, record)
+    return tuple(run_one(design, goal, name, trial, toward, record, controller)
                  for name, trial in goal.trials.items() for toward in directions(trial))
 
 
@@ -69,8 +71,12 @@ def _needs_supply(goal: Goal) -> list[Problem]:
                     "a machine with reaction wheels and a `supply`", "add `supply:` to the machine file") for key in asked]
 
 
-def run_one(design: Design, goal: Goal, name: str, trial: Trial, toward: str, record: bool) -> TrialResult:
-    """Run one trial in one direction. Sensor noise is drawn from the trial's name and direction: every run is alike."""
+def run_one(design: Design, goal: Goal, name: str, trial: Trial, toward: str, record: bool,
+            controller: Controller | None = None) -> TrialResult:
+    """Run one trial in one direction. Sensor noise is drawn from the trial's name and direction: every run is alike.
+
+    `controller` stands in the law's place; without one the kernel runs the law itself.
+    """
     plant, units = design.plant, kernel_units(design.plant)
     event = happening(trial, toward, plant.body_parameters, goal.loop, longest_step(units),
                       plant.sensor_parameters, crc32(f"{name} {toward}".encode()))
@@ -82,7 +88,12 @@ def run_one(design: Design, goal: Goal, name: str, trial: Trial, toward: str, re
     work = fresh_work(body, units, law, event.events)
     if ESTIMATE in design.law.memory:                        # the estimator has run before the trial begins
         work.numbers[MEMORY, design.law.memory.index(ESTIMATE)] = event.lean
-    ended = run_trial(start_state(plant, event, units), units, law, event.events, work, output)
+    X = start_state(plant, event, units)
+    if controller is None:
+        ended = run_trial(X, units, law, event.events, work, output)
+    else:
+        controller.begin(plant.stance.name, event.lean)
+        ended = run_stepped(controller, X, units, law, event.events, work, output)
     return _result(design, name, event, ended, output)
 
 

@@ -13,8 +13,8 @@ from tests.firmware.targets.run import TARGETS, run_on
 CASES = ("scout-wheels", "bench-rig-sensed", "quay-gyros", "bench-rig-pid")
 BUILD = ("-O2",)
 UPDATES = 200
-HEAD = ("| design | variant | code, bytes (M4F) | RAM state | stack (M4F) | instructions M4F | M3 | M0 | cycles ATmega2560 |",
-        "| --- | --- | --- | --- | --- | --- | --- | --- | --- |")
+HEAD = ("| design | variant | code, bytes (M4F) | RAM state | stack (M4F) | instructions M4F | M3 | M0 "
+        "| cycles ATmega2560 |", "| --- | --- | --- | --- | --- | --- | --- | --- | --- |")
 
 MAIN = """
 #include "{prefix}.h"
@@ -55,7 +55,8 @@ def cost(case: str, variant: str, target: str, folder: Path) -> Cost:
     assert fixed is not None
     fill = "\n".join(f"    reading.{name} = {value};" for name, value in values.items())
     main = home / f"cost{variant}.c"
-    main.write_text(MAIN.format(prefix=p, big=p.upper(), period=program.period_us, fill=fill, updates=UPDATES), encoding="utf-8")
+    text = MAIN.format(prefix=p, big=p.upper(), period=program.period_us, fill=fill, updates=UPDATES)
+    main.write_text(text, encoding="utf-8")
     run = run_on(target, [home / "src" / f"{p}.c", main], home / target / f"cost{variant}", [home / "src"], BUILD)
     work, empty = run.spans
     return Cost((work.count - empty.count) / UPDATES, work.stack)
