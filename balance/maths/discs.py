@@ -10,8 +10,8 @@ and glue are not in it.
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
 from math import inf, sqrt
+from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -22,8 +22,7 @@ RINGS = 400
 """Rings a smooth profile is cut into: stresses to 1e-5 of the peak for profiles that halve from bore to rim."""
 
 
-@dataclass(frozen=True)
-class Stresses:
+class Stresses(NamedTuple):
     """Stresses at ω = 1 rad/s; every stress grows with ω²."""
 
     radii: Array          # (n,) m, both sides of every ring's edges and wherever a ring has its largest stress
