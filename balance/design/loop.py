@@ -91,7 +91,7 @@ def sample_plant(plant: Plant, sample_time: float, latency: float) -> SampledPla
     n = len(plant.model.states)
     C = np.eye(n, len(A_late))
     A_late = A_late - B_late[:, 1:] @ plant.levelling[_levelled(plant)] @ C
-    C = np.vstack([C, sensor_rows(plant, len(A_late))])
+    C = np.vstack([C, _sensor_rows(plant, A, len(A_late))])
     return SampledPlant(plant, A_late, B_late[:, 0], C, tuple(names), (*plant.model.states, "tilt", "gyro"), sample_time,
                         latency)
 
@@ -102,10 +102,13 @@ def sensor_rows(plant: Plant, width: int) -> Array:
     θ̈ is that of the sampling instant, under the torque that still acts then; a torque that follows its command without
     any lag is left out of it (wheels always lag).
     """
-    A, _, names = _with_lags(plant)
+    return _sensor_rows(plant, _with_lags(plant)[0], width)
+
+
+def _sensor_rows(plant: Plant, A: Array, width: int) -> Array:
     rows = np.eye(2, width)
     gravity = plant.stance.gravity * np.cos(plant.stance.slope)
-    rows[0, :len(names)] -= plant.sensor_parameters[UP] / gravity * A[1]
+    rows[0, :len(A)] -= plant.sensor_parameters[UP] / gravity * A[1]
     return rows
 
 

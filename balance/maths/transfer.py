@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 import numpy as np
 from numpy.typing import NDArray
 from scipy.linalg import schur
@@ -15,6 +17,19 @@ def triangular(A: Array, b: Array, C: Array) -> Triangle:
     """Return T (n, n) upper triangular, Zᴴb (n,) and C Z (p, n), A = Z T Zᴴ (unitary, so nothing is amplified)."""
     T, Z = schur(np.asarray(A, dtype=np.complex128), output="complex")
     return T, Z.conj().T @ b, np.atleast_2d(C) @ Z
+
+
+def respond_each(forms: Sequence[Triangle], points: Complex) -> Complex:
+    """Return c (zI − A)⁻¹ b of many triples of one size with one output each: (len(forms), points), as `respond`."""
+    T, b, C = (np.stack([form[k] for form in forms]) for k in range(3))     # (N, n, n), (N, n), (N, 1, n)
+    n = b.shape[1]
+    X = np.zeros((len(forms), n, len(points)), dtype=np.complex128)
+    with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
+        for i in range(n - 1, -1, -1):
+            rest = T[:, i, None, i + 1:] @ X[:, i + 1:]                      # (N, 1, points)
+            X[:, i] = (b[:, i, None] + rest[:, 0]) / (points - T[:, i, i, None])
+        answer: Complex = (C @ X)[:, 0]
+    return answer
 
 
 def respond(form: Triangle, points: Complex) -> Complex:

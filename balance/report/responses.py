@@ -25,7 +25,7 @@ SETTLED = 5.0
 """Time constants of the slowest mode that are shown: e⁻⁵ is left."""
 LONGEST = 12.0
 """s."""
-MOST_POINTS = 700
+MOST_POINTS = 300
 
 
 @dataclass(frozen=True)

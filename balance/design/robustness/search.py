@@ -25,6 +25,8 @@ STARTS = 2
 """Local searches per function."""
 FIRST, LAST = 0.5, 0.01
 """Step of the local search, in half widths of the box."""
+CORNERED = 0.1
+"""Last step of a search that stands in a corner: what is lowest there is lowest by its slope, not by a bottom."""
 ROUNDS = 40
 
 
@@ -48,7 +50,7 @@ def search(values_of: Callable[[Array], Array], size: int) -> Pool:
     ways = _starts(pool)
     known = {_key(x): y for x, y in zip(pool.points, pool.values, strict=True)}
     for _ in range(ROUNDS):
-        ways = [way for way in ways if way.step >= LAST]
+        ways = [way for way in ways if way.step >= (LAST if np.any(np.abs(way.at) < 1.0) else CORNERED)]
         tried = {_key(x): x for way in ways for x in way.around()}
         new = np.array([x for key, x in tried.items() if key not in known])
         if len(new):
