@@ -4,7 +4,8 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from balance.api.json_numbers import Tree, number
+from balance.api.json_margins import json_margins
+from balance.api.json_numbers import Tree, complexes, number
 from balance.firmware.package import Package
 from balance.firmware.quantised import Rounding
 
@@ -43,6 +44,10 @@ def _variant(prefix: str, arithmetic: str, refused: str, found: Sequence[Roundin
                 "disk_share_lost": number(each.cost),
                 "largest_pole_designed": number(each.designed_radius),
                 "largest_pole_rounded": number(each.rounded_radius),
+                "poles_designed": complexes(each.designed_poles),
+                "poles_rounded": complexes(each.rounded_poles),
+                "margins_designed": json_margins(each.designed),
+                "margins_rounded": json_margins(each.rounded),
             }
             for each in found
         ],

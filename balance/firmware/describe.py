@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import hashlib
-import re
 from collections.abc import Sequence
 from dataclasses import replace
 
@@ -13,6 +12,7 @@ from numpy.typing import NDArray
 from balance import __version__
 from balance.design.law import Law
 from balance.design.records import Design
+from balance.firmware.names import clashing, identifier, tame
 from balance.firmware.program import (
     DIRECT,
     LINE,
@@ -47,16 +47,17 @@ INERTIAL_RATE = LARGEST_RATE * 3.0**0.5
 
 
 class NotAlikeError(ValueError):
-    """The stances' laws cannot be one program."""
+    """The stances' laws cannot be one program, or one of them must not be firmware at all."""
 
 
 def describe(designs: Sequence[Design], name: str) -> Program:
-    """Return the program of a design file's stances; raises NotAlikeError where a stance has no law or another shape."""
-    refused = [f"{d.plant.stance.name}: {d.refused}" for d in designs if d.refused]
-    if refused or not designs:
-        raise NotAlikeError("; ".join(refused) or "no stance")
-    if any(d.law.measurements != designs[0].law.measurements for d in designs):
-        raise NotAlikeError("the stances' laws have different measurements")
+    """Return the program of a design file's stances.
+
+    Raises NotAlikeError where a stance has no law, an unstable loop or another shape, or where names clash in C.
+    """
+    refused = why_not(designs)
+    if refused:
+        raise NotAlikeError(refused)
     laws = alike([design.law for design in designs])
     first, plant = laws[0], designs[0].plant
     readings = tuple(_reading(designs, j) for j in range(len(first.measurements)))
@@ -66,8 +67,8 @@ def describe(designs: Sequence[Design], name: str) -> Program:
     units = tuple(unit.name for unit in plant.units)
     bare = Program(
         prefix=identifier(name),
-        design=name,
-        machine=plant.machine,
+        design=tame(name),
+        machine=tame(plant.machine),
         kind=first.kind,
         stances=tuple(d.plant.stance.name for d in designs),
         sample_time=first.sample_time,
@@ -88,6 +89,19 @@ def describe(designs: Sequence[Design], name: str) -> Program:
     )
     bare = without_dust(bare)
     return replace(bare, seal=hashlib.sha256(repr(bare).encode()).hexdigest())
+
+
+def why_not(designs: Sequence[Design]) -> str:
+    """Return why the designs must not be one program; empty where they can."""
+    refused = [f"{d.plant.stance.name}: {d.refused}" for d in designs if d.refused]
+    refused += [
+        f"{d.plant.stance.name}: the loop as designed is not stable" for d in designs if not (d.refused or d.margins.stable)
+    ]
+    if refused or not designs:
+        return "; ".join(refused) or "no stance"
+    if any(d.law.measurements != designs[0].law.measurements for d in designs):
+        return "the stances' laws have different measurements"
+    return clashing([u.name for u in designs[0].plant.units]) or clashing([d.plant.stance.name for d in designs])
 
 
 def alike(laws: Sequence[Law]) -> list[Law]:
@@ -126,12 +140,6 @@ def _source_reach(program: Program, term: Term) -> float:
         most = program.memory[term.place].most
         return most if np.isfinite(most) else 1.0
     return reach(program.readings[term.place])
-
-
-def identifier(name: str) -> str:
-    """Return a name as C knows names: letters, digits, underscores, no digit first."""
-    plain = re.sub(r"[^A-Za-z0-9]+", "_", name).strip("_").lower() or "law"
-    return f"law_{plain}" if plain[0].isdigit() else plain
 
 
 def reach(reading: Reading) -> float:

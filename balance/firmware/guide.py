@@ -9,8 +9,10 @@ from balance.firmware.dialect import commands_of
 from balance.firmware.fields import fields_of
 from balance.firmware.gain_table import gain_tables
 from balance.firmware.header import CAUTION
+from balance.firmware.names import macro
 from balance.firmware.program import Program
 from balance.firmware.quantised import Rounding
+from balance.firmware.rounding_tables import rounding_tables
 from balance.firmware.scaling import Fixed
 
 
@@ -41,7 +43,7 @@ static {p}_state state;                 /* yours: nothing is kept anywhere else 
 
 void control_setup(void)
 {{
-    {p}_init(&state, {big}_{_big(program.stances[0])}, {big}_PERIOD({program.period_us}));
+    {p}_init(&state, {big}_STANCE_{macro(program.stances[0])}, {big}_PERIOD({program.period_us}));
 }}
 
 void control_tick(void)                 /* every {program.period_us} microseconds, from a timer */
@@ -57,6 +59,10 @@ void control_tick(void)                 /* every {program.period_us} microsecond
 }}
 ```
 
+A sample that was missed (sensor late, bus error): call `update` all the same, with any number out of range (`NAN`, or
+`INT32_MIN` in fixed point). The last good reading stands in, and after {program.patience} of them in a row all
+commands are zero.
+
 The command must reach the actuators {program.latency * 1e3:g} ms after the readings were taken: the gains count on it. Call
 `init` with another stance when other feet are down. Variants: {variants}.
 {_refused(refused)}
@@ -70,6 +76,7 @@ The command must reach the actuators {program.latency * 1e3:g} ms after the read
 
 Two roundings in every multiply-add are part of the float32 law: the sources switch fused multiply-add off for GCC and Clang
 (`-ffp-contract=off` for others). Where that cannot be done, the last bits differ and the machine does not notice.
+`-ffast-math` is refused: it lets the compiler take a number that is none for a good one.
 
 ## Proving it
 
@@ -82,8 +89,8 @@ makes sure that the compiler rounds down. The float self-test reads bits through
 
 ## What rounding costs
 
-{_costs("float32", float_cost)}
-{_costs("fixed point", fixed_cost)}
+{rounding_tables("float32", float_cost)}
+{rounding_tables("fixed point", fixed_cost)}
 ## Gains
 
 u = -K x on the stated states; positive lean is outward. Every number the firmware multiplies with is here once more under
@@ -91,10 +98,6 @@ u = -K x on the stated states; positive lean is outward. Every number the firmwa
 
 {gain_tables(designs, program, fixed)}
 """
-
-
-def _big(name: str) -> str:
-    return "".join(c if c.isalnum() else "_" for c in name).upper()
 
 
 def _fill(program: Program) -> str:
@@ -110,18 +113,3 @@ def _use(program: Program) -> str:
 
 def _refused(why: str) -> str:
     return f"\nNo fixed-point variant was written: {why}.\n" if why else ""
-
-
-def _costs(variant: str, found: Sequence[Rounding]) -> str:
-    if not found:
-        return ""
-    lines = [
-        f"| {variant} | disk margin designed | rounded | largest pole designed | rounded |",
-        "| --- | --- | --- | --- | --- |",
-    ]
-    for each in found:
-        lines.append(
-            f"| {each.stance} | {each.designed.disk:.4f} | {each.rounded.disk:.4f} | {each.designed_radius:.6f} | "
-            f"{each.rounded_radius:.6f} |"
-        )
-    return "\n".join(lines) + "\n"

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 from balance.firmware.dialect import commands_of
 from balance.firmware.fields import fields_of
 from balance.firmware.flags import FLAGS
+from balance.firmware.names import macro
 from balance.firmware.program import Program
 from balance.firmware.text import comment
 
@@ -142,7 +143,7 @@ def _proof(big: str) -> str:
 
 
 def _stances(program: Program, big: str) -> str:
-    return "\n".join(f"#define {big}_{_big(name)} {i}u" for i, name in enumerate(program.stances))
+    return "\n".join(f"#define {big}_STANCE_{macro(name)} {i}u" for i, name in enumerate(program.stances))
 
 
 def _flags(big: str) -> str:
@@ -173,7 +174,3 @@ def _commands(program: Program, numbers: Numbers) -> str:
         scale = f", {numbers.scales[name]} binary places" if numbers.scales else ""
         lines.append(f"    {numbers.kind} {name}; /* {row.says}, {row.unit}{scale} */")
     return "\n".join(lines)
-
-
-def _big(name: str) -> str:
-    return "".join(c if c.isalnum() else "_" for c in name).upper()

@@ -61,7 +61,7 @@ class HostFirmware:
         """Return (the units' inputs, was anything clipped) for one sample's measurements, SI."""
         places = self.fixed.fields if self.fixed else None
         for k, (field, value) in enumerate(zip(fields_of(self.program), self._raw(measured), strict=True)):
-            setattr(self.reading, field.name, round(value * 2.0 ** places[k]) if places else value)
+            setattr(self.reading, field.name, _whole(value, places[k]) if places else value)
         self.reading.held = int(held)
         flags = int(self._update(ctypes.byref(self.state), ctypes.byref(self.reading), ctypes.byref(self.answer)))
         given = [getattr(self.answer, name) for name in commands_of(self.program)]
@@ -83,6 +83,11 @@ class HostFirmware:
             elif reading.kind == RATE:
                 rate = whole * e
         return [*direct, *force, *rate] if self.program.inertial else direct
+
+
+def _whole(value: float, places: int) -> int:
+    """Return a value as a 32-bit whole number; what does not fit is the largest, as a careful caller has it."""
+    return int(min(max(round(value * 2.0**places), -(2**31) + 1), 2**31 - 1))
 
 
 def _struct(name: str, fields: Sequence[tuple[str, object]]) -> type[ctypes.Structure]:

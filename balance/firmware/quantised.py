@@ -7,6 +7,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.optimize import linear_sum_assignment
 
 from balance.design.law import Law
 from balance.design.loop import close, sample_plant
@@ -30,9 +31,19 @@ class Rounding:
     stance: str
     designed: Margins
     rounded: Margins
-    designed_radius: float  # largest |z| of the closed loop
-    rounded_radius: float
+    designed_poles: tuple[complex, ...]  # of the closed loop per sample, largest |z| first
+    rounded_poles: tuple[complex, ...]  # each beside the designed one it came from
     cost: float
+
+    @property
+    def designed_radius(self) -> float:
+        """Return the largest |z| as designed."""
+        return max(abs(pole) for pole in self.designed_poles)
+
+    @property
+    def rounded_radius(self) -> float:
+        """Return the largest |z| as rounded."""
+        return max(abs(pole) for pole in self.rounded_poles)
 
 
 def to_places(value: float, places: int) -> float:
@@ -92,7 +103,7 @@ def _gains(fixed: Fixed, row: FixedRow, s: int, k: int, m: int) -> tuple[Array, 
 def roundings(designs: Sequence[Design], laws: Sequence[Law]) -> tuple[Rounding, ...]:
     """Return what rounding costs on every stance; the levelling's rounding is in it, as the plant's own."""
     out = []
-    for design, law in zip(designs, laws, strict=True):
+    for design, law, wide in zip(designs, laws, alike([d.law for d in designs]), strict=True):
         plant = replace(
             design.plant,
             allotment=law.allotment,
@@ -102,23 +113,28 @@ def roundings(designs: Sequence[Design], laws: Sequence[Law]) -> tuple[Rounding,
         )
         sampled = sample_plant(plant, law.sample_time, law.latency)
         rounded = margins_of(at_actuator(sampled, law))
-        before = close(sample_plant(design.plant, law.sample_time, law.latency), design.law)
-        cost = 1.0 - rounded.disk / design.margins.disk if rounded.stable else 1.0
+        before = close(sample_plant(design.plant, law.sample_time, law.latency), wide)
+        stable = rounded.stable and design.margins.stable
+        cost = 1.0 - rounded.disk / design.margins.disk if stable else 1.0
         out.append(
             Rounding(
                 design.plant.stance.name,
                 design.margins,
                 rounded,
-                _radius(before),
-                _radius(close(sampled, law)),
+                *_poles(before, close(sampled, law)),
                 float(cost),
             )
         )
     return tuple(out)
 
 
-def _radius(A: Array) -> float:
-    return float(np.abs(np.linalg.eigvals(A)).max())
+def _poles(before: Array, after: Array) -> tuple[tuple[complex, ...], tuple[complex, ...]]:
+    """Return (the poles of one loop, largest first, those of another in the order that brings the pairs closest)."""
+    was = np.linalg.eigvals(before).astype(np.complex128)
+    was = was[np.lexsort((was.imag, was.real, -np.abs(was)))]
+    now = np.linalg.eigvals(after).astype(np.complex128)
+    _, order = linear_sum_assignment(np.abs(was[:, None] - now[None, :]))
+    return tuple(complex(pole) for pole in was), tuple(complex(now[i]) for i in order)
 
 
 def too_dear(found: Sequence[Rounding]) -> str:

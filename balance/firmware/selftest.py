@@ -6,6 +6,7 @@ from balance.firmware.dialect import commands_of
 from balance.firmware.fields import fields_of
 from balance.firmware.program import Program
 from balance.firmware.text import comment
+from balance.firmware.vectors import REPEATS
 from balance.firmware.vectors_float import Vectors
 
 
@@ -43,7 +44,7 @@ def write_selftest(program: Program, vectors: Vectors, kind: str, suffix: str) -
 
 #define VECTORS {n}u
 
-{_bytes("actions", vectors.actions, "before the reading: 0 nothing, 1 reset, 2 init")}
+{_bytes("actions", vectors.actions, f"before the reading: 0 nothing, 1 reset, 2 init, 3 the same reading {REPEATS} times")}
 
 {_bytes("stances", vectors.stances, "the stance to init")}
 
@@ -79,10 +80,15 @@ uint16_t {p}_selftest(void)
     {p}_init(&state, 0u, {big}_PERIOD({program.period_us}));
     for (at = 0u; at < VECTORS; at++) {{
         const uint8_t action = FETCH_BYTE(actions[at]);
+        uint8_t more = (action == 3u) ? {REPEATS}u : 0u;
         uint16_t flags;
         if (action == 2u) {{ {p}_init(&state, FETCH_BYTE(stances[at]), {big}_PERIOD({program.period_us})); }}
         if (action == 1u) {{ {p}_reset(&state); }}
         read_vector(at, &reading);
+        while (more > 0u) {{
+            (void){p}_update(&state, &reading, &command);
+            more--;
+        }}
         flags = {p}_update(&state, &reading, &command);
         if ((compare(at, &command) == 0u) || (flags != FETCH_BYTE(flags_due[at]))) {{ differ++; }}
     }}

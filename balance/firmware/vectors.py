@@ -17,8 +17,11 @@ from balance.firmware.program import Program
 
 Array = NDArray[np.float64]
 
-UPDATE, RESET, INIT = 0, 1, 2
-"""What is done before the reading of a vector is given; INIT goes to the next stance."""
+UPDATE, RESET, INIT, REPEAT = 0, 1, 2, 3
+"""What is done before the reading of a vector is given; INIT goes to the next stance, REPEAT gives it REPEATS times more."""
+
+REPEATS = 254
+"""With these a counter of refusals that wraps at eight bits is back where the last good reading still stands in."""
 
 HELD = (2, 3, 4)
 """Samples of each part in which the machine is held."""
@@ -62,6 +65,7 @@ def plan_vectors(program: Program, least: int = 512, seed: int = 7) -> Plan:
             if k == 4:  # a long spell of refusals, past the patience, and back
                 spell = min(program.patience + 2, PER_PART - 4)
                 odd += [(first + 1 + i, 0, 0) for i in range(spell)]
+                actions[first + spell] = REPEAT
         stance = (stance + 1) % len(program.stances)
     held = tuple(int(i % PER_PART in HELD) for i in range(len(actions)))
     return Plan(np.vstack(rows), tuple(actions), tuple(stances), tuple(odd), held)

@@ -6,7 +6,7 @@ import numpy as np
 
 from balance.firmware.fixed_model import FixedModel
 from balance.firmware.scaling import Fixed
-from balance.firmware.vectors import INIT, RESET, Plan
+from balance.firmware.vectors import INIT, REPEAT, REPEATS, RESET, Plan
 from balance.firmware.vectors_float import Vectors
 
 MOST, LEAST = 2**31 - 1, -(2**31)
@@ -25,6 +25,8 @@ def fixed_vectors(fixed: Fixed, plan: Plan) -> Vectors:
             model.init(stance)
         elif action == RESET:
             model.reset()
+        for _ in range(REPEATS if action == REPEAT else 0):
+            model.update(row, bool(held))
         said, given = model.update(row, bool(held))
         flags.append(said)
         commands.append(given)

@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from balance.firmware.float_model import FloatModel
 from balance.firmware.program import Program
-from balance.firmware.vectors import INIT, RESET, Plan
+from balance.firmware.vectors import INIT, REPEAT, REPEATS, RESET, Plan
 
 Words = NDArray[np.uint32]
 
@@ -40,6 +40,8 @@ def float_vectors(program: Program, plan: Plan) -> Vectors:
             model.init(stance)
         elif action == RESET:
             model.reset()
+        for _ in range(REPEATS if action == REPEAT else 0):
+            model.update(row.view(np.float32), bool(held))
         said, given = model.update(row.view(np.float32), bool(held))
         flags.append(said)
         commands.append(np.array(given, dtype=np.float32).view(np.uint32))

@@ -42,6 +42,11 @@ def _head(program: Program) -> str:
             ),
             f'#include "{p}.h"',
             "",
+            "/* those switches let the compiler believe that there is no not-a-number: a broken reading would be taken */",
+            "#if defined(__FAST_MATH__) || (defined(__FINITE_MATH_ONLY__) && (__FINITE_MATH_ONLY__ > 0))",
+            '#error "compile this file without -ffast-math, -Ofast and -ffinite-math-only"',
+            "#endif",
+            "",
             comment(
                 "No multiply-add may be fused: two roundings in every term, or the results differ in the last bits from "
                 "the vectors. Compilers that know neither word need -ffp-contract=off; where fusing cannot be "
