@@ -15,7 +15,7 @@ from balance.design.loop import SampledPlant, actuator_break, close, sample_plan
 from balance.design.lqr import lqr_law
 from balance.design.margins import UNSTABLE, margins_of
 from balance.design.pid import design_pid
-from balance.design.records import Design, Response
+from balance.design.records import Design, Ideal, Response
 from balance.design.sampled_margins import at_actuator
 from balance.goal.goal import Complementary, Goal, LqrControl, PidControl
 from balance.plant.record import Plant
@@ -45,9 +45,17 @@ def measured(plant: Plant, sampled: SampledPlant, law: Law, goal: Goal) -> Desig
     """Return what a law does on a plant: poles, margins, the ideal beside it, what cannot be beaten."""
     T = sampled.sample_time
     poles = np.linalg.eigvals(close(sampled, law)).astype(np.complex128)
-    ideal = ideal_lqr(plant, goal.control) if isinstance(goal.control, LqrControl) else None
+    ideal = _ideal(plant, goal.control) if isinstance(goal.control, LqrControl) else None
     return Design(plant, law, poles, equivalent(poles, T), margins_of(at_actuator(sampled, law)),
                   loop_limits(plant, T, goal.loop.latency), ideal, response(sampled, law), "")
+
+
+def _ideal(plant: Plant, control: LqrControl) -> Ideal | None:
+    """Return the continuous design, or None where there is none (a mode at the edge that no input moves)."""
+    try:
+        return ideal_lqr(plant, control)
+    except np.linalg.LinAlgError:
+        return None
 
 
 def law_for(plant: Plant, sampled: SampledPlant, goal: Goal) -> Law | str:

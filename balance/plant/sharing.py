@@ -1,4 +1,4 @@
-"""How several units share one command about the line, and how their speeds are kept level without moving it."""
+"""How several units share one command about the line, and how what they store is kept level without moving it."""
 
 from __future__ import annotations
 
@@ -11,7 +11,7 @@ from balance.plant.record import Unit
 Array = NDArray[np.float64]
 
 LEVELLING_TIME = 0.5
-"""s: time constant in which wheels come back to one another; slow against any loop that holds the machine up."""
+"""s: time constant in which units come back to one another; slow against any loop that holds the machine up."""
 
 
 def line_torque_per_input(units: Array) -> Array:
@@ -43,23 +43,30 @@ def allotment(units: tuple[Unit, ...], gains: Array) -> Array:
 
 
 def levelling(rows: Array, shares: Array, first: list[int], width: int) -> Array:
-    """Return N (k, n): inputs += −N x moves no torque about the line and levels the wheels.
+    """Return N (k, n): inputs += −N x moves no torque about the line and levels what the units store.
 
-    Wheel speeds driven by the common command grow along d = w/e; what is off that direction is brought back with
-    `LEVELLING_TIME`: N = diag(e)(I − d cᵀ/(cᵀd))/T, and cᵀ e⁻¹ N = 0 by construction (c coupling, e own inertia).
+    Each levelled unit's own state (wheel speed Ω, servo's gimbal angle γ) grows by b per input: 1/e for wheels (e own
+    inertia), 1 for servos.  Under the common command all grow along d = b w; what is off that direction is brought back
+    with `LEVELLING_TIME`: N = diag(1/b)(I − d rᵀ/(rᵀd))/T, r the momentum per state, so rᵀ diag(b) N = 0 by construction.
+    Torque-driven gimbals are left out: they can only be commanded alone.
     """
     N = np.zeros((len(rows), width))
-    wheels = [i for i, row in enumerate(rows) if row[at.KIND] == at.WHEEL]
-    if len(rows) < 2 or not wheels:
+    kept = [i for i, row in enumerate(rows) if row[at.KIND] != at.GIMBAL_TORQUE]
+    if len(rows) < 2 or not kept:
         return N
-    e, c = rows[wheels, at.OWN_INERTIA], rows[wheels, at.COUPLING]
-    d = shares[wheels] / e
-    along = np.outer(d, c) / (c @ d) if c @ d != 0.0 else np.zeros((len(wheels), len(wheels)))
-    off = e[:, None] * (np.eye(len(wheels)) - along) / LEVELLING_TIME
-    for a, i in enumerate(wheels):
-        for b, j in enumerate(wheels):
-            N[i, first[j]] = off[a, b]
+    b = np.array([1.0 / rows[i, at.OWN_INERTIA] if rows[i, at.KIND] == at.WHEEL else 1.0 for i in kept])
+    r = np.array([_per_state(rows[i]) for i in kept])
+    d = b * shares[kept]
+    along = np.outer(d, r) / (r @ d) if r @ d != 0.0 else np.zeros((len(kept), len(kept)))
+    off = (np.eye(len(kept)) - along) / b[:, None] / LEVELLING_TIME
+    for k, i in enumerate(kept):
+        N[i, [first[j] for j in kept]] = off[k]
     return N
+
+
+def _per_state(row: Array) -> float:
+    """Return the momentum about the line per wheel speed (kg·m²) or per gimbal angle at zero (N·m·s/rad)."""
+    return float(row[at.COUPLING] if row[at.KIND] == at.WHEEL else row[at.COUNT] * row[at.MOMENTUM] * row[at.E_GXS0])
 
 
 def momentum_row(rows: Array, first: list[int], width: int) -> Array:
@@ -69,9 +76,7 @@ def momentum_row(rows: Array, first: list[int], width: int) -> Array:
     """
     r = np.zeros(width)
     for row, x in zip(rows, first, strict=True):
+        r[x] = _per_state(row)
         if row[at.KIND] == at.WHEEL:
-            r[x] = row[at.COUPLING]
             r[1] += row[at.COUPLING] ** 2 / row[at.OWN_INERTIA]
-        else:
-            r[x] = row[at.COUNT] * row[at.MOMENTUM] * row[at.E_GXS0]
     return r

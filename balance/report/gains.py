@@ -69,7 +69,7 @@ def share_table(design: Design) -> Table | None:
         level = " + ".join(terms).replace(f"+ {MINUS}", f"{MINUS} ") or "–"
         limit = amount(float(law.input_limits[i]), "N*m" if unit.drive == "torque" else "rad/s")
         rows.append(Row(unit.name, (figure(float(law.allotment[i]), 5), level, f"±{limit}")))
-    head = ("Unit", "Times the command", "Plus, to level the speeds", "Limit")
+    head = ("Unit", "Times the command", "Plus, to level what is stored", "Limit")
     return Table("How the command is shared", head, tuple(rows),
                  "The levelling moves momentum between the units and leaves the torque about the line as it is.")
 
