@@ -11,8 +11,11 @@ from balance.api.load import load
 from balance.design.build import design_stance
 from balance.design.robustness.ranges import ranges_of
 from balance.design.robustness.worst import worst_case
+from balance.goal.goal import Allow, Goal, Loop, LqrControl
+from balance.machine.tolerances import PairMismatch, Tolerances
 from balance.plant.build import build_plant
 from balance.stance.build import build_stance
+from tests.property.machines import random_machine
 from tests.property.units import Units, rescaled
 
 ROUNDING = 1e-5
@@ -42,3 +45,23 @@ def test_margins_are_the_same_and_deviations_scale(root, name: str, stance: str)
         assert set(a.at) == set(b.at)
     twin = replace(other, loop=job.goal.loop)
     assert worst_of(rescaled(job.machine, units), twin, stance).cases[0].value != pytest.approx(one.cases[0].value, rel=1e-3)
+
+
+@pytest.mark.parametrize("seed", [4, 7, 13, 18])
+def test_on_random_machines_no_worst_case_is_better_than_stated(seed: int) -> None:
+    """Gimballed flywheels, pairs and wheels mixed, on legs: a law for each, and margins that only get worse."""
+    machine = random_machine(np.random.default_rng(seed))
+    stance = machine.stance_names()[0]
+    plant = build_plant(machine, build_stance(machine, stance))
+    momentum, torque = min(0.3 * plant.momentum_capacity, 5.0), min(0.8 * plant.torque_limit, 50.0)
+    allow = Allow(0.05, 0.7, momentum, torque, 2.0)
+    goal = Goal(1, "any", "", Loop(500.0, 0.002, 3e-4, 5e-4), LqrControl(allow=allow), {})
+    design = design_stance(plant, goal)
+    assert design.margins.stable
+    tolerances = Tolerances(mass=0.03, height=0.004, inertia=0.05, torque_constant=0.08, bandwidth=0.2,
+                            flywheel_momentum=0.03, pair_mismatch=PairMismatch(angle=0.02))
+    worst = worst_case(design, ranges_of(plant, tolerances, goal.loop))
+    for case in worst.cases:
+        loses = case.value >= case.nominal if case.margin == "gain_lower" else case.value <= case.nominal
+        assert loses or np.isnan(case.value), case.margin
+    assert worst.cases[0].value < 0.995 * design.margins.disk, "and the disk margin in earnest"
