@@ -2,19 +2,24 @@
 
 from __future__ import annotations
 
+import subprocess
 import sys
 import tempfile
 from dataclasses import dataclass
 from pathlib import Path
 
+import numpy as np
+
+from balance.firmware.fields import fields_of
 from tests.firmware.builds import package, written
 from tests.firmware.targets.run import TARGETS, run_on
+from tests.firmware.test_arithmetic import raw_of
 
 CASES = ("scout-wheels", "bench-rig-sensed", "quay-gyros", "bench-rig-pid")
 BUILD = ("-O2",)
 UPDATES = 200
 HEAD = ("| design | variant | code, bytes (M4F) | RAM state | stack (M4F) | instructions M4F | M3 | M0 "
-        "| cycles ATmega2560 |", "| --- | --- | --- | --- | --- | --- | --- | --- | --- |")
+        "| cycles ATmega2560 | limited |", "| --- | --- | --- | --- | --- | --- | --- | --- | --- | --- |")
 
 MAIN = """
 #include "{prefix}.h"
@@ -47,11 +52,11 @@ class Cost:
     stack: int          # bytes
 
 
-def cost(case: str, variant: str, target: str, folder: Path) -> Cost:
-    """Measure one update in ordinary motion; the empty loop is taken off."""
+def cost(case: str, variant: str, target: str, folder: Path, *, limited: bool = False) -> Cost:
+    """Measure one update, in ordinary motion or with every limit at work; the empty loop is taken off."""
     home, program, fixed = written(case, folder), package(case).program, package(case).fixed
     p = program.prefix + variant
-    values = _ordinary(case, variant)
+    values = _reading(case, variant, limited=limited)
     assert fixed is not None
     fill = "\n".join(f"    reading.{name} = {value};" for name, value in values.items())
     main = home / f"cost{variant}.c"
@@ -64,8 +69,6 @@ def cost(case: str, variant: str, target: str, folder: Path) -> Cost:
 
 def code_bytes(case: str, variant: str, target: str, folder: Path) -> int:
     """Return the bytes of code and tables of the law's own object file."""
-    import subprocess
-
     home, p = written(case, folder), package(case).program.prefix + variant
     made = folder / f"{p}_{target}.o"
     words = TARGETS[target]
@@ -75,15 +78,16 @@ def code_bytes(case: str, variant: str, target: str, folder: Path) -> int:
     return int(size.stdout.splitlines()[1].split()[0])
 
 
-def _ordinary(case: str, variant: str) -> dict[str, str]:
-    """Return a reading in ordinary motion as C constants."""
-    from balance.firmware.fields import fields_of
-
-    out = {}
-    for field, places in zip(fields_of(package(case).program), package(case).fixed.fields, strict=True):
-        value = 9.8 if field.name == "accel_z_m_s2" else 3.0 if "speed" in field.name else 0.01
-        out[field.name] = f"INT32_C({round(value * 2.0**places)})" if variant else f"{value}f"
-    return out
+def _reading(case: str, variant: str, *, limited: bool) -> dict[str, str]:
+    """Return a reading as C constants: a hundredth of a radian of lean, or more lean than any command holds."""
+    program, fixed = package(case).program, package(case).fixed
+    assert fixed is not None
+    lean = 0.5 if limited else 0.01
+    row = [lean if r.name in ("lean", "tilt") else 2.0 * lean if r.name in ("lean_rate", "gyro") else
+           0.4 * r.most if limited else min(3.0, 0.1 * r.most) for r in program.readings]
+    raw = raw_of(program, 0, np.array(row))
+    return {field.name: f"INT32_C({round(value * 2.0**places)})" if variant else f"{value:.6f}f"
+            for field, value, places in zip(fields_of(program), raw, fixed.fields, strict=True)}
 
 
 def line(case: str, variant: str, folder: Path) -> str:
@@ -91,7 +95,8 @@ def line(case: str, variant: str, folder: Path) -> str:
     program = package(case).program
     found = {name: cost(case, variant, name, folder) for name in ("m4f", "m3", "m0", "avr")}
     ram = 4 * (max(len(program.memory), 1) + len(program.readings)) + 4
-    counts = " | ".join(f"{found[name].count:,.0f}" for name in found)
+    counts = " | ".join([f"{each.count:,.0f}" for each in found.values()]
+                        + [f"{cost(case, variant, 'avr', folder, limited=True).count:,.0f}"])
     return (f"| {case} | {'fixed point' if variant else 'float32'} | {code_bytes(case, variant, 'm4f', folder):,} | {ram} | "
             f"{found['m4f'].stack} | {counts} |")
 
