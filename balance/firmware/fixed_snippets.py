@@ -10,12 +10,25 @@ INLINED int32_t down(int32_t number, uint8_t places)
 }
 
 /* (number * gain) >> 16 from two products of 16 by 16 bits, rounded down */
+#if defined(__AVR__)
+/* the same number: with the gain's bits taken as unsigned, part * 2^16 too much is added where it is negative; this
+ * way the compiler sees two short products and not two of 32 bits */
+INLINED int32_t product(int32_t number, int16_t gain)
+{
+    const int32_t high = (int32_t)(int16_t)down(number, 16u) * (int32_t)gain;
+    const uint16_t part = (uint16_t)((uint32_t)number & 0xFFFFu);
+    const uint32_t low = ((uint32_t)part * (uint32_t)(uint16_t)gain) >> 16u;
+    const int32_t sum = high + (int32_t)low;
+    return (gain < 0) ? (sum - (int32_t)part) : sum;
+}
+#else
 INLINED int32_t product(int32_t number, int16_t gain)
 {
     const int32_t high = (int32_t)(int16_t)down(number, 16u) * (int32_t)gain;
     const int32_t low = (int32_t)(uint16_t)((uint32_t)number & 0xFFFFu) * (int32_t)gain;
     return high + down(low, 16u);
 }
+#endif
 
 INLINED int32_t within(int32_t number, int32_t most)
 {

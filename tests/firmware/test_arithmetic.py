@@ -296,3 +296,12 @@ def test_manifests_name_files_that_are_there():
         assert named
         assert all(f"src/{name}" in files for name in named)
     assert "includes=scout_wheels.h" in files["library.properties"]
+
+
+@given(st.integers(-(2**31), 2**31 - 1), st.integers(-NARROW - 1, NARROW))
+def test_the_short_way_to_a_product_is_the_same_number(x, gain):
+    """What an AVR does: the gain's bits as unsigned, and what that adds taken off again; 32 bits hold every step."""
+    part, high = x & 0xFFFF, (x >> 16) * gain
+    low = (part * (gain & 0xFFFF)) >> 16
+    assert -(2**31) <= high + low < 2**31
+    assert (high + low - part if gain < 0 else high + low) == product(x, gain)

@@ -74,7 +74,7 @@ def test_another_period_does_not_compile(tmp_path: Path) -> None:
 
 
 @pytest.mark.parametrize("variant", VARIANTS, ids=["float32", "fixed"])
-@pytest.mark.parametrize("case", ["scout-wheels", "bench-rig-sensed", "bench-rig-pid"])
+@pytest.mark.parametrize("case", CASES)
 def test_no_required_rule_is_broken_beyond_the_listed_deviation(case: str, variant: str, tmp_path: Path) -> None:
     tool("cppcheck")
     _, files, _ = sources(case, variant, tmp_path)
