@@ -126,7 +126,12 @@ def run_recover(asked: argparse.Namespace, progress: Progress) -> Outcome:
         **json_recover(trials),
         **json_verdicts(verdicts),
     }
-    return Outcome(_code(answer), show_recover(designs, trials, verdicts), answer)
+    text = show_recover(designs, trials, verdicts)
+    if asked.audit:
+        from balance.cli.show_audit import with_audit
+
+        text = with_audit(job, designs, answer, text, progress.tell)
+    return Outcome(_code(answer), text, answer)
 
 
 def _recover_compiled(asked: argparse.Namespace, job: Job, designs: tuple[Design, ...], progress: Progress) -> Outcome:
@@ -172,7 +177,12 @@ def run_check(asked: argparse.Namespace, progress: Progress) -> Outcome:
     result = check(job, progress.tell)
     page = report(result, asked.out or output_folder(asked.file), progress.tell)
     answer = {**json_check(result), "report": page}
-    return Outcome(_code(answer), show_check(result, page), answer)
+    text = show_check(result, page)
+    if asked.audit:
+        from balance.cli.show_audit import with_audit
+
+        text = with_audit(job, result.designs, answer, text, progress.tell)
+    return Outcome(_code(answer), text, answer)
 
 
 def run_new(asked: argparse.Namespace, progress: Progress) -> Outcome:

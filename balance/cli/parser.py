@@ -117,6 +117,9 @@ def _own_words(name: str, parser: argparse.ArgumentParser) -> None:
         compiled = "run the trials on the written C, compiled here, in place of the simulator's own law"
         parser.add_argument("--with-firmware", action="store_true", help=compiled)
         parser.add_argument("--fixed-point", action="store_true", help="with --with-firmware: its fixed-point variant")
+    if name in ("check", "recover"):
+        twice = "run every trial once more in steps a quarter as long, and say what that changes"
+        parser.add_argument("--audit", action="store_true", help=twice)
     if name == "check":
         parser.add_argument(
             "--out",

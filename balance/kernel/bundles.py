@@ -8,6 +8,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from balance.kernel import outcome
+from balance.kernel.layout import BUS, BUS_VOLTAGE, KIND, ROLE, SOURCE_AMPS, SOURCE_OHMS, SOURCE_POWER, WHEEL
+from balance.kernel.supply import most_power
 
 Array = NDArray[np.float64]
 Places = NDArray[np.int64]
@@ -112,6 +114,9 @@ def fresh_work(body: Array, units: Array, law: LawArrays, events: Events) -> Wor
     whole = int(np.floor((law.latency + max(late, default=0.0)) / law.sample_time + 1e-9))
     queue = np.zeros((whole + 2, count + 1))
     queue[:, count] = -np.inf
-    return Work(np.zeros((NUMBERS, width)), np.zeros((FLAGS, width), np.int64), body.copy(), body.copy(), units.copy(),
-                queue, np.zeros((events.torques.shape[0], outcome.TORQUE_SIZE)),
+    live, last = units.copy(), units[-1]
+    if last[KIND] == WHEEL and last[ROLE] == BUS:
+        live[-1, SOURCE_POWER] = most_power.py_func(last[BUS_VOLTAGE], last[SOURCE_OHMS], last[SOURCE_AMPS])
+    return Work(np.zeros((NUMBERS, width)), np.zeros((FLAGS, width), np.int64), body.copy(), body.copy(), live, queue,
+                np.zeros((events.torques.shape[0], outcome.TORQUE_SIZE)),
                 np.full((count + 1, outcome.LIMITS, 2), np.inf))

@@ -116,6 +116,8 @@ def lean_acceleration(X: Array, inputs: Array, disturbance: float, body: Array, 
     torque = gravity_torque(X[0], body) + push + disturbance - body[BODY_DRAG] * X[1]
     for i in range(units.shape[0]):
         if units[i, KIND] == WHEEL:
+            if units[i, COUPLING] == 0.0:                  # square to the line, or no wheel at all: the supply
+                continue
             net = inputs[i] - wheel_drag(X[2 + 2 * i], units[i, COULOMB], units[i, VISCOUS], units[i, STICTION])
             mass -= units[i, COUPLING] ** 2 / units[i, OWN_INERTIA]
             torque -= units[i, COUPLING] / units[i, OWN_INERTIA] * net

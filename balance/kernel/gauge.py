@@ -40,6 +40,8 @@ def line_torque(X: Array, dX: Array, units: Array) -> float:
     total = 0.0
     for i in range(units.shape[0]):
         if units[i, KIND] == WHEEL:
+            if units[i, COUPLING] == 0.0:
+                continue
             own = units[i, OWN_INERTIA] * dX[2 + 2 * i] + units[i, COUPLING] * dX[1]
             total += units[i, COUPLING] / units[i, OWN_INERTIA] * own
         else:
@@ -53,6 +55,8 @@ def line_momentum(X: Array, units: Array) -> float:
     total = 0.0
     for i in range(units.shape[0]):
         if units[i, KIND] == WHEEL:
+            if units[i, COUPLING] == 0.0:
+                continue
             own = units[i, OWN_INERTIA] * X[2 + 2 * i] + units[i, COUPLING] * X[1]
             total += units[i, COUPLING] / units[i, OWN_INERTIA] * own
         else:
@@ -94,8 +98,9 @@ def bus_power(X: Array, dX: Array, units: Array) -> tuple[float, float]:
     for i in range(units.shape[0]):
         a, b = X[2 + 2 * i], X[3 + 2 * i]
         if units[i, KIND] == WHEEL:
-            power += b * (units[i, RESISTANCE] * b + units[i, BACK_EMF] * a)
-            current = max(current, abs(b) if units[i, ROLE] == MOTOR else 0.0)
+            if units[i, ROLE] == MOTOR:
+                power += b * (units[i, RESISTANCE] * b + units[i, BACK_EMF] * a)
+                current = max(current, abs(b))
         else:
             _, _, coupling, back = gimbal_terms(i, a, b, X[1], units)
             drive = units[i, GIMBAL_INERTIA] * dX[3 + 2 * i] + coupling * dX[1] - back
@@ -130,7 +135,7 @@ def watch(t: float, h: float, X: Array, dX: Array, body: Array, units: Array, me
         metrics[outcome.SATURATED] += h
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@njit(cache=True, error_model="numpy", forceinline=True)
 def watch_bus(X: Array, units: Array, live: Array, metrics: Array) -> None:
     """Gather the peaks of the bus: voltage, sag below the healthy supply's own voltage, current out of the supply."""
     bus = bus_row(units)

@@ -117,14 +117,16 @@ def rates(X: Array, torque: float, commands: Array, body: Array, live: Array, me
           slopes: Array, out: Array) -> None:
     """Fill `out` with dX/dt under held commands and a torque about the line; `met` with each unit's limit."""
     bus = bus_row(live)
-    power = put_voltage(X, bus, live) if bus >= 0 else 0.0
+    power, volts = 0.0, 0.0
+    if bus >= 0:
+        power, volts = put_voltage(X, bus, live)
     geared = 0
     for i in range(live.shape[0]):
         inputs[i], slopes[i], met[i] = unit_input(live, i, X[2 + 2 * i], X[3 + 2 * i], X[1], commands[i])
         if live[i, KIND] == WHEEL and live[i, ROLE] == TOOTHED:
             geared = 1
     if bus >= 0:
-        share_bus(X, power, bus, live, slopes, met, inputs)
+        share_bus(X, power, volts, bus, live, slopes, met, inputs)
     if geared == 1:
         press_teeth(X, live, inputs, slopes)
     derivative(X, inputs, torque, body, live, out)

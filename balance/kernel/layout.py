@@ -64,6 +64,7 @@ BUS = 2            # the supply; states (energy above the open-circuit voltage i
 PARTNER = 12       # row of its motor
 
 # the supply: COUPLING 0, OWN_INERTIA 1, so that the equations of motion pass it by; BUS_VOLTAGE is its open-circuit voltage
+SOURCE_POWER = 10  # W, the most it gives at its present voltage (`supply.most_power`); inf: no limit
 SOURCE_OHMS = 12
 SOURCE_AMPS = 13   # inf: no limit
 TAKES_BACK = 18    # 1: takes current back

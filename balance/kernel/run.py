@@ -48,12 +48,15 @@ from balance.kernel.layout import (
     OFFSET,
     RATE_LIMIT,
     RESOLUTION,
+    SOURCE_AMPS,
+    SOURCE_OHMS,
+    SOURCE_POWER,
     STIFF_COS,
     WHEEL,
 )
 from balance.kernel.sensing import digitised, scrambled
 from balance.kernel.stops import rates_now, release_stops, run_piece
-from balance.kernel.supply import bus_row
+from balance.kernel.supply import bus_row, most_power
 from balance.kernel.tick import law_tick, measure, reads_sensor, servo_steps, share_out
 
 Array = NDArray[np.float64]
@@ -253,7 +256,9 @@ def weaken_supply(t: float, units: Array, events: Events, work: Work) -> None:
         spell = events.spells[i]
         if spell[outcome.WHAT] == outcome.SUPPLY_LEFT and spell[outcome.START] <= t < spell[outcome.END]:
             left *= spell[outcome.VALUE]
-    work.live[bus, BUS_VOLTAGE] = left * units[bus, BUS_VOLTAGE]
+    volts = left * units[bus, BUS_VOLTAGE]
+    work.live[bus, BUS_VOLTAGE] = volts
+    work.live[bus, SOURCE_POWER] = most_power(volts, units[bus, SOURCE_OHMS], units[bus, SOURCE_AMPS])
 
 
 @njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)

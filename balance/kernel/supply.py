@@ -23,8 +23,8 @@ from balance.kernel.layout import (
     OVERVOLTAGE,
     RESISTANCE,
     ROLE,
-    SOURCE_AMPS,
     SOURCE_OHMS,
+    SOURCE_POWER,
     TAKES_BACK,
     WHEEL,
 )
@@ -43,6 +43,8 @@ SLACK = 1e-9
 @njit(cache=True, error_model="numpy", forceinline=True)
 def sagging_voltage(power: float, open_voltage: float, ohms: float) -> float:
     """Return V in V: V² − V₀ V + R_b P = 0, the upper root; V₀/2 where more is asked than any load can draw."""
+    if ohms == 0.0:
+        return open_voltage
     left = open_voltage * open_voltage - 4.0 * ohms * power
     return float(0.5 * (open_voltage + np.sqrt(max(left, 0.0))))
 
@@ -98,7 +100,7 @@ def power_taken_back(volts: float, overvoltage: float, ohms: float, farads: floa
     return float(max(brake_power(volts, overvoltage, ohms) + room, 0.0))
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@njit(cache=True, error_model="numpy", forceinline=True)
 def bus_row(units: Array) -> int:
     """Return the supply's row, the last one; -1: the units have none."""
     last = units.shape[0] - 1
@@ -115,7 +117,7 @@ def motor_power(X: Array, units: Array) -> float:
     return power
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@njit(cache=True, error_model="numpy", forceinline=True)
 def bus_voltage(X: Array, power: float, units: Array, bus: int) -> float:
     """Return the bus voltage in V. A bus that cannot give back stands above V₀ while its capacitor holds energy."""
     if units[bus, TAKES_BACK] == 0.0 and (X[2 + 2 * bus] > 0.0 or power < 0.0):
@@ -123,44 +125,46 @@ def bus_voltage(X: Array, power: float, units: Array, bus: int) -> float:
     return float(sagging_voltage(power, units[bus, BUS_VOLTAGE], units[bus, SOURCE_OHMS]))
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
-def put_voltage(X: Array, bus: int, live: Array) -> float:
-    """Write the bus voltage into every motor's row; return the motors' power in W."""
+@njit(cache=True, error_model="numpy", forceinline=True)
+def put_voltage(X: Array, bus: int, live: Array) -> tuple[float, float]:
+    """Write the bus voltage into every motor's row; return (the motors' power in W, the voltage in V)."""
     power = float(motor_power(X, live))
     volts = bus_voltage(X, power, live, bus)
     for i in range(bus):
         if live[i, KIND] == WHEEL:
             live[i, BUS_VOLTAGE] = volts
-    return power
+    return power, volts
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
-def share_bus(X: Array, power: float, bus: int, live: Array, slopes: Array, met: Flags, inputs: Array) -> None:
+@njit(cache=True, error_model="numpy", forceinline=True)
+def share_bus(X: Array, power: float, volts: float, bus: int, live: Array, slopes: Array, met: Flags, inputs: Array) -> None:
     """Cut the currents the motors head for to what the bus gives and takes, all alike; put the bus's own rates.
 
     Motors that draw share the supply's current limit, motors that brake what the bus takes back.
     """
-    open_voltage, takes_back = live[bus, BUS_VOLTAGE], live[bus, TAKES_BACK] != 0.0
-    volts = bus_voltage(X, power, live, bus)
-    most = most_power(open_voltage, live[bus, SOURCE_OHMS], live[bus, SOURCE_AMPS])
+    takes_back = live[bus, TAKES_BACK] != 0.0
+    most = live[bus, SOURCE_POWER]
     back = np.inf if takes_back else power_taken_back(volts, live[bus, OVERVOLTAGE], live[bus, BRAKE_OHMS],
                                                       live[bus, CAPACITANCE])
     met[bus] = outcome.NO_LIMIT
     if most < np.inf or back < np.inf:
         cut_currents(X, bus, live, most, back, slopes, met)
-    burnt = 0.0 if takes_back else brake_power(volts, live[bus, OVERVOLTAGE], live[bus, BRAKE_OHMS])
-    above = X[2 + 2 * bus] > 0.0
-    gained = 0.0
-    if not takes_back and (above or power < 0.0):
-        gained = -power - burnt if above else max(-power - burnt, 0.0)
-    inputs[bus], slopes[bus] = gained, burnt
+    inputs[bus], slopes[bus] = 0.0, 0.0
     for i in range(bus):
         motor = live[i, KIND] == WHEEL and live[i, ROLE] == MOTOR
         if motor and abs(live[i, BACK_EMF] * X[2 + 2 * i]) > volts * (1.0 + SLACK):
             met[i] = outcome.FORCED
+    if takes_back:
+        return
+    burnt = brake_power(volts, live[bus, OVERVOLTAGE], live[bus, BRAKE_OHMS])
+    above = X[2 + 2 * bus] > 0.0
+    gained = 0.0
+    if above or power < 0.0:
+        gained = -power - burnt if above else max(-power - burnt, 0.0)
+    inputs[bus], slopes[bus] = gained, burnt
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@njit(cache=True, error_model="numpy", forceinline=True)
 def cut_currents(X: Array, bus: int, live: Array, most: float, back: float, slopes: Array, met: Flags) -> None:
     """Scale the target currents so that their power stays between -back and `most`."""
     heat_drawn, push_drawn, heat_given, push_given = 0.0, 0.0, 0.0, 0.0

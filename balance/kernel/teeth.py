@@ -33,7 +33,7 @@ def tooth_torque(gap: float, closing: float, play: float, stiffness: float, damp
     return 0.0
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@njit(cache=True, error_model="numpy", forceinline=True)
 def press_teeth(X: Array, units: Array, inputs: Array, slopes: Array) -> None:
     """Put what each toothed wheel and its motor do to each other: equal and opposite, both seen at the wheel."""
     for i in range(units.shape[0]):

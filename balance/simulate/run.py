@@ -72,13 +72,14 @@ def _needs_supply(goal: Goal) -> list[Problem]:
 
 
 def run_one(design: Design, goal: Goal, name: str, trial: Trial, toward: str, record: bool,
-            controller: Controller | None = None) -> TrialResult:
+            controller: Controller | None = None, finer: float = 1.0) -> TrialResult:
     """Run one trial in one direction. Sensor noise is drawn from the trial's name and direction: every run is alike.
 
-    `controller` stands in the law's place; without one the kernel runs the law itself.
+    `controller` stands in the law's place; without one the kernel runs the law itself. `finer`: by how much the
+    sub-steps of the integrator are shortened.
     """
     plant, units = design.plant, kernel_units(design.plant)
-    event = happening(trial, toward, plant.body_parameters, goal.loop, longest_step(units),
+    event = happening(trial, toward, plant.body_parameters, goal.loop, longest_step(units) / finer,
                       plant.sensor_parameters, crc32(f"{name} {toward}".encode()))
     samples = math.ceil(trial.lasts / design.law.sample_time - 1e-9)
     output = empty_output(len(units), samples, record)
