@@ -42,8 +42,8 @@ def audit_trials(design: Design, goal: Goal, machine: Machine) -> tuple[Audit, .
     """Run every trial of `goal` twice, the second time with steps a quarter as long; none where the design was refused."""
     coarse = run_trials(design, goal, machine, True)
     asked = [(name, trial, toward) for name, trial in goal.trials.items() for toward in directions(trial)]
-    return tuple(_compared(one, run_one(design, goal, name, trial, toward, True, finer=FINER), design.plant.momentum_capacity)
-                 for one, (name, trial, toward) in zip(coarse, asked if coarse else [], strict=True))
+    finer = [run_one(design, goal, *one, True, finer=FINER) for one in (asked if coarse else [])]
+    return tuple(_compared(*pair, design.plant.momentum_capacity) for pair in zip(coarse, finer, strict=True))
 
 
 def _compared(one: TrialResult, finer: TrialResult, capacity: float) -> Audit:
