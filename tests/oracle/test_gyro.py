@@ -136,4 +136,4 @@ def test_single_and_pair():
     units[0, at.COUNT] = about_up[0, at.COUNT] = 2
     assert useful(units) == pytest.approx(10.3923, rel=1e-5)
     assert useful(about_up) == pytest.approx(0.0, abs=1e-12)
-    assert line_momentum(np.array([0.0, 0.0, pi / 3, 0.0]), units) == pytest.approx(3.4641, rel=1e-5)
+    assert line_momentum.py_func(np.array([0.0, 0.0, pi / 3, 0.0]), units) == pytest.approx(3.4641, rel=1e-5)
