@@ -12,9 +12,9 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.optimize import brentq, minimize_scalar
 
 from balance.design.records import Crossing, Margins
+from balance.maths.search import largest_between, root_between
 
 Array = NDArray[np.float64]
 Complex = NDArray[np.complex128]
@@ -75,8 +75,8 @@ def _refined(loop: BrokenView, w: Array, values: Array, of: Callable[[Complex], 
     """Return the frequencies where `of`(L) changes sign, refined from the grid."""
     out = []
     for i in np.flatnonzero(np.signbit(values[:-1]) != np.signbit(values[1:])):
-        out.append(float(brentq(lambda x: float(of(loop.response(np.array([x])))[0]), w[i], w[i + 1],
-                                xtol=1e-12 * w[i], rtol=1e-13)))
+        out.append(root_between(lambda x: float(of(loop.response(np.array([x])))[0]), float(w[i]), float(w[i + 1]),
+                                1e-12 * float(w[i])))
     return out
 
 
@@ -133,7 +133,7 @@ def _delay_margin(loop: BrokenView, phases: list[Crossing]) -> float:
     for _ in range(64):
         high = low + step
         if loop.growth(1.0, high) > 0.0:
-            return float(brentq(lambda d: loop.growth(1.0, d), low, high, xtol=1e-9 * guess))
+            return root_between(lambda d: float(loop.growth(1.0, d)), low, high, 1e-9 * guess)
         low = high
     return float("inf")
 
@@ -143,8 +143,7 @@ def _peak(loop: BrokenView, w: Array, of: Callable[[Complex], Array]) -> float:
     values = of(loop.response(w))
     i = int(np.argmax(values))
     best = float(values[i])
-    low, high = np.log(w[max(i - 1, 0)]), np.log(w[min(i + 1, len(w) - 1)])
-    found = minimize_scalar(lambda x: -float(of(loop.response(np.array([np.exp(x)])))[0]), bounds=(low, high),
-                            method="bounded", options={"xatol": 1e-10})
+    low, high = float(np.log(w[max(i - 1, 0)])), float(np.log(w[min(i + 1, len(w) - 1)]))
+    found = largest_between(lambda x: float(of(loop.response(np.array([np.exp(x)])))[0]), low, high, 1e-8)
     ends = [float(of(np.array([complex(v)]))[0]) for v in loop.ends if v is not None]
-    return max(best, -float(found.fun), *ends, best)
+    return max(best, found, *ends)
