@@ -12,6 +12,7 @@ from balance.firmware.header import CAUTION
 from balance.firmware.names import macro
 from balance.firmware.program import Program
 from balance.firmware.quantised import Rounding
+from balance.firmware.reach import settling_samples
 from balance.firmware.rounding_tables import rounding_tables
 from balance.firmware.scaling import Fixed
 
@@ -63,6 +64,8 @@ A sample that was missed (sensor late, bus error): call `update` all the same, w
 `INT32_MIN` in fixed point). The last good reading stands in, and after {program.patience} of them in a row all
 commands are zero.
 
+{_before_release(designs)}
+
 The command must reach the actuators {program.latency * 1e3:g} ms after the readings were taken: the gains count on it. Call
 `init` with another stance when other feet are down. Variants: {variants}.
 {_refused(refused)}
@@ -108,6 +111,19 @@ def _use(program: Program) -> str:
     return "\n".join(
         f"    /* put out command.{name} ({row.unit}) */"
         for name, row in zip(commands_of(program), program.inputs, strict=True)
+    )
+
+
+def _before_release(designs: Sequence[Design]) -> str:
+    """Return how long the memory needs before the machine may be let go."""
+    counts = [settling_samples(design.law) for design in designs]
+    if min(counts) == 0:
+        return "The memory starts empty and does not forget by itself: set `held` from `init` to the moment of release."
+    seconds = max(counts) * designs[0].law.sample_time
+    return (
+        "The memory (past commands, filters, the estimate of the lean) starts empty. Before the machine is let go, call\n"
+        f"`update` with `held` set for at least {max(counts)} samples, {seconds:.3g} s: 1 % of the wrong start is left.\n"
+        "The same holds after a spell of SAFE: catch the machine, then begin anew."
     )
 
 

@@ -13,6 +13,17 @@ LONGEST = 400_000
 """Samples summed one by one; what is left after them is bounded by the slowest pole."""
 
 
+def settling_samples(law: Law) -> int:
+    """Return after how many samples of a held machine (commands zero) what the memory began with is 1 % of itself.
+
+    ln 0.01 / ln |z| of the slowest pole of A; at least 1, 0 where A alone does not decay.
+    """
+    slowest = float(np.abs(np.linalg.eigvals(law.A)).max()) if len(law.memory) else 0.0
+    if slowest >= 1.0 - 1e-9:
+        return 0
+    return max(int(np.ceil(np.log(0.01) / np.log(slowest))), 1) if slowest > 0.0 else 1
+
+
 def memory_reach(law: Law, readings: Array) -> Array:
     """Return the largest magnitude (k,) of each memory under any readings within ± `readings` (m,) and any limited command.
 
