@@ -5,8 +5,9 @@ from __future__ import annotations
 from balance.api.json_margins import json_margins
 from balance.api.json_numbers import Tree, complexes, number, row
 from balance.api.json_robust import json_robust
+from balance.design.at_rest import noise_rms
 from balance.design.law import Law
-from balance.design.records import Design, Ideal
+from balance.design.records import BodeIntegral, Design, Ideal
 
 
 def json_gains(designs: tuple[Design, ...]) -> Tree:
@@ -32,9 +33,27 @@ def _stance(design: Design) -> Tree:
             "pole_times_delay": number(design.limits.pole_times_delay),
             "least_peak_complementary": number(design.limits.least_peak_complementary),
             "total_delay_s": number(design.limits.total_delay),
+            "largest_disk": number(design.limits.largest_disk),
+            "least_peak_sensitivity": number(design.limits.least_peak_sensitivity),
         },
+        "bode_integral": _integral(design.integral),
+        "noise": _noise(design),
         **json_robust(design),
     }
+
+
+def _integral(integral: BodeIntegral | None) -> Tree | None:
+    if integral is None:
+        return None
+    return {"found": number(integral.found), "due": number(integral.due), "holds": integral.holds}
+
+
+def _noise(design: Design) -> Tree | None:
+    found = noise_rms(design)
+    if found is None:
+        return None
+    return {"lean_rms_rad": number(found.lean), "lean_rate_rms_rad_s": number(found.lean_rate),
+            "torque_rms_n_m": number(found.torque), "momentum_rms_n_m_s": number(found.momentum)}
 
 
 def _gains(law: Law) -> Tree:

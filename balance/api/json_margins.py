@@ -17,13 +17,19 @@ def json_margins(margins: Margins) -> Tree:
         "phase_deg": number(math.degrees(margins.phase)),
         "phase_crossover_rad_s": number(margins.phase_crossover),
         "delay_s": number(margins.delay),
+        "phase_crossover_hz": number(margins.phase_crossover / math.tau),
         "delay_estimate_s": number(margins.delay_estimate),
         "modulus": number(margins.modulus),
         "disk": number(margins.disk),
         "peak_sensitivity": number(margins.peak_sensitivity),
         "peak_complementary": number(margins.peak_complementary),
         "crossings": [
-            {"kind": c.kind, "frequency_rad_s": number(c.frequency), **_crossing_value(c.kind, c.value)}
+            {
+                "kind": c.kind,
+                "frequency_rad_s": number(c.frequency),
+                "frequency_hz": number(c.frequency / math.tau),
+                **_crossing_value(c.kind, c.value),
+            }
             for c in margins.crossings
         ],
     }

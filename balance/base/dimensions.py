@@ -56,6 +56,9 @@ _ALL = (
     Dimension("power", ("W",), "60 W"),
     Dimension("stress", ("Pa",), "250 MPa"),
     Dimension("gyro noise", ("rad/s/sqrt(Hz)",), "0.005 deg/s/sqrt(Hz)"),
+    Dimension("torque noise", ("N*m/sqrt(Hz)",), "0.02 N*m/sqrt(Hz)"),
+    Dimension("rate drift", ("rad/s/sqrt(s)",), "0.001 deg/s/sqrt(s)"),
+    Dimension("angle drift", ("rad/sqrt(s)",), "0.05 deg/sqrt(s)"),
     Dimension("acceleration noise", ("m/s^2/sqrt(Hz)",), "120 ug/sqrt(Hz)"),
 )
 

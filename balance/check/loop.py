@@ -6,6 +6,7 @@ import math
 
 from balance.check.records import Verdict
 from balance.check.tolerances import judge_tolerances
+from balance.design.limits import beyond
 from balance.design.records import Design, Margins
 from balance.design.steady import tolerable_offset
 from balance.goal.goal import Requirements
@@ -17,12 +18,13 @@ def judge_loop(require: Requirements, design: Design) -> list[Verdict]:
     """Return one verdict per margin asked for; the loop's stability is always judged, first."""
     stance, margins = design.plant.stance.name, design.margins
     verdicts = [_stability(design)]
+    out_of_reach = beyond(require, design.plant, design.law.latency, design.limits)
     for name, limit, value, unit, sense in _asked(require, margins):
         if not margins.stable:
             verdicts.append(Verdict(name, stance, math.nan, unit, limit, sense, False, UNSTABLE))
             continue
         passed = bool(value <= limit if sense == "at most" else value >= limit)
-        reason = "" if passed else _why(name, value, limit)
+        reason = "" if passed else out_of_reach.get(name) or _why(name, value, limit)
         verdicts.append(Verdict(name, stance, value, unit, limit, sense, passed, reason))
     if require.offset_error is not None:
         verdicts.append(_offset(require.offset_error, design))

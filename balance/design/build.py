@@ -6,9 +6,11 @@ import numpy as np
 from numpy.typing import NDArray
 
 from balance.base.errors import InputError, Problem
+from balance.design.bode_integral import bode_integral
 from balance.design.command import command_unit
 from balance.design.complementary import complementary
 from balance.design.ideal import ideal_lqr
+from balance.design.kalman import kalman, sensor_sigma
 from balance.design.law import Law
 from balance.design.limits import loop_limits
 from balance.design.loop import SampledPlant, actuator_break, close, sample_plant
@@ -17,7 +19,7 @@ from balance.design.margins import UNSTABLE, margins_of
 from balance.design.pid import design_pid
 from balance.design.records import Design, Ideal, Response
 from balance.design.sampled_margins import at_actuator
-from balance.goal.goal import Complementary, Goal, LqrControl, PidControl
+from balance.goal.goal import Complementary, Goal, Kalman, LqrControl, NoEstimator, PidControl
 from balance.plant.record import Plant
 
 Array = NDArray[np.float64]
@@ -46,8 +48,10 @@ def measured(plant: Plant, sampled: SampledPlant, law: Law, goal: Goal) -> Desig
     T = sampled.sample_time
     poles = np.linalg.eigvals(close(sampled, law)).astype(np.complex128)
     ideal = _ideal(plant, goal.control) if isinstance(goal.control, LqrControl) else None
-    return Design(plant, law, poles, equivalent(poles, T), margins_of(at_actuator(sampled, law)),
-                  loop_limits(plant, T, goal.loop.latency), ideal, response(sampled, law), "")
+    margins = margins_of(at_actuator(sampled, law))
+    integral = bode_integral(actuator_break(sampled, law)) if margins.stable else None
+    return Design(plant, law, poles, equivalent(poles, T), margins, loop_limits(plant, T, goal.loop.latency), ideal,
+                  response(sampled, law), integral, "")
 
 
 def _ideal(plant: Plant, control: LqrControl) -> Ideal | None:
@@ -60,10 +64,16 @@ def _ideal(plant: Plant, control: LqrControl) -> Ideal | None:
 
 def law_for(plant: Plant, sampled: SampledPlant, goal: Goal) -> Law | str:
     """Return the law with its estimator, or why there is none."""
+    check_noise(plant, goal)
     found = _law(plant, sampled, goal)
-    if isinstance(found, Law) and isinstance(goal.estimator, Complementary):
+    if isinstance(found, str) or isinstance(goal.estimator, NoEstimator):
+        return found
+    if isinstance(goal.estimator, Complementary):
         return complementary(found, goal.estimator.crossover)
-    return found
+    try:
+        return kalman(found, plant, sampled, goal.estimator)
+    except np.linalg.LinAlgError:
+        return "no Kalman filter with these noises: its Riccati equation has no stabilising solution"
 
 
 def _law(plant: Plant, sampled: SampledPlant, goal: Goal) -> Law | str:
@@ -75,8 +85,9 @@ def _law(plant: Plant, sampled: SampledPlant, goal: Goal) -> Law | str:
     try:
         return lqr_law(plant, sampled, goal.control)
     except np.linalg.LinAlgError:
-        return (f"no gains stabilise this loop: the unstable pole times the delay is {limits.pole_times_delay:.2f}; "
-                "above about 0.3 little is left, above about 1.4 nothing")
+        return (f"no gains stabilise this loop in double precision: the unstable pole times the delay is "
+                f"{limits.pole_times_delay:.2f}, so |T| would be at least {limits.least_peak_complementary:.3g}: "
+                f"{100.0 / limits.least_peak_complementary:.2g} % more or less torque would lose it")
 
 
 def check_weights(plant: Plant, goal: Goal, control: LqrControl) -> None:
@@ -89,6 +100,16 @@ def check_weights(plant: Plant, goal: Goal, control: LqrControl) -> None:
     raise InputError([Problem(goal.source, line, column, key, f"{len(control.weights.states)} weights",
                               f"{len(states)}, one for each of {', '.join(states)}",
                               "lag and past commands weigh nothing and are left out")])
+
+
+def check_noise(plant: Plant, goal: Goal) -> None:
+    """Raise InputError where a Kalman filter is asked to weigh sensors that have no noise."""
+    if not isinstance(goal.estimator, Kalman) or np.all(sensor_sigma(plant) > 0.0):
+        return
+    line, column = goal.marks.get("estimator", (0, 0))
+    raise InputError([Problem(goal.source, line, column, "estimator.kind", "`kalman` for sensors without noise",
+                              "a machine with `imu: {gyro_noise: …, accel_noise: …}`",
+                              "the filter weighs gyro and accelerometer by their noise")])
 
 
 def equivalent(poles: NDArray[np.complex128], sample_time: float) -> NDArray[np.complex128]:
@@ -115,4 +136,4 @@ def refusal(plant: Plant, sampled: SampledPlant, why: str) -> Design:
     poles = np.linalg.eigvals(sampled.A).astype(np.complex128)
     return Design(plant, law, poles, equivalent(poles, sampled.sample_time), UNSTABLE,
                   loop_limits(plant, sampled.sample_time, sampled.latency), None,
-                  Response(none, none.astype(np.complex128)), why)
+                  Response(none, none.astype(np.complex128)), None, why)

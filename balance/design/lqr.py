@@ -6,6 +6,8 @@ Fails (a refusal, not an exception) where nothing can be stabilised.  Size: Ricc
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 from numpy.typing import NDArray
 from scipy.linalg import solve_discrete_are
@@ -68,13 +70,53 @@ def _input_weight(plant: Plant, allow: Allow, Q: Array) -> float:
 
 def lqr_law(plant: Plant, sampled: SampledPlant, control: LqrControl) -> Law:
     """Return the LQR law; raises numpy.linalg.LinAlgError where the loop cannot be stabilised."""
+    if control.trim_time is not None:
+        return trimming_law(plant, sampled, control, control.trim_time)
     n, N = len(plant.model.states), len(sampled.states)
     Q = np.zeros((N, N))
     Q[:n, :n], R = weights(plant, control)
     K = lqr_gain(sampled.A, sampled.B[:, None], Q, np.array([[R]]))[0][0]                # (N,)
+    return _law(plant, sampled, K)
+
+
+def _law(plant: Plant, sampled: SampledPlant, K: Array) -> Law:
+    """Return the law u = −K x on the sampled plant's states, lag and past commands as its memory."""
+    n, N = len(plant.model.states), len(sampled.states)
     return Law(
         kind="lqr", sample_time=sampled.sample_time, latency=sampled.latency, measurements=plant.model.states,
-        memory=sampled.states[n:], A=sampled.A[n:, n:], B=sampled.A[n:, :n], E=sampled.B[n:], C=-K[n:], D=-K[:n],
+        memory=sampled.states[n:], A=sampled.A[n:, n:], B=sampled.A[n:, :n], E=sampled.B[n:], C=-K[n:N], D=-K[:n],
         output_limit=output_limit(plant), allotment=plant.allotment, levelling=plant.levelling,
         input_limits=np.array([unit.input_limit for unit in plant.units]), unit=command_unit(plant), K=K,
         states=sampled.states, gains={})
+
+
+TRIM = "momentum_integral"
+"""Name of the integral's place in the law's memory, N·m·s²."""
+
+
+def trimming_law(plant: Plant, sampled: SampledPlant, control: LqrControl, trim_time: float) -> Law:
+    """Return the LQR law that also feeds back s, the integral of stored momentum: s⁺ = s + T q.
+
+    At rest q must be zero for s to stand still, so a misread tilt or a centre of mass that is off stands in s instead of in
+    the wheel.  Weight of s by Bryson's rule from allowed momentum × trim time.  Back-calculation with a quarter of the
+    trim time keeps s from winding up while v is clipped (Åström & Hägglund, "PID Controllers", from memory).
+    """
+    n, N, T = len(plant.model.states), len(sampled.states), sampled.sample_time
+    assert control.allow is not None
+    row = np.zeros(N)
+    row[:n] = plant.momentum_row
+    A = np.block([[sampled.A, np.zeros((N, 1))], [T * row[None, :], np.ones((1, 1))]])
+    Q = np.zeros((N + 1, N + 1))
+    Q[:n, :n], R = weights(plant, control)
+    Q[N, N] = (control.allow.momentum * trim_time) ** -2
+    K = lqr_gain(A, np.append(sampled.B, 0.0)[:, None], Q, np.array([[R]]))[0][0]        # (N + 1,)
+    plain = _law(plant, sampled, K[:N])
+    C = np.append(plain.C, -K[N])
+    track = min(4.0 * T / trim_time, 1.0) / C[-1]                         # s moves by track (v' − v)
+    k = N - n
+    grown = np.zeros((k + 1, k + 1))
+    grown[:k, :k] = plain.A
+    grown[k] = -track * C
+    grown[k, k] += 1.0
+    return replace(plain, memory=(*plain.memory, TRIM), A=grown, C=C, E=np.append(plain.E, track), K=K,
+                   B=np.vstack([plain.B, T * plant.momentum_row - track * plain.D]), states=(*plain.states, TRIM))

@@ -15,6 +15,10 @@ Array = NDArray[np.float64]
 Complex = NDArray[np.complex128]
 
 
+BODE_CLOSE = 1e-4
+"""Difference of the two sides within which a loop passes its self-check; leaving out an unstable pole p costs p T ≈ 1e-2."""
+
+
 @dataclass(frozen=True)
 class Crossing:
     """One crossing of the loop transfer: of the unit circle (`phase`) or of the negative real axis (`gain`)."""
@@ -57,6 +61,21 @@ class LoopLimits:
     pole_times_delay: float
     least_peak_complementary: float   # e^{p t_d}
     total_delay: float                # s: latency + half a sample + actuator lag
+    largest_disk: float               # balanced disk margin no law exceeds
+    least_peak_sensitivity: float     # Ms no law stays below
+
+
+@dataclass(frozen=True)
+class BodeIntegral:
+    """Both sides of Bode's sensitivity integral of a sampled loop, in nepers per sample (`bode_integral`)."""
+
+    found: float                      # by quadrature of the response
+    due: float                        # by the unstable poles of the broken loop: plant and controller
+
+    @property
+    def holds(self) -> bool:
+        """Whether the response and the eigenvalues tell the same story."""
+        return abs(self.found - self.due) <= BODE_CLOSE
 
 
 @dataclass(frozen=True)
@@ -80,6 +99,7 @@ class Design:
     limits: LoopLimits
     ideal: Ideal | None
     response: Response
+    integral: BodeIntegral | None   # None where the loop is not stable
     refused: str              # "" or why no law could be designed ("cannot act about this line", …)
     own: Margins | None = None          # of the stance's own gains, where one gain set for all stances is used instead
     law_of: str = ""                    # the stance whose gains those are

@@ -28,6 +28,9 @@ from balance.kernel.layout import (
 
 Array = NDArray[np.float64]
 
+TRIMMED = 1e3
+"""m or rad: what needs an error larger than this to fill the capacity is trimmed out by the law; the rest is rounding."""
+
 STILL = {"tilt": "lean", "gyro": "lean_rate"}
 """What the sensors show at rest."""
 
@@ -66,7 +69,8 @@ def tolerable_offset(design: Design) -> float:
 def _tolerable(design: Design, per_error: float) -> float:
     if not design.margins.stable or np.isnan(per_error):
         return 0.0
-    return float("inf") if abs(per_error) < 1e-12 else design.plant.momentum_capacity / abs(per_error)
+    largest = design.plant.momentum_capacity / abs(per_error) if per_error != 0.0 else float("inf")
+    return largest if largest < TRIMMED else float("inf")
 
 
 def _momentum_per_lean(design: Design) -> float:

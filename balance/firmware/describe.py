@@ -189,7 +189,16 @@ def _memory_unit(name: str, law: Law) -> str:
     """Return the unit of a remembered number."""
     if name.startswith("torque"):
         return law.unit
-    known = {"integral": "N*m", "filtered_rate": "rad/s", "lean_estimate": "rad"}
+    known = {
+        "integral": "N*m",
+        "filtered_rate": "rad/s",
+        "lean_estimate": "rad",
+        "lean_predicted": "rad",
+        "lean_rate_predicted": "rad/s",
+        "gyro_bias": "rad/s",
+        "balance_offset": "rad",
+        "momentum_integral": "N*m*s^2",
+    }
     return "N*m" if ".levelling" in name else known.get(name, "SI")
 
 

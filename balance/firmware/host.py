@@ -12,6 +12,8 @@ from collections.abc import Sequence
 import numpy as np
 from numpy.typing import NDArray
 
+from balance.design.complementary import ESTIMATE
+from balance.design.kalman import PREDICTED
 from balance.firmware.dialect import commands_of
 from balance.firmware.fields import fields_of
 from balance.firmware.flags import BIT
@@ -22,7 +24,6 @@ Array = NDArray[np.float64]
 
 COMPILERS = ("cc", "gcc", "clang")
 CLIPPED = BIT["LINE_LIMITED"] | BIT["UNIT_LIMITED"]
-ESTIMATE = "lean_estimate"
 
 
 class NoCompilerError(RuntimeError):
@@ -54,7 +55,7 @@ class HostFirmware:
         """Forget everything and stand on `stance`; the estimator has settled at `lean` (rad)."""
         self._init(ctypes.byref(self.state), self.program.stances.index(stance), 1)
         for i, memory in enumerate(self.program.memory):
-            if memory.name == ESTIMATE:
+            if memory.name in (ESTIMATE, PREDICTED):
                 self.state.memory[i] = round(lean * 2.0 ** self.fixed.memory[i]) if self.fixed else lean
 
     def command(self, measured: Array, held: bool) -> tuple[Array, bool]:

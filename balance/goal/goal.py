@@ -52,6 +52,8 @@ class LqrControl:
 
     allow: Allow | None = section(Allow, default=None)
     weights: Weights | None = section(Weights, default=None)
+    trim_time: float | None = quantity("time", above=0, default=None,
+                                       says="feed back the integral of stored momentum: trims it to zero in about that time")
     retune: str = choice(("as given", "robust"), default="as given",
                          says="robust: the weights' proportions that keep the largest disk margin in the worst case")
     one_gain_set: bool = flag(default=False, says="the same gains on every stance")
@@ -89,6 +91,19 @@ class Complementary:
     """`kind: complementary`: gyro above the crossover, accelerometer below it."""
 
     crossover: float = quantity("frequency", above=0)
+
+
+@dataclass(frozen=True)
+class Kalman:
+    """`kind: kalman`: lean, lean rate, gyro bias and balance offset from the model and the sensors' noise.
+
+    Drifts are standard deviations after one second.
+    """
+
+    unknown_torque: float | None = quantity("torque noise", above=0, default=None,
+                                            says="on the body; default 1 % of the torque limit per √Hz")
+    bias_drift: float = quantity("rate drift", above=0, default=3.490658503988659e-04, says="of the gyro's bias")
+    offset_drift: float = quantity("angle drift", above=0, default=8.726646259971648e-04, says="of the balance offset")
 
 
 @dataclass(frozen=True)
@@ -130,8 +145,8 @@ class Goal:
     control: LqrControl | PidControl = variant({"lqr": LqrControl, "pid": PidControl}, by="law")
     trials: dict[str, Trial] = table(Trial)
     stance: str = text(default="every", says="a stance's name, or `every`")
-    estimator: NoEstimator | Complementary = variant(
-        {"none": NoEstimator, "complementary": Complementary}, default=NoEstimator())
+    estimator: NoEstimator | Complementary | Kalman = variant(
+        {"none": NoEstimator, "complementary": Complementary, "kalman": Kalman}, default=NoEstimator())
     require: Requirements = section(Requirements, default=Requirements())
     fell: float = quantity("angle", above=0, default=0.5235987755982988, says="lean beyond which it fell")
     # neither is a key of the file: its path, and dotted key -> (line, column) in it

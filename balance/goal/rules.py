@@ -43,6 +43,9 @@ def check_lqr(control: LqrControl) -> Iterator[Fault]:
         yield Fault("weights" if given else "", " and ".join(f"`{word}`" for word in given) or "neither",
                     "exactly one of `allow` and `weights`",
                     "`allow` states the largest acceptable excursions, as `{lean: 3 deg, …}`")
+    if control.trim_time is not None and control.allow is None:
+        yield Fault("trim_time", "`trim_time` with `weights`", "`trim_time` with `allow`",
+                    "its weight follows from the allowed momentum")
 
 
 def check_allow(allow: Allow) -> Iterator[Fault]:

@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Callable
 
+from balance.design.at_rest import noise_rms
 from balance.design.records import Design, Margins
 from balance.report.amounts import MINUS, amount, figure
 from balance.report.loops import LoopPicture
@@ -41,6 +42,9 @@ def margin_table(designs: tuple[Design, ...], pictures: tuple[LoopPicture | None
         row("peak sensitivity Ms", lambda m: figure(m.peak_sensitivity)),
         row("peak complementary sensitivity Mt", lambda m: figure(m.peak_complementary)),
         Row("least Mt of any law, e^(p·delay)", tuple(figure(d.limits.least_peak_complementary) for d in designs)),
+        Row("largest disk margin of any law", tuple(figure(d.limits.largest_disk) for d in designs)),
+        Row("Bode's integral of ln |S|, found and due", tuple(_integral(d) for d in designs)),
+        *_noise(designs),
         Row("delay from sample to torque", tuple(amount(d.limits.total_delay, "s") for d in designs)),
         Row("pole × delay", tuple(figure(d.limits.pole_times_delay) for d in designs)),
         Row("phase margin without sampling and delay",
@@ -48,6 +52,22 @@ def margin_table(designs: tuple[Design, ...], pictures: tuple[LoopPicture | None
     )
     told = tuple(one for one in rows if set(one.cells) != {"–"})
     return Table("Stability margins", ("Margin", *(d.plant.stance.name for d in designs)), told, NOTE)
+
+
+def _integral(design: Design) -> str:
+    """Both sides of Bode's integral in nepers per sample: the loop's check of itself."""
+    if design.integral is None:
+        return "–"
+    both = f"{figure(design.integral.found)}, {figure(design.integral.due)}"
+    return both if design.integral.holds else f"{both}: they differ, trust no margin of this loop"
+
+
+def _noise(designs: tuple[Design, ...]) -> tuple[Row, ...]:
+    """What sensor noise alone keeps in motion, RMS."""
+    found = [noise_rms(d) for d in designs]
+    said = (("lean", "lean", "rad"), ("torque", "torque about the line", "N*m"), ("momentum", "stored momentum", "N*m*s"))
+    return tuple(Row(f"sensor noise keeps in {label}, RMS", tuple(
+        amount(getattr(one, name), unit) if one is not None else "–" for one in found)) for name, label, unit in said)
 
 
 def loop_words(design: Design) -> str:

@@ -9,6 +9,7 @@ import numpy as np
 
 from balance.base.errors import InputError, Problem
 from balance.design.complementary import ESTIMATE
+from balance.design.kalman import PREDICTED
 from balance.design.records import Design
 from balance.goal.goal import Goal
 from balance.goal.trials import Trial
@@ -87,8 +88,9 @@ def run_one(design: Design, goal: Goal, name: str, trial: Trial, toward: str, re
     body[FELL] = goal.fell
     law = law_arrays(design.law, plant, goal.loop.command_bits)
     work = fresh_work(body, units, law, event.events)
-    if ESTIMATE in design.law.memory:                        # the estimator has run before the trial begins
-        work.numbers[MEMORY, design.law.memory.index(ESTIMATE)] = event.lean
+    for place in (ESTIMATE, PREDICTED):                      # the estimator has run before the trial begins
+        if place in design.law.memory:
+            work.numbers[MEMORY, design.law.memory.index(place)] = event.lean
     X = start_state(plant, event, units)
     if controller is None:
         ended = run_trial(X, units, law, event.events, work, output)

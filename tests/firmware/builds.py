@@ -20,6 +20,7 @@ ROOT = Path(__file__).resolve().parents[2]
 CASES = {
     "scout-wheels": ("trellis-scout", False), "bench-rig-pid": ("bench-rig", False), "quay-gyros": ("quay-carrier", False),
     "quay-pid": ("quay-carrier", True), "bench-rig-sensed": ("bench-rig", False),
+    "bench-rig-kalman": ("bench-rig", False),
 }
 """LQR and PID, wheel and gyro, and one behind an inertial sensor: design -> (machine, its control replaced by a PID)."""
 

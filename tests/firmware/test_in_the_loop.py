@@ -26,7 +26,7 @@ CLOSE = {False: 1e-6, True: 2e-4}
 
 
 @pytest.mark.parametrize("fixed", [False, True], ids=["float32", "fixed"])
-@pytest.mark.parametrize("case", ["bench-rig-sensed", "bench-rig-pid", "scout-wheels", "quay-gyros"])
+@pytest.mark.parametrize("case", ["bench-rig-sensed", "bench-rig-kalman", "bench-rig-pid", "scout-wheels", "quay-gyros"])
 def test_every_trial_ends_as_with_the_law(case: str, fixed: bool) -> None:
     need("host")
     goal = read_goal(str(ROOT / "designs" / f"{case}.yaml"))
