@@ -16,21 +16,26 @@ def judge_trials(goal: Goal, design: Design, trials: Sequence[TrialResult]) -> l
     """Return one verdict per trial and direction of one stance, then the worst case of each requirement on trials."""
     verdicts = [judge_outcome(goal, design, result) for result in trials]
     if trials:
-        verdicts += _worst_cases(goal, design, trials)
+        verdicts += worst_cases(goal, design, trials)
     return verdicts
 
 
 def judge_outcome(goal: Goal, design: Design, result: TrialResult) -> Verdict:
     """Return whether the machine was caught; a touch-down counts only where the trial allows it."""
-    trial = goal.trials[result.name]
-    may_touch = trial.touch_down == "allowed"
-    passed = result.verdict == "recovered" or (may_touch and result.verdict == "touched down")
+    may_touch = goal.trials[result.name].touch_down == "allowed"
+    passed = caught(goal, result)
     limit = "recovered or touched down" if may_touch else "recovered"
     reason = result.reason
     if not passed:
         more = _advice(goal, design, result)
         reason = f"{reason}; {more}" if reason else more
     return Verdict(f"{result.name} {result.toward}", result.stance, result.verdict, "", limit, "is", passed, reason)
+
+
+def caught(goal: Goal, result: TrialResult) -> bool:
+    """Tell whether a trial is passed, without asking what it would have needed."""
+    may_touch = goal.trials[result.name].touch_down == "allowed"
+    return result.verdict == "recovered" or (may_touch and result.verdict == "touched down")
 
 
 def _advice(goal: Goal, design: Design, result: TrialResult) -> str:
@@ -43,7 +48,7 @@ def _advice(goal: Goal, design: Design, result: TrialResult) -> str:
     return what_it_needs(design, goal, result.name, goal.trials[result.name], result.toward)
 
 
-def _worst_cases(goal: Goal, design: Design, trials: Sequence[TrialResult]) -> list[Verdict]:
+def worst_cases(goal: Goal, design: Design, trials: Sequence[TrialResult]) -> list[Verdict]:
     """Return the verdicts on the worst trial. Friction is judged against the feet where the file names no limit."""
     require, plant = goal.require, design.plant
     friction = require.friction_needed

@@ -25,6 +25,7 @@ def run(asked: argparse.Namespace) -> Outcome:
         "gains": run_gains,
         "firmware": run_firmware,
         "recover": run_recover,
+        "size": run_size,
         "new": run_new,
         "schema": run_schema,
     }
@@ -182,6 +183,33 @@ def run_check(asked: argparse.Namespace, progress: Progress) -> Outcome:
         from balance.cli.show_audit import with_audit
 
         text = with_audit(job, result.designs, answer, text, progress.tell)
+    return Outcome(_code(answer), text, answer)
+
+
+def run_size(asked: argparse.Namespace, progress: Progress) -> Outcome:
+    """`balance size FILE`: what does the job, ranked; `--apply` writes the lightest that passes the whole check."""
+    from balance.api.load import load
+
+    job = load(asked.file, asked.stance)
+    from balance.api.json_size import json_size
+    from balance.api.size import apply, proved, size, size_figure, sized_machine
+    from balance.cli.show_size import show_size
+
+    state = os.path.join(output_folder(asked.file), "size-state.jsonl")
+    if asked.again and os.path.isfile(state):
+        os.remove(state)
+    found = size(job, max(asked.workers, 1), state, progress.tell)
+    answer, text = json_size(found), show_size(found)
+    if asked.figure:
+        answer["figure"] = size_figure(found, asked.figure)
+        text += f"\n\nfigure: {asked.figure}"
+    chosen = next((c for c in found.best if asked.family in ("", c.candidate.family)), None)
+    if asked.apply and chosen is not None:
+        machine = sized_machine(found, chosen)
+        whole = proved(job, machine, progress.tell)
+        answer["applied"] = {"machine_file": apply(found, chosen, asked.apply), "passed": whole.passed,
+                             "unmet": [f"{v.name} ({v.stance})" for v in whole.verdicts if not v.passed]}
+        text += f"\n\nwrote {asked.apply}: the whole check {'passes' if whole.passed else 'does NOT pass'}"
     return Outcome(_code(answer), text, answer)
 
 

@@ -35,6 +35,7 @@ COMMANDS = {
     "gains": "the controller's gains with their margins, for each stance",
     "firmware": "write the law as portable C, with the proof that it does what was designed",
     "recover": "run the design file's recovery trials",
+    "size": "the smallest wheels or flywheels that do it, before anything is bought",
     "new": "write a commented machine and design file to start from",
     "schema": "print the JSON Schema of machine or design files, for editors",
 }
@@ -120,6 +121,13 @@ def _own_words(name: str, parser: argparse.ArgumentParser) -> None:
     if name in ("check", "recover"):
         twice = "run every trial once more in steps a quarter as long, and say what that changes"
         parser.add_argument("--audit", action="store_true", help=twice)
+    if name == "size":
+        for word, metavar, says in (("apply", "PATH", "write the lightest one as a new machine file"),
+                                    ("family", "NAME", "with --apply: the lightest of this family"),
+                                    ("figure", "PATH", "draw mass against push and power into a .svg or .png file")):
+            parser.add_argument(f"--{word}", metavar=metavar, default="", help=says)
+        parser.add_argument("--workers", metavar="N", type=int, default=2, help="processes (default: 2), the same answer")
+        parser.add_argument("--again", action="store_true", help="forget what an earlier search has confirmed")
     if name == "check":
         parser.add_argument(
             "--out",

@@ -6,6 +6,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field
 
 from balance.files.fields import Shape, choice, flag, number, place, quantity, section, table, text, variant
+from balance.goal.sizing import Sizing
 from balance.goal.trials import Trial
 
 Marks = Mapping[str, tuple[int, int]]
@@ -149,6 +150,7 @@ class Goal:
         {"none": NoEstimator, "complementary": Complementary, "kalman": Kalman}, default=NoEstimator())
     require: Requirements = section(Requirements, default=Requirements())
     fell: float = quantity("angle", above=0, default=0.5235987755982988, says="lean beyond which it fell")
+    size: Sizing | None = section(Sizing, default=None)
     # neither is a key of the file: its path, and dotted key -> (line, column) in it
     source: str = field(default="", metadata={"shape": None})
     marks: Marks = field(default_factory=dict, metadata={"shape": None}, compare=False)

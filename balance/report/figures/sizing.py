@@ -1,0 +1,62 @@
+"""Added mass against the push that is survived, and against power: all families on one picture."""
+
+from __future__ import annotations
+
+import os
+
+from matplotlib.axes import Axes
+from matplotlib.figure import Figure
+from matplotlib.ticker import FuncFormatter, NullFormatter
+
+from balance.report.figures.palette import DASHED, DOTTED, NAVY, PINE, RUST, SLATE, SOLID, as_bytes, ink, sheet
+from balance.size.answer import SizeAnswer
+from balance.size.confirm import Confirmed
+
+LOOKS = {"reaction wheel": (NAVY, "o", SOLID), "scissored pair": (RUST, "s", DASHED),
+         "gimballed flywheel": (PINE, "^", DOTTED)}
+"""Family -> colour, mark, line."""
+
+
+def draw_sizing(answer: SizeAnswer) -> Figure:
+    """Draw both fronts; filled marks are confirmed by simulation, hollow grey ones failed it."""
+    with ink():
+        figure, (push, power) = sheet(3.4, 1, 2, width=7.6)
+        figure.subplots_adjust(left=0.085, right=0.985, top=0.9, bottom=0.27, wspace=0.24)
+        good = [c for c in answer.confirmed if c.passed]
+        for family in answer.question.sizing.families:
+            own = sorted((c for c in good if c.candidate.family == family), key=lambda c: c.added)
+            scatter(push, own, [c.push for c in own], family)
+            scatter(power, own, [max(c.power, 0.1) for c in own], family)
+        for axes, title in ((push, "worst-case push survived, N·s"), (power, "peak power in the trials, W")):
+            axes.set_xlabel("added mass, kg")
+            axes.set_ylabel(title)
+            axes.set_xlim(left=0.0)
+        power.set_yscale("log")
+        power.yaxis.set_major_formatter(FuncFormatter(lambda value, _: f"{value:g}"))
+        power.yaxis.set_minor_formatter(NullFormatter())
+        front = answer.by_push
+        push.step([c.added for c in front], [c.push for c in front], where="post", color=SLATE, lw=0.9, ls=DOTTED,
+                  label="front of all families")
+        push.set_ylim(bottom=0.0)
+        handles, labels = push.get_legend_handles_labels()
+        figure.legend(handles, labels, loc="lower center", ncols=4, handlelength=2.4)
+        push.set_title("More push costs mass", loc="left")
+        power.set_title("Less mass costs power", loc="left")
+    return figure
+
+
+def scatter(axes: Axes, own: list[Confirmed], values: list[float], family: str) -> None:
+    """Draw one family; the one whose binding quantity is known is ringed."""
+    colour, mark, line = LOOKS[family]
+    axes.plot([c.added for c in own], values, color=colour, marker=mark, ls=line, lw=0.9, ms=5, label=family)
+    ringed = [(c.added, v) for c, v in zip(own, values, strict=True) if c.binding]
+    axes.plot([x for x, _ in ringed], [y for _, y in ringed], ls="", marker="o", ms=10, mfc="none", mec=colour, mew=0.8)
+
+
+def write_sizing_figure(answer: SizeAnswer, path: str) -> str:
+    """Write the picture; PNG where `path` ends so, else SVG."""
+    kind = "png" if path.lower().endswith(".png") else "svg"
+    os.makedirs(os.path.dirname(path) or ".", exist_ok=True)
+    with open(path, "wb") as file:
+        file.write(as_bytes(draw_sizing(answer), kind))
+    return path

@@ -1,0 +1,1 @@
+"""Many trials about one question."""
