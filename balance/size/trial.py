@@ -89,7 +89,7 @@ def unmeasured(plant: Plant, goal: Goal) -> Design:
     poles = np.linalg.eigvals(close(sampled, law)).astype(np.complex128)
     none = np.zeros(0)
     return Design(plant, law, poles, poles, UNSTABLE, loop_limits(plant, sampled.sample_time, sampled.latency), None,
-                  Response(none, none.astype(np.complex128)), "")
+                  Response(none, none.astype(np.complex128)), None, refused="")
 
 
 def hardest(tested: Tested, many: int) -> Pairs:
