@@ -59,7 +59,7 @@ def _noise(design: Design) -> Tree | None:
 def _gains(law: Law) -> Tree:
     if law.kind == "pid":
         return {"pid": {name: number(value) for name, value in law.gains.items()}}
-    return {"K": row(law.K)}
+    return {"K": row(law.K), "riccati_residual": None if law.residual is None else number(law.residual)}
 
 
 def _continuous(ideal: Ideal | None) -> Tree | None:

@@ -93,6 +93,7 @@ def _margins(designs: tuple[Design, ...]) -> str:
             ("least Mt of any law", lambda d: figure(d.limits.least_peak_complementary)),
             ("largest disk of any law", lambda d: figure(d.limits.largest_disk)),
             ("Bode integral, checked", _integral),
+            ("Riccati residual", lambda d: figure(d.law.residual, 2) if d.law.residual is not None else ""),
         ],
     )
 

@@ -42,3 +42,4 @@ class Law:
     K: Array                        # (k_lqr,) u = -K x on `states` for lqr, else empty
     states: tuple[str, ...]         # names that go with K
     gains: dict[str, float]         # pid: kp, ki, kd, …; empty for lqr
+    residual: float | None = None   # lqr: of its Riccati equation, relative to the largest weight

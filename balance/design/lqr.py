@@ -75,8 +75,15 @@ def lqr_law(plant: Plant, sampled: SampledPlant, control: LqrControl) -> Law:
     n, N = len(plant.model.states), len(sampled.states)
     Q = np.zeros((N, N))
     Q[:n, :n], R = weights(plant, control)
-    K = lqr_gain(sampled.A, sampled.B[:, None], Q, np.array([[R]]))[0][0]                # (N,)
-    return _law(plant, sampled, K)
+    K, residual = _solved(sampled.A, sampled.B, Q, R)                     # (N,)
+    return replace(_law(plant, sampled, K), residual=residual)
+
+
+def _solved(A: Array, b: Array, Q: Array, R: float) -> tuple[Array, float]:
+    """Return (K (N,), how well its Riccati equation is solved) for a single input."""
+    B, weight = b[:, None], np.array([[R]])
+    K, P = lqr_gain(A, B, Q, weight)
+    return K[0], riccati_residual(A, B, Q, weight, P)
 
 
 def _law(plant: Plant, sampled: SampledPlant, K: Array) -> Law:
@@ -109,7 +116,7 @@ def trimming_law(plant: Plant, sampled: SampledPlant, control: LqrControl, trim_
     Q = np.zeros((N + 1, N + 1))
     Q[:n, :n], R = weights(plant, control)
     Q[N, N] = (control.allow.momentum * trim_time) ** -2
-    K = lqr_gain(A, np.append(sampled.B, 0.0)[:, None], Q, np.array([[R]]))[0][0]        # (N + 1,)
+    K, residual = _solved(A, np.append(sampled.B, 0.0), Q, R)             # (N + 1,)
     plain = _law(plant, sampled, K[:N])
     C = np.append(plain.C, -K[N])
     track = min(4.0 * T / trim_time, 1.0) / C[-1]                         # s moves by track (v' − v)
@@ -118,5 +125,6 @@ def trimming_law(plant: Plant, sampled: SampledPlant, control: LqrControl, trim_
     grown[:k, :k] = plain.A
     grown[k] = -track * C
     grown[k, k] += 1.0
-    return replace(plain, memory=(*plain.memory, TRIM), A=grown, C=C, E=np.append(plain.E, track), K=K,
-                   B=np.vstack([plain.B, T * plant.momentum_row - track * plain.D]), states=(*plain.states, TRIM))
+    return replace(
+        plain, memory=(*plain.memory, TRIM), A=grown, B=np.vstack([plain.B, T * plant.momentum_row - track * plain.D]),
+        E=np.append(plain.E, track), C=C, K=K, states=(*plain.states, TRIM), residual=residual)

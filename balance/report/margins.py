@@ -44,6 +44,8 @@ def margin_table(designs: tuple[Design, ...], pictures: tuple[LoopPicture | None
         Row("least Mt of any law, e^(p·delay)", tuple(figure(d.limits.least_peak_complementary) for d in designs)),
         Row("largest disk margin of any law", tuple(figure(d.limits.largest_disk) for d in designs)),
         Row("Bode's integral of ln |S|, found and due", tuple(_integral(d) for d in designs)),
+        Row("residual of the Riccati equation", tuple(
+            figure(d.law.residual, 2) if d.law.residual is not None else "–" for d in designs)),
         *_noise(designs),
         Row("delay from sample to torque", tuple(amount(d.limits.total_delay, "s") for d in designs)),
         Row("pole × delay", tuple(figure(d.limits.pole_times_delay) for d in designs)),

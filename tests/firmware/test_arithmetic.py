@@ -62,8 +62,9 @@ def raw_of(program, stance, row):
 
 @pytest.mark.parametrize("case", CASES)
 def test_both_models_do_what_the_kernels_law_does(case):
-    """Within rounding: float32 to 1e-5 of each limit, 16-bit gains to 2e-3."""
+    """Within rounding: float32 to 1e-5 of each limit, 16-bit gains to 2e-3, twice that behind a tilt good to 1e-4 rad."""
     program, fixed = package(case).program, package(case).fixed
+    close = 4e-3 if program.inertial else 2e-3
     for s, design in enumerate(designs(case)):
         rows = walk(design)
         due = law_in_doubles(design, rows)
@@ -77,7 +78,7 @@ def test_both_models_do_what_the_kernels_law_does(case):
             assert np.abs(np.array(given, dtype=float) - expected).max() < 1e-5 * limits.max()
             _, whole = wholes.update([round(x * 2.0**p) for x, p in zip(raw, fixed.fields, strict=True)])
             given = [x / 2.0**r.places for x, r in zip(whole, fixed.inputs, strict=True)]
-            assert np.abs(np.array(given) - expected).max() < 2e-3 * limits.max()
+            assert np.abs(np.array(given) - expected).max() < close * limits.max()
 
 
 def test_a_law_of_another_machine_is_not_done():
