@@ -1,0 +1,58 @@
+"""What `balance size --apply` wrote for the three scenarios: each passes the check unchanged, and its twin does not.
+
+The machine files in `sized/` were written by the program (tests/size/write_sized.py writes them anew).  The twin: the
+quantity that binds, divided by the safety factor and five per cent more, makes the machine fail.
+"""
+
+from dataclasses import replace
+from pathlib import Path
+
+import pytest
+
+from balance.api.check import check
+from balance.api.load import Job, load
+from balance.machine.read import read_machine
+from balance.machine.stabilisers import ReactionWheel
+from balance.size.trial import nominal, quick
+
+SIZED = sorted((Path(__file__).parent / "sized").glob("*.yaml"))
+DESIGNS = ("bench-rig", "quay-gyros", "scout-wheels")
+
+
+def job_of(path):
+    design = next(d for d in DESIGNS if path.stem.startswith(d))
+    return load(f"designs/{design}.yaml"), read_machine(str(path))
+
+
+def less_momentum(machine, factor):
+    """The same machine with its stabilisers' momentum divided: by the wheel's speed limit, the flywheel's spin."""
+    units = {n: replace(s, speed_limit=s.speed_limit / factor) if isinstance(s, ReactionWheel)
+             else replace(s, spin_speed=s.spin_speed / factor) for n, s in machine.stabilisers.items()}
+    return replace(machine, stabilisers=units)
+
+
+def test_every_scenario_and_family_is_there():
+    assert len(SIZED) == 9
+
+
+@pytest.mark.parametrize("path", SIZED, ids=lambda p: p.stem)
+def test_twin_of_the_binding_quantity_fails(path):
+    job, machine = job_of(path)
+    assert "momentum binds" in path.read_text(encoding="utf-8")
+    safety = job.goal.size.safety
+    pairs = tuple((s, t) for s in job.stances for t in job.goal.trials)
+    assert quick(machine, nominal(job.goal), pairs[:2]).passed
+    found = quick(less_momentum(machine, 1.05 * safety), nominal(job.goal), pairs)
+    assert not found.passed
+    assert any("momentum" in words or "fell" in words for words in found.failed)
+
+
+@pytest.mark.parametrize("stem", ["bench-rig-reaction-wheel", "bench-rig-scissored-pair", "quay-gyros-scissored-pair",
+                                  "scout-wheels-reaction-wheel"])
+def test_passes_the_whole_check_unchanged(stem):
+    """Tolerances and worst cases included; the other five are held by their trials above and by `--apply` itself."""
+    path = next(p for p in SIZED if p.stem == stem)
+    job, machine = job_of(path)
+    stances = job.stances[:1]                      # one stance each: the worst case of all three takes a minute
+    result = check(Job(machine, job.goal, stances))
+    assert result.passed, [(v.name, v.value, v.limit) for v in result.verdicts if not v.passed]
