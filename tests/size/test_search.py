@@ -63,7 +63,7 @@ def test_front_is_what_nothing_beats(alone):
     good = alone[0].confirmed
     kept = front(good, lambda c: -c.push)
     for c in good:
-        beaten = any(o.added <= c.added and o.push > c.push or o.added < c.added and o.push >= c.push for o in good)
+        beaten = any((o.added <= c.added and o.push > c.push) or (o.added < c.added and o.push >= c.push) for o in good)
         assert (c in kept) is not beaten
 
 

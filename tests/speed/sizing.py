@@ -14,5 +14,6 @@ if __name__ == "__main__":
         found = size(job, workers)
         fronts.append(found.confirmed)
         count = sum(len(s.grid) for s in found.surveys)
-        print(f"{workers} worker(s): {count} candidates to a front of {len(found.by_push)} in {time.perf_counter() - begin:.1f} s")
+        took = time.perf_counter() - begin
+        print(f"{workers} worker(s): {count} candidates to a front of {len(found.by_push)} in {took:.1f} s")
     print("the same front" if fronts[0] == fronts[1] else "NOT the same front")
