@@ -4,9 +4,9 @@ from __future__ import annotations
 
 import hashlib
 import os
-import tempfile
 
 from balance.base.errors import InputError, Problem
+from balance.base.whole import write_whole
 from balance.firmware.package import SUMS
 
 
@@ -38,7 +38,7 @@ def write_folder(files: dict[str, str], folder: str) -> tuple[str, ...]:
             ]
         )
     for path in sorted(files, key=lambda p: (p == SUMS, p)):
-        _write(os.path.join(folder, *path.split("/")), files[path])
+        write_whole(os.path.join(folder, *path.split("/")), files[path])
     return tuple(sorted(files))
 
 
@@ -65,16 +65,3 @@ def _ours(folder: str, path: str, sums: set[str | None]) -> bool:
         return True
     except (IsADirectoryError, NotADirectoryError):
         return False
-
-
-def _write(path: str, text: str) -> None:
-    os.makedirs(os.path.dirname(path), exist_ok=True)
-    handle, unfinished = tempfile.mkstemp(dir=os.path.dirname(path), prefix=".unfinished-")
-    try:
-        with os.fdopen(handle, "w", encoding="utf-8", newline="\n") as file:
-            file.write(text)
-        os.chmod(unfinished, 0o644)
-        os.replace(unfinished, path)
-    except BaseException:
-        os.unlink(unfinished)
-        raise

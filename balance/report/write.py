@@ -3,8 +3,8 @@
 from __future__ import annotations
 
 import os
-import tempfile
 
+from balance.base.whole import write_whole
 from balance.check.records import CheckResult
 from balance.design.records import Design
 from balance.design.robustness.one_law import compared
@@ -42,15 +42,7 @@ def write_report(result: CheckResult, folder: str) -> str:
     text = compose(result)
     os.makedirs(folder, exist_ok=True)
     path = free_place(folder, PAGE)
-    handle, unfinished = tempfile.mkstemp(dir=folder, prefix=".report-")
-    try:
-        with os.fdopen(handle, "w", encoding="utf-8", newline="\n") as file:
-            file.write(text)
-        os.chmod(unfinished, 0o644)
-        os.replace(unfinished, path)
-    except BaseException:
-        os.unlink(unfinished)
-        raise
+    write_whole(path, text)
     return path
 
 

@@ -3,12 +3,11 @@
 from __future__ import annotations
 
 import math
-import os
-import tempfile
 from collections.abc import Sequence
 
 from matplotlib.figure import Figure
 
+from balance.base.whole import write_whole
 from balance.machine.machine import Machine
 from balance.plant.record import Plant
 from balance.report.figures.palette import WIDTH, as_bytes, ink, plain, sheet
@@ -58,14 +57,5 @@ def write_machine_figure(machine: Machine, stances: Sequence[Stance], plants: Se
     """Write `draw_machine` to `path`, as PNG or SVG by its ending (anything else: SVG), whole or not at all."""
     kind = "png" if path.lower().endswith(".png") else "svg"
     drawn = as_bytes(draw_machine(machine, stances, plants), kind)
-    folder = os.path.dirname(os.path.abspath(path))
-    os.makedirs(folder, exist_ok=True)
-    handle, unfinished = tempfile.mkstemp(dir=folder, prefix=".drawing-")
-    try:
-        with os.fdopen(handle, "wb") as file:
-            file.write(drawn)
-        os.replace(unfinished, path)
-    except BaseException:
-        os.unlink(unfinished)
-        raise
+    write_whole(path, drawn)
     return path
