@@ -14,8 +14,9 @@ they are; what lies between command and torque is known exactly, for the command
 
 Noise: gyro and accelerometer as the machine file says; an unknown torque on the body (white), and slow drift of b and o.
 Prediction and correction of the sampled plant (R. E. Kalman 1960; Anderson & Moore, "Optimal Filtering", from memory).
-Fails (LinAlgError) where the Riccati equation has no solution.  While the machine is held its model does not hold: start
-the filter anew at release.
+Fails (LinAlgError) where the Riccati equation has no solution.  While the machine is held (more feet down) it does not fall
+as the model says: a filter that went on would take the lean it is held at for its balance. Held, the lean is the
+accelerometer's less the offset learned before, the gyro shows its bias, and the offset stays.
 """
 
 from __future__ import annotations
@@ -115,9 +116,26 @@ def kalman(law: Law, plant: Plant, sampled: SampledPlant, given: Kalman) -> Law:
     B[-4:-2] += np.hstack([np.zeros((2, 2)), sampled.A[:2, 2:n]])
     E[-4:-2] = sampled.B[:2]
     C = np.concatenate([law.C, np.zeros(size - k)]) + law.D @ from_memory
+    held_A, held_B = _held(A, B, sampled.sample_time, list(law.measurements))
     names = {"lean": "tilt", "lean_rate": "gyro"}
-    return replace(law, measurements=tuple(names.get(name, name) for name in law.measurements),
+    return replace(law, held_A=held_A, held_B=held_B, measurements=tuple(names.get(name, name) for name in law.measurements),
                    memory=(*law.memory, *extra, *MEMORY), A=A, B=B, E=E, C=C, D=law.D @ lean_row)
+
+
+HELD_TIME = 0.5
+"""s in which a held machine's gyro is averaged into its bias."""
+
+
+def _held(A: Array, B: Array, sample_time: float, measurements: list[str]) -> tuple[Array, Array]:
+    """Return A and B of the memory while the machine is held: the filter's four rows follow the sensors at rest."""
+    held_A, held_B = A.copy(), B.copy()
+    held_A[-4:], held_B[-4:] = 0.0, 0.0
+    tilt, gyro = measurements.index("lean"), measurements.index("lean_rate")
+    share = 1.0 - np.exp(-sample_time / HELD_TIME)
+    held_B[-4, tilt], held_A[-4, -1] = 1.0, -1.0                          # lean = tilt − o, lean rate 0
+    held_A[-2, -2], held_B[-2, gyro] = 1.0 - share, share                 # the gyro's bias
+    held_A[-1, -1] = 1.0                                                  # o stays
+    return held_A, held_B
 
 
 def _corrected(found: Filter, sampled: SampledPlant, n: int, on_way: Array, guess: Array) -> tuple[Array, Array]:

@@ -21,7 +21,8 @@ class Law:
         x⁺ = A x + B y + E v'        the memory sees the limited command: past commands, anti-windup, observer
         inputs = allotment · v' - levelling · y     then each clipped to ±input_limits
 
-    `measurements` are names of the plant model's states, lean first.
+    While the machine is held (more feet down) v' is 0, and a law whose memory rests on a model of the fall moves it on by
+    x⁺ = held_A x + held_B y instead.  `measurements` are names of the plant model's states, lean first.
     """
 
     kind: str                       # "lqr" | "pid"
@@ -42,4 +43,6 @@ class Law:
     K: Array                        # (k_lqr,) u = -K x on `states` for lqr, else empty
     states: tuple[str, ...]         # names that go with K
     gains: dict[str, float]         # pid: kp, ki, kd, …; empty for lqr
+    held_A: Array | None = None     # (k, k) in place of A while the machine is held: v' = 0 and the model does not hold
+    held_B: Array | None = None     # (k, m)
     residual: float | None = None   # lqr: of its Riccati equation, relative to the largest weight

@@ -79,6 +79,7 @@ def describe(designs: Sequence[Design], name: str) -> Program:
         memory=memory,
         line=_line(laws),
         moves=tuple(_move(laws, i) for i in range(len(first.memory))),
+        held_moves=_held_moves(laws),
         inputs=tuple(_input(laws, plant, i) for i in range(len(units))),
         units=units,
         line_share=tuple(tuple(float(x) for x in row) for row in _line_shares(designs).T),
@@ -95,7 +96,9 @@ def why_not(designs: Sequence[Design]) -> str:
     """Return why the designs must not be one program; empty where they can."""
     refused = [f"{d.plant.stance.name}: {d.refused}" for d in designs if d.refused]
     refused += [
-        f"{d.plant.stance.name}: the loop as designed is not stable" for d in designs if not (d.refused or d.margins.stable)
+        f"{d.plant.stance.name}: the loop as designed is not stable"
+        for d in designs
+        if not (d.refused or d.margins.stable)
     ]
     if refused or not designs:
         return "; ".join(refused) or "no stance"
@@ -113,7 +116,12 @@ def alike(laws: Sequence[Law]) -> list[Law]:
         A, B = np.zeros((len(names), len(names))), np.zeros((len(names), len(law.measurements)))
         E, C = np.zeros(len(names)), np.zeros(len(names))
         A[np.ix_(at_, at_)], B[at_], E[at_], C[at_] = law.A, law.B, law.E, law.C
-        out.append(replace(law, memory=names, A=A, B=B, E=E, C=C))
+        held_A, held_B = law.held_A, law.held_B
+        if held_A is not None and held_B is not None:
+            wide_A, wide_B = np.zeros_like(A), np.zeros_like(B)
+            wide_A[np.ix_(at_, at_)], wide_B[at_] = held_A, held_B
+            held_A, held_B = wide_A, wide_B
+        out.append(replace(law, memory=names, A=A, B=B, E=E, C=C, held_A=held_A, held_B=held_B))
     return out
 
 
@@ -121,6 +129,8 @@ def without_dust(program: Program) -> Program:
     """Leave out terms that never reach DUST of their row's largest: rounding of the design's own arithmetic."""
 
     def swept(row: Row) -> Row:
+        if not row.terms:
+            return row
         sizes = np.array([[abs(gain) * _source_reach(program, term) for gain in term.gains] for term in row.terms])
         kept = [t for t, size in zip(row.terms, sizes, strict=True) if np.any(size > DUST * sizes.max(axis=0))]
         return replace(row, terms=tuple(kept))
@@ -129,6 +139,7 @@ def without_dust(program: Program) -> Program:
         program,
         line=swept(program.line),
         moves=tuple(swept(r) for r in program.moves),
+        held_moves=tuple(swept(r) for r in program.held_moves),
         inputs=tuple(swept(r) for r in program.inputs),
     )
 
@@ -221,6 +232,23 @@ def _move(laws: Sequence[Law], i: int) -> Row:
         _acting(terms),
         tuple(np.inf for _ in laws),
     )
+
+
+def _held_moves(laws: Sequence[Law]) -> tuple[Row, ...]:
+    """Return the memory's rows while the machine is held; empty where they are those of the free machine."""
+    if all(law.held_A is None for law in laws):
+        return ()
+    held = [
+        replace(
+            law,
+            A=law.A if law.held_A is None else law.held_A,
+            B=law.B if law.held_B is None else law.held_B,
+            E=np.zeros_like(law.E),  # the limited command is zero then
+        )
+        for law in laws
+    ]
+    rows = [_move(held, i) for i in range(len(held[0].memory))]
+    return tuple(replace(row, says=f"{row.says}, held") for row in rows)
 
 
 def _input(laws: Sequence[Law], plant: Plant, i: int) -> Row:

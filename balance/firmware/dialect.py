@@ -46,23 +46,30 @@ static void take({p}_state *state, const {p}_reading *reading, uint16_t *flags)
 }}"""
 
 
-def rows(dialect: Dialect, line: str, moves: Sequence[str], asks: Sequence[str]) -> str:
-    """Return the functions `wanted`, `remember` (where there is memory) and `allot` around their sums."""
+def rows(dialect: Dialect, line: str, moves: Sequence[str], held: Sequence[str], asks: Sequence[str]) -> str:
+    """Return the functions `wanted`, `remember`, `remember_held` (where there are) and `allot` around their sums."""
     p, kind, copies = (
         dialect.prefix,
         dialect.kind,
         "\n".join(f"    state->memory[{i}] = next[{i}];" for i in range(len(moves))),
     )
-    remember = f"""/* move the memory on by one sample; it sees the limited command */
-static void remember({p}_state *state, {kind} line)
+    remember = "".join(
+        f"""/* {says} */
+static void {name}({p}_state *state{given})
 {{
     const uint8_t s = state->stance;
     {kind} next[{len(moves)}];
-{chr(10).join(moves)}
+{chr(10).join(sums)}
 {copies}
 }}
 
 """
+        for name, given, sums, says in (
+            ("remember", f", {kind} line", moves, "move the memory on by one sample; it sees the limited command"),
+            ("remember_held", "", held, "the same while the machine is held: its model of the fall does not hold then"),
+        )
+        if sums
+    )
     return f"""/* the line command, before its limit */
 static {kind} wanted(const {p}_state *state)
 {{
@@ -72,7 +79,7 @@ static {kind} wanted(const {p}_state *state)
     return sum;
 }}
 
-{remember if moves else ""}/* each unit's command, before its limit */
+{remember}/* each unit's command, before its limit */
 static void allot(const {p}_state *state, {kind} line, {p}_command *command)
 {{
     const uint8_t s = state->stance;
@@ -119,6 +126,13 @@ def update(dialect: Dialect, program: Program) -> str:
     safe = "\n".join(f"        command->{name} = {nought};" for name in commands_of(program))
     zero = "\n".join(f"            command->{name} = {nought};" for name in commands_of(program))
     remember = "        remember(state, line);\n" if program.memory else ""
+    if program.held_moves:
+        remember = """        if (reading->held != 0u) {
+            remember_held(state);
+        } else {
+            remember(state, line);
+        }
+"""
     voltage = "            look_at_voltage(state, command, &flags);\n" if any(program.windows) else ""
     return f"""void {p}_reset({p}_state *state)
 {{

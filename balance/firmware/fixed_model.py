@@ -75,7 +75,8 @@ class FixedModel:
         line = min(max(wanted, -most), most)
         flags |= BIT["LINE_LIMITED"] if line != wanted and not held else 0
         commands = [self._sum(each, line) for each in self.fixed.inputs]
-        self.memory = [self._sum(each, line, old) for each, old in zip(self.fixed.moves, self.memory, strict=True)]
+        moves = self.fixed.held_moves if held and self.fixed.held_moves else self.fixed.moves
+        self.memory = [self._sum(each, line, old) for each, old in zip(moves, self.memory, strict=True)]
         if held:
             return flags | BIT["HELD"], [0 for _ in self.program.units]
         return flags | self._share(commands) | self._short(commands), commands

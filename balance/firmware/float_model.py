@@ -47,7 +47,8 @@ class FloatModel:
                 return flags | BIT["SAFE"], [ZERO for _ in self.program.units]
             more, line = (0, ZERO) if held else self._line()
             commands = [self._sum(row, line) for row in self.program.inputs]
-            self.memory = [self._sum(row, line) for row in self.program.moves]
+            moves = self.program.held_moves if held and self.program.held_moves else self.program.moves
+            self.memory = [self._sum(row, line) for row in moves]
             if held:
                 return flags | BIT["HELD"], [ZERO for _ in self.program.units]
             return flags | more | self._share(commands) | self._short(commands), commands

@@ -43,9 +43,15 @@ class HostFirmware:
         names = [field.name for field in fields_of(self.program)]
         self.reading = _struct("Reading", [(n, number) for n in names] + [("held", ctypes.c_uint8)])()
         self.answer = _struct("Answer", [(n, number) for n in commands_of(self.program)])()
-        self.state = _struct("State", [("memory", number * max(len(self.program.memory), 1)),
-                                       ("last", number * len(self.program.readings)), ("stance", ctypes.c_uint8),
-                                       ("refused", ctypes.c_uint8)])()
+        self.state = _struct(
+            "State",
+            [
+                ("memory", number * max(len(self.program.memory), 1)),
+                ("last", number * len(self.program.readings)),
+                ("stance", ctypes.c_uint8),
+                ("refused", ctypes.c_uint8),
+            ],
+        )()
         library = _compiled(package, self.prefix)
         self._init, self._update = library[f"{self.prefix}_init"], library[f"{self.prefix}_update"]
         self._init.argtypes, self._init.restype = [ctypes.c_void_p, ctypes.c_uint8, ctypes.c_uint8], None
@@ -105,8 +111,18 @@ def _compiled(package: Package, prefix: str) -> ctypes.CDLL:
             with open(os.path.join(folder, os.path.basename(path)), "w", encoding="utf-8", newline="\n") as file:
                 file.write(package.files[path])
         made = os.path.join(folder, f"{prefix}.so")
-        words = [compiler, "-std=c99", "-O2", "-ffp-contract=off", "-fPIC", "-shared", f"-I{folder}",
-                 os.path.join(folder, f"{prefix}.c"), "-o", made]
+        words = [
+            compiler,
+            "-std=c99",
+            "-O2",
+            "-ffp-contract=off",
+            "-fPIC",
+            "-shared",
+            f"-I{folder}",
+            os.path.join(folder, f"{prefix}.c"),
+            "-o",
+            made,
+        ]
         done = subprocess.run(words, capture_output=True, text=True, check=False, stdin=subprocess.DEVNULL)
         if done.returncode:
             raise NoCompilerError(f"the compiler refused the firmware: {done.stderr.strip()[-500:]}")

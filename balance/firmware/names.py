@@ -6,8 +6,32 @@ import re
 from collections.abc import Sequence
 
 STANDARD_HEADERS = frozenset(
-    ("assert", "complex", "ctype", "errno", "fenv", "float", "inttypes", "iso646", "limits", "locale", "math", "setjmp",
-     "signal", "stdarg", "stdbool", "stddef", "stdint", "stdio", "stdlib", "string", "tgmath", "time", "wchar", "wctype")
+    (
+        "assert",
+        "complex",
+        "ctype",
+        "errno",
+        "fenv",
+        "float",
+        "inttypes",
+        "iso646",
+        "limits",
+        "locale",
+        "math",
+        "setjmp",
+        "signal",
+        "stdarg",
+        "stdbool",
+        "stddef",
+        "stdint",
+        "stdio",
+        "stdlib",
+        "string",
+        "tgmath",
+        "time",
+        "wchar",
+        "wctype",
+    )
 )
 """C99's own headers (ISO/IEC 9899:1999, 7.1.2, from memory): `#include <stdint.h>` must not find a design's header."""
 

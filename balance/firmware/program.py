@@ -85,6 +85,7 @@ class Program:
     memory: tuple[Memory, ...]
     line: Row
     moves: tuple[Row, ...]
+    held_moves: tuple[Row, ...]  # in their place while the machine is held; empty: the same
     inputs: tuple[Row, ...]
     units: tuple[str, ...]
     line_share: tuple[tuple[float, ...], ...]  # per unit, per stance: torque about the line per input

@@ -70,6 +70,7 @@ class Fixed:
     memory: tuple[int, ...]
     line: FixedRow
     moves: tuple[FixedRow, ...]
+    held_moves: tuple[FixedRow, ...]
     inputs: tuple[FixedRow, ...]
     share: tuple[FixedTerm, ...]  # unit's command -> torque about the line
     back: tuple[FixedTerm, ...]  # torque about the line -> unit's command
@@ -103,6 +104,7 @@ def scale(program: Program) -> Fixed:
     line = _row(program, program.line, scales, None, -1)
     scales[LINE] = [line.places]
     moves = tuple(_row(program, row, scales, memory[i], i) for i, row in enumerate(program.moves))
+    held = tuple(_row(program, row, scales, memory[i], i) for i, row in enumerate(program.held_moves))
     inputs = tuple(_row(program, row, scales, None, -1) for row in program.inputs)
     share, back, line_places = _sharing(program, inputs)
     return Fixed(
@@ -114,6 +116,7 @@ def scale(program: Program) -> Fixed:
         memory,
         line,
         moves,
+        held,
         inputs,
         share,
         back,
@@ -140,7 +143,7 @@ def _row(program: Program, row: Row, scales: dict[str, list[int]], places: int |
     )
     if keeps:
         most += program.memory[own].most
-    room = math.floor(math.log2(ROOM / most)) if most > 0.0 else 29
+    room = math.floor(math.log2(ROOM / most)) if most > 0.0 else 40
     chosen = min(room, 40) if places is None else places
     if chosen > room:
         raise NoRoomError(f"the sum for {row.says} can reach {most:.3g}, too far for its {chosen} binary places")

@@ -44,7 +44,13 @@ def write_selftest(program: Program, vectors: Vectors, kind: str, suffix: str) -
 
 #define VECTORS {n}u
 
-{_bytes("actions", vectors.actions, f"before the reading: 0 nothing, 1 reset, 2 init, 3 the same reading {REPEATS} times")}
+{
+        _bytes(
+            "actions",
+            vectors.actions,
+            f"before the reading: 0 nothing, 1 reset, 2 init, 3 the same reading {REPEATS} times",
+        )
+    }
 
 {_bytes("stances", vectors.stances, "the stance to init")}
 

@@ -75,6 +75,9 @@ def _tables(fixed: Fixed) -> list[str]:
     out = [_table(program, "line_gains", program.line, fixed.line, said)]
     for i, (row, scaled) in enumerate(zip(program.moves, fixed.moves, strict=True)):
         out.append(_table(program, f"memory_{i}_gains", row, scaled, said))
+    for i, (row, scaled) in enumerate(zip(program.held_moves, fixed.held_moves, strict=True)):
+        if row.terms:
+            out.append(_table(program, f"held_{i}_gains", row, scaled, said))
     for i, (row, scaled) in enumerate(zip(program.inputs, fixed.inputs, strict=True)):
         out.append(
             _table(program, f"unit_{i}_gains", row, scaled, "share of the line command, and what keeps units level")
@@ -223,7 +226,8 @@ def _rows(dialect: Dialect, fixed: Fixed) -> str:
         _sum(row, f"unit_{i}_gains", f"command->{field}", "0")
         for i, (row, field) in enumerate(zip(fixed.inputs, commands_of(fixed.program), strict=True))
     ]
-    return rows(dialect, _sum(fixed.line, "line_gains", "sum", "0"), moves, asks)
+    held = [_sum(row, f"held_{i}_gains", f"next[{i}]", f"state->memory[{i}]") for i, row in enumerate(fixed.held_moves)]
+    return rows(dialect, _sum(fixed.line, "line_gains", "sum", "0"), moves, held, asks)
 
 
 def _share(dialect: Dialect, fixed: Fixed) -> str:

@@ -79,6 +79,9 @@ def _tables(program: Program) -> list[str]:
     out = [table(program, "line_gains", program.line, _values(program.line, program), "float", said)]
     for i, row in enumerate(program.moves):
         out.append(table(program, f"memory_{i}_gains", row, _values(row, program), "float", said))
+    for i, row in enumerate(program.held_moves):
+        if row.terms:
+            out.append(table(program, f"held_{i}_gains", row, _values(row, program), "float", said))
     for i, row in enumerate(program.inputs):
         out.append(
             table(
@@ -242,7 +245,8 @@ def _rows(dialect: Dialect, program: Program) -> str:
         _sum(row, f"unit_{i}_gains", f"command->{field}")
         for i, (row, field) in enumerate(zip(program.inputs, commands_of(program), strict=True))
     ]
-    return rows(dialect, _sum(program.line, "line_gains", "sum"), moves, asks)
+    held = [_sum(row, f"held_{i}_gains", f"next[{i}]") for i, row in enumerate(program.held_moves)]
+    return rows(dialect, _sum(program.line, "line_gains", "sum"), moves, held, asks)
 
 
 def _share(dialect: Dialect, program: Program) -> str:

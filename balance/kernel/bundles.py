@@ -33,6 +33,8 @@ class LawArrays(NamedTuple):
     places: Places        # (m,) where each measurement stands in X, 0 is read as lean; below 0: `sensing`
     sample_time: float    # s
     latency: float        # s
+    A_held: Array         # (k, k) A and B while the machine is held
+    B_held: Array         # (k, m)
 
 
 class Events(NamedTuple):

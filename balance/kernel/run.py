@@ -91,9 +91,10 @@ def tick(X: Array, start: float, sample: int, units: Array, law: LawArrays, even
     if not sense(X, start, sample, units, law, events, work, output):
         return
     numbers = work.numbers
-    most = law.output_limit if is_free(start, law.sample_time, events) else 0.0
-    v, limited = law_tick(numbers[MEMORY], numbers[MEASURED], law.A, law.B, law.E, law.C, law.D, most,
-                          numbers[SPARE])
+    free = is_free(start, law.sample_time, events)
+    most = law.output_limit if free else 0.0
+    A, B = (law.A, law.B) if free else (law.A_held, law.B_held)
+    v, limited = law_tick(numbers[MEMORY], numbers[MEASURED], A, B, law.E, law.C, law.D, most, numbers[SPARE])
     short = share_out(limited, numbers[MEASURED], law.allotment, law.levelling, law.input_limits, law.line_share,
                       work.queue[0])
     numbers[LINE, 0] = limited

@@ -50,7 +50,8 @@ def law_arrays(law: Law, plant: Plant, command_bits: int | None = None) -> LawAr
     return LawArrays(_flat(law.A), _flat(law.B), _flat(law.E), _flat(law.C), _flat(law.D), float(law.output_limit),
                      _flat(law.allotment), _flat(law.levelling), _flat(law.input_limits), line_share(plant),
                      input_steps(law, command_bits), resting(law, plant), places(law, plant),
-                     float(law.sample_time), float(law.latency))
+                     float(law.sample_time), float(law.latency),
+                     _flat(law.A if law.held_A is None else law.held_A), _flat(law.B if law.held_B is None else law.held_B))
 
 
 def kernel_units(plant: Plant) -> Array:

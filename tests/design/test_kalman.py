@@ -17,7 +17,7 @@ from balance.design.loop import actuator_break, close, sample_plant
 from balance.design.steady import tolerable_offset
 from balance.goal.goal import Complementary, Kalman, PidControl
 from balance.goal.read import read_goal
-from balance.goal.trials import Start, Trial
+from balance.goal.trials import LiftOff, Start, Trial
 from balance.kernel.sensing import ACCEL_NOISE, GYRO_BIAS, GYRO_NOISE, TILT_BIAS
 from balance.simulate.run import run_one
 from tests.design.machines import shipped
@@ -167,3 +167,28 @@ def test_the_file_says_kalman(tmp_path):
     path.write_text(text.replace("{kind: complementary, crossover: 0.25 Hz}", told), encoding="utf-8")
     given = read_goal(str(path)).estimator
     assert given == Kalman(0.02, np.radians(0.01), pytest.approx(np.radians(0.1)))
+
+
+def test_held_askew_the_filter_does_not_take_it_for_balance():
+    """Held 10 s at 1.2 degrees and let go: it catches itself; the twin, a filter that ran on as if falling, is fooled."""
+    design, goal = designed()
+    held = Trial(lift_off=LiftOff(np.radians(1.2), 0.0, 0.0, 10.0), lasts=15.0)
+    run = run_one(design, goal, "held", held, "outward", True)
+    assert run.verdict == "recovered"
+    assert run.peak_lean < np.radians(1.6)
+    law = replace(design.law, held_A=None, held_B=None)
+    fooled = run_one(replace(design, law=law), goal, "held", held, "outward", True)
+    assert fooled.peak_lean > 1.1 * run.peak_lean
+    assert abs(fooled.end_momentum) > 10.0 * abs(run.end_momentum)        # it still leans against a balance that is none
+
+
+def test_held_at_rest_the_gyros_bias_is_learned_within_two_seconds():
+    design, _ = designed()
+    law, x = design.law, np.zeros(len(design.law.memory))
+    y = np.zeros(len(law.measurements))
+    y[law.measurements.index("tilt")], y[law.measurements.index("gyro")] = 0.02, 0.005
+    for _ in range(round(2.0 / law.sample_time)):
+        x = law.held_A @ x + law.held_B @ y
+    found = dict(zip(law.memory, x, strict=True))
+    assert found["gyro_bias"] == pytest.approx(0.005, rel=0.02)
+    assert (found["lean_predicted"], found["lean_rate_predicted"]) == pytest.approx((0.02, 0.0), abs=1e-12)

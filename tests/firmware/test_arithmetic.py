@@ -62,9 +62,9 @@ def raw_of(program, stance, row):
 
 @pytest.mark.parametrize("case", CASES)
 def test_both_models_do_what_the_kernels_law_does(case):
-    """Within rounding: float32 to 1e-5 of each limit, 16-bit gains to 2e-3, twice that behind a tilt good to 1e-4 rad."""
+    """Within rounding: float32 to 1e-5 of each limit, 16-bit gains to 2e-3; an estimate of lean good to 2e-4 rad, 1e-2."""
     program, fixed = package(case).program, package(case).fixed
-    close = 4e-3 if program.inertial else 2e-3
+    close = 1e-2 if program.inertial else 2e-3
     for s, design in enumerate(designs(case)):
         rows = walk(design)
         due = law_in_doubles(design, rows)

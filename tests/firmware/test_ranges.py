@@ -38,7 +38,8 @@ def memory_sizes(fixed: Fixed, case: str, s: int, readings: list[float]) -> list
     k = len(law.memory)
     noise = np.array([(len(row.terms) + 1) * 3.0 * 2.0 ** max(max((t.shift for t in row.terms), default=0), 0) / 2.0**places
                       for row, places in zip(fixed.moves, fixed.memory, strict=True)])
-    wide = replace(law, B=np.hstack([law.B, np.eye(k)]))
+    held = None if law.held_B is None else np.hstack([law.held_B, np.eye(k)])
+    wide = replace(law, B=np.hstack([law.B, np.eye(k)]), held_B=held)
     bounds = np.array([x / 2.0**p for x, p in zip(readings, fixed.readings, strict=True)])
     return [x * 2.0**p for x, p in zip(memory_reach(wide, np.append(bounds, noise)), fixed.memory, strict=True)]
 
@@ -64,6 +65,8 @@ def intermediates(fixed: Fixed, case: str, s: int) -> dict[str, float]:
     out["line"] = total(fixed.line, s, sizes)
     for i, row in enumerate(fixed.moves):
         out[f"memory {i}"] = max(memory[i], total(row, s, sizes, memory[i]))
+    for i, row in enumerate(fixed.held_moves):
+        out[f"memory {i}, held"] = total(row, s, sizes, memory[i])
     asked = [total(row, s, sizes) for row in fixed.inputs]
     limits = [row.limits[s] for row in fixed.inputs]
     out |= {f"unit {i}": size for i, size in enumerate(asked)}

@@ -60,7 +60,7 @@ def law(gains=(0.0, 0.0, 0.0), sample_time=0.002, latency=0.0, limit=np.inf, pla
     stays = 1.0 if hold else 0.0
     return LawArrays(np.full((1, 1), stays), np.zeros((1, m)), np.zeros(1), np.full(1, stays), -np.array(gains, float),
                      limit, np.ones(1), np.zeros((1, m)), np.array([np.inf]), np.zeros(1), np.zeros(1), np.zeros(m),
-                     np.array(places), sample_time, latency)
+                     np.array(places), sample_time, latency, np.full((1, 1), stays), np.zeros((1, m)))
 
 
 def ideal_sensor():
