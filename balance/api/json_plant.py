@@ -4,11 +4,29 @@ from __future__ import annotations
 
 from balance.api.json_numbers import Tree, matrix, number, row
 from balance.plant.record import Plant, Unit
+from balance.stance.measured import Disagreement
 
 
-def json_plant(plants: tuple[Plant, ...]) -> Tree:
-    """Write the plants of one machine; `stances` is a list also for one stance."""
-    return {"machine": plants[0].machine if plants else "", "stances": [_stance(p) for p in plants]}
+def json_plant(plants: tuple[Plant, ...], measured: tuple[Disagreement, ...] = ()) -> Tree:
+    """Write the plants of one machine; `stances` is a list also for one stance. `measured`: the bench beside CAD."""
+    return {
+        "machine": plants[0].machine if plants else "",
+        "stances": [_stance(p) for p in plants],
+        "measured": [_measured(one) for one in measured],
+    }
+
+
+def _measured(one: Disagreement) -> Tree:
+    """Write one measured number; `unit` goes for `cad`, `measured` and `uncertainty` (one sigma)."""
+    return {
+        "quantity": one.quantity,
+        "unit": one.unit,
+        "cad": number(one.cad),
+        "measured": number(one.measured),
+        "uncertainty": number(one.uncertainty),
+        "beyond_uncertainty": one.beyond,
+        "pole_change_share": number(one.pole_change),
+    }
 
 
 def _stance(plant: Plant) -> Tree:

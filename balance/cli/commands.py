@@ -41,10 +41,12 @@ def run_plant(asked: argparse.Namespace, progress: Progress) -> Outcome:
     from balance.api.json_plant import json_plant
     from balance.api.plant import plant
     from balance.cli.show_plant import show_plant
+    from balance.stance.compared import bench_against_cad
 
     plants = plant(body.machine, body.stances, body.fell)
     code = MET if all(p.acts for p in plants) else UNMET
-    text, answer = show_plant(plants), json_plant(plants)
+    measured = bench_against_cad(body.machine)
+    text, answer = show_plant(plants, measured), json_plant(plants, measured)
     if asked.figure:
         from balance.api.report import figure
 

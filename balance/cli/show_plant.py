@@ -7,19 +7,43 @@ from balance.cli.colour import NOT_MET
 from balance.cli.words import folded, side_by_side
 from balance.plant.record import Plant, Unit
 from balance.report.amounts import amount, share
+from balance.stance.measured import Disagreement
 
 CANNOT = "cannot act about this line"
 
 
-def show_plant(plants: tuple[Plant, ...]) -> str:
-    """Return the text of the answer: the stances side by side, then each stabiliser about each line."""
+def show_plant(plants: tuple[Plant, ...], measured: tuple[Disagreement, ...] = ()) -> str:
+    """Return the text of the answer: the stances side by side, each stabiliser about each line, the bench beside CAD."""
     head = f"{plants[0].machine}: standing on two feet, free to topple about the line through them"
     notes = [
         folded(f"{NOT_MET}: {p.stance.name}: the stabilisers {CANNOT} (every one is square to it)")
         for p in plants
         if not p.acts
     ]
-    return "\n\n".join([folded(head), _stances(plants), _units(plants), *notes, SIGNS])
+    return "\n\n".join([folded(head), _stances(plants), _units(plants), *_bench(measured), *notes, SIGNS])
+
+
+def _bench(measured: tuple[Disagreement, ...]) -> list[str]:
+    """Every measured number beside CAD's; the plants above are those of the measured machine."""
+    if not measured:
+        return []
+    rows = [
+        [
+            one.quantity,
+            amount(one.cad, one.unit, 4),
+            amount(one.measured, one.unit, 4),
+            amount(one.uncertainty, one.unit, 2),
+            "beyond it" if one.beyond else "within",
+            f"{100.0 * one.pole_change:+.2f} %".replace("-", "−"),
+        ]
+        for one in measured
+    ]
+    head = ["measured", "from parts", "on the bench", "± (1 σ)", "differs", "pole"]
+    return [
+        "\n".join([text_table(head, rows, "lrrrlr"), "", folded(
+            "The stances above stand with the bench's numbers. Differs: by more than twice the uncertainty, or not. "
+            "Pole: what this number alone does to it.")])
+    ]
 
 
 SIGNS = """\

@@ -7,6 +7,7 @@ from dataclasses import dataclass, field
 
 from balance.files.fields import Shape, place, quantity, section, table, text, vector
 from balance.machine.legs import Feet, Leg
+from balance.machine.measured import Measured
 from balance.machine.motors import Motor, Supply
 from balance.machine.solids import Part, Vector
 from balance.machine.stabilisers import STABILISERS, Stabiliser
@@ -86,6 +87,7 @@ class Machine:
     imu: Imu | None = section(Imu, default=None)
     stances: dict[str, StancePlan] | None = table(StancePlan, default=None)
     tolerances: Tolerances | None = section(Tolerances, default=None)
+    measured: Measured | None = section(Measured, default=None)
     # neither is a key of the file: its path, and dotted key -> (line, column) in it
     source: str = field(default="", metadata={"shape": None})
     marks: Marks = field(default_factory=dict, metadata={"shape": None}, compare=False)

@@ -34,7 +34,7 @@ def read_machine(path: str) -> Machine:
 def _across(tree: Tree, marks: Marks) -> Iterator[Problem]:
     """Rules across sections, read off the tree so that they speak up beside other problems of the file."""
     root = tree.root
-    for fault in (*_kind_of_body(root), *_motors(root), *_rotors(root), *_legs(root)):
+    for fault in (*_kind_of_body(root), *_motors(root), *_rotors(root), *_legs(root), *_measured(root)):
         place = marks.get(fault.key) or root.place(fault.key)
         yield Problem(tree.path, *place, fault.key or "(file)", fault.given, fault.allowed, fault.hint)
 
@@ -44,7 +44,7 @@ def _kind_of_body(root: Node) -> Iterator[Fault]:
     if root.kind != "mapping":
         return
     if root.get("lumped"):
-        for word in ("body", "legs", "stances"):
+        for word in ("body", "legs", "stances", "measured"):
             if root.get(word):
                 yield Fault(word, f"`{word}` beside `lumped`", "`lumped` alone, or `body` and `stances`",
                             "three numbers stand for the whole body and its one stance")
@@ -104,3 +104,16 @@ def _legs(root: Node) -> Iterator[Fault]:
             if leg not in seen and plan.get("down"):
                 yield Fault(f"stances.{stance}", f"no place for the leg `{leg}`",
                             "every leg under `down` or `lifted`", f"add `{leg}:` to `lifted:`")
+
+
+def _measured(root: Node) -> Iterator[Fault]:
+    """The pose of a bench test is a stance, and something was measured."""
+    measured, stances = root.get("measured"), root.get("stances")
+    if measured is None or stances is None or measured.kind != "mapping":
+        return
+    pose = measured.get("pose")
+    if pose is not None and pose.text and pose.text not in stances.names():
+        yield Fault("measured.pose", f"the stance `{pose.text}`", listed(stances.names()),
+                    did_you_mean(pose.text, stances.names()))
+    if not measured.get("weighings") and not measured.get("swings"):
+        yield Fault("measured", "neither `weighings` nor `swings`", "one of them, or both")

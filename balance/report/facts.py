@@ -6,9 +6,10 @@ import math
 from collections.abc import Callable
 
 from balance.plant.record import Plant, Unit
-from balance.report.amounts import amount, figure, fixed, share, speed
+from balance.report.amounts import MINUS, amount, figure, fixed, share, speed
 from balance.report.tables import Row, Table
 from balance.simulate.records import TrialResult
+from balance.stance.measured import Disagreement
 
 NOTE = ("Lean is measured from the balanced lean, positive outward: away from the lifted feet. “Best possible” is the "
         "closed form for the all-out manoeuvre of the linear machine, without delay and noise; no controller does better.")
@@ -48,6 +49,17 @@ def landing(plant: Plant) -> str:
     """Say at which lean the lifted foot meets the ground."""
     angle = plant.stance.touch_down_lean
     return "never: a fall both ways" if angle is None else f"{amount(angle + plant.balanced_lean, 'rad')} inward"
+
+
+def bench_table(measured: tuple[Disagreement, ...]) -> Table:
+    """The bench beside CAD: every measured number, and what it alone does to the pole."""
+    rows = tuple(Row(one.quantity, (amount(one.cad, one.unit, 4), amount(one.measured, one.unit, 4),
+                                    amount(one.uncertainty, one.unit, 2), "beyond it" if one.beyond else "within",
+                                    f"{100.0 * one.pole_change:+.2f} %".replace("-", MINUS)))
+                 for one in measured)
+    return Table("Measured on the bench", ("Quantity", "From parts", "Measured", "± (1 σ)", "Differs", "Pole"), rows,
+                 "The tables above are those of the measured machine: what differs is carried by the trunk into every "
+                 "stance. A difference of more than twice the uncertainty is one that chance does not explain.")
 
 
 def unit_table(plants: tuple[Plant, ...]) -> Table:

@@ -12,7 +12,7 @@ from balance.machine.machine import Machine
 from balance.report import page as html
 from balance.report.assumed import assumed, unchecked
 from balance.report.cautions import cautions
-from balance.report.facts import machine_table, trial_table, unit_table
+from balance.report.facts import bench_table, machine_table, trial_table, unit_table
 from balance.report.figures.bode import draw_bode
 from balance.report.figures.machine import draw_view
 from balance.report.figures.nyquist import draw_nyquist
@@ -29,6 +29,7 @@ from balance.report.robustness import across_words, one_law_table, retuned_words
 from balance.report.seal import free_place
 from balance.report.told import told
 from balance.report.verdicts import headline, tally, verdict_tables
+from balance.stance.compared import bench_against_cad
 
 PAGE = "report.html"
 
@@ -52,8 +53,9 @@ def compose(result: CheckResult) -> str:
     pictures = tuple(picture_loop(design) for design in designs)
     sections = [("verdicts", "Verdicts", "", _verdicts(result))]
     if designs:
-        plants = tuple(design.plant for design in designs)
-        sections.append(("machine", "The machine", "", [html.table(machine_table(plants)), html.table(unit_table(plants))]))
+        plants, measured = tuple(design.plant for design in designs), bench_against_cad(result.machine)
+        sections.append(("machine", "The machine", "", [html.table(machine_table(plants)), html.table(unit_table(plants)),
+                          *([html.table(bench_table(measured))] if measured else [])]))
         sections.append(("margins", "Margins", "", _margins(result.machine, designs, pictures)))
     for i, (design, loop) in enumerate(zip(designs, pictures, strict=True)):
         name = design.plant.stance.name

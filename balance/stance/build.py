@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from math import atan2, cos, hypot
+from math import atan2, hypot
 
 import numpy as np
 from numpy.typing import NDArray
@@ -14,9 +14,11 @@ from balance.machine.machine import Machine, StancePlan
 from balance.maths.contact_line import line_axes
 from balance.maths.inertia import about_line
 from balance.maths.rotations import turned
+from balance.stance.bench import bench_of, refuse_unphysical
 from balance.stance.bodies import Body, join, placed
 from balance.stance.ground import check_feet, contact_line, lifted_places, touch_down
 from balance.stance.lumped import lumped_stance
+from balance.stance.measured import corrected, correction, measured_stance
 from balance.stance.parts import trunk_bodies
 from balance.stance.problems import problem
 from balance.stance.record import Stance
@@ -43,7 +45,14 @@ def build_stance(machine: Machine, name: str) -> Stance:
     if machine.lumped is not None:
         return lumped_stance(machine, machine.lumped)
     plans = machine.stances or {}
-    return stand(machine, name, plans[name])
+    stance = stand(machine, name, plans[name])
+    if machine.measured is None:
+        return stance
+    cad = stand(machine, machine.measured.pose, plans[machine.measured.pose])
+    bench = bench_of(machine, machine.measured, cad)
+    real = corrected(stance, correction(cad, measured_stance(cad, bench)))
+    refuse_unphysical(machine, real)
+    return real
 
 
 def stand(machine: Machine, name: str, plan: StancePlan) -> Stance:
@@ -80,15 +89,3 @@ def _points(bodies_T: list[Body], legs: dict[str, Array], R_WT: Array, p_WT: Arr
             points.setdefault(body.name, []).append(body.centre)
     found_T = {name: np.array(rows) for name, rows in points.items()} | legs
     return {name: rows @ R_WT.T + p_WT for name, rows in found_T.items()}
-
-
-def toppling_stiffness(stance: Stance) -> tuple[float, float]:
-    """Return (G_s, G_c) in N·m: M(θ) = G_s sin θ + G_c cos θ, feet rolling on their radius."""
-    weight = stance.mass * stance.gravity * cos(stance.slope)
-    return weight * (stance.height - stance.foot_radius), weight * stance.offset
-
-
-def balanced_lean(stance: Stance) -> float:
-    """Return θ_b in rad, where gravity has no moment about the line: −atan(δ/(h − r))."""
-    G_s, G_c = toppling_stiffness(stance)
-    return -atan2(G_c, G_s)

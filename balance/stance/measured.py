@@ -15,9 +15,9 @@ from numpy.typing import NDArray
 from balance.machine.machine import Machine
 from balance.maths.inertia import about_line, rotated, shifted
 from balance.maths.tensor_fit import fitted_tensor
-from balance.stance.build import toppling_stiffness
 from balance.stance.record import Stance
 from balance.stance.rotors import spin_about_line
+from balance.stance.stiffness import toppling_stiffness
 
 Array = NDArray[np.float64]
 

@@ -13,9 +13,10 @@ from balance.machine.machine import Machine, Pose, StancePlan
 from balance.machine.solids import Part, Tensor, Vector
 from balance.machine.stabilisers import ReactionWheel, Stabiliser
 from balance.maths.rotations import about, unit
-from balance.stance.build import balanced_lean, build_stance
+from balance.stance.build import build_stance
 from balance.stance.record import Stance
 from balance.stance.rotors import stabiliser_bodies
+from balance.stance.stiffness import balanced_lean
 from tests.property.machines import random_machine
 from tests.property.units import Units, rescaled
 

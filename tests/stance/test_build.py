@@ -12,7 +12,8 @@ from balance.base.errors import InputError
 from balance.machine.legs import Feet, JointLimits, Leg, Link
 from balance.machine.machine import Machine, Pose, StancePlan
 from balance.machine.solids import Box, Part, PointMass, Sphere
-from balance.stance.build import balanced_lean, build_stance, toppling_stiffness
+from balance.stance.build import build_stance
+from balance.stance.stiffness import balanced_lean, toppling_stiffness
 from tests.stance.machines import FEET, on_circle, rig, three_legged
 
 ROUNDING = 1e-13
