@@ -7,6 +7,7 @@ from balance.api.json_numbers import Tree, number
 from balance.api.json_plant import json_plant
 from balance.api.json_recover import json_recover
 from balance.check.records import CheckResult, Verdict
+from balance.stance.compared import bench_against_cad
 
 
 def json_verdicts(verdicts: tuple[Verdict, ...]) -> Tree:
@@ -20,7 +21,7 @@ def json_check(result: CheckResult) -> Tree:
         "machine": result.machine.machine,
         "design": result.goal.design,
         **json_verdicts(result.verdicts),
-        "plant": json_plant(tuple(d.plant for d in result.designs)),
+        "plant": json_plant(tuple(d.plant for d in result.designs), bench_against_cad(result.machine)),
         "gains": json_gains(result.designs),
         "recover": json_recover(result.trials),
     }
