@@ -99,7 +99,7 @@ void {p}_reset({p}_state *state);
 uint16_t {p}_update({p}_state *state, const {p}_reading *reading, {p}_command *command);
 
 #ifdef {big}_SELFTEST
-{_proof(big)}
+{_proof(big, bool(numbers.scales))}
 uint16_t {p}_selftest(void);
 #endif
 
@@ -135,10 +135,11 @@ def _sample(program: Program) -> str:
     )
 
 
-def _proof(big: str) -> str:
+def _proof(big: str, whole: bool) -> str:
+    within = "of the command's last place" if whole else "parts of each unit's limit"
     return comment(
         "Run the vectors that came with the design; returns how many of them differ (0: all agree). Exact; with "
-        f"{big}_TOLERANCE defined, within that many parts of each unit's limit."
+        f"{big}_TOLERANCE defined, within that many {within}."
     )
 
 

@@ -122,11 +122,20 @@ def _limit(program: Program, i: int, kind: str) -> str:
 
 def _number(kind: str, big: str) -> str:
     if kind != "float":
-        return """static uint8_t alike(int32_t given, int32_t due, int32_t most)
+        return """#if defined(TOLERANCE)
+static uint8_t alike(int32_t given, int32_t due, int32_t most)
+{
+    const int32_t apart = given - due;
+    (void)most;
+    return ((apart <= (TOLERANCE)) && (apart >= -(TOLERANCE))) ? 1u : 0u;
+}
+#else
+static uint8_t alike(int32_t given, int32_t due, int32_t most)
 {
     (void)most;
     return (given == due) ? 1u : 0u;
-}"""
+}
+#endif""".replace("TOLERANCE", f"{big}_TOLERANCE")
     return """typedef union { uint32_t word; float number; } both;
 
 static float number_of(uint32_t word)

@@ -98,3 +98,27 @@ def test_tables_stay_in_flash_on_an_eight_bit_processor(tmp_path: Path) -> None:
     # the vectors alone are over 10 kB: with them in RAM the program could not even be linked into 8 kB; state and text stay
     assert run.text > 10_000
     assert run.data < 250
+
+
+@pytest.mark.parametrize(("variant", "little", "much"), [("", "1e-9f", "2.0f"), ("_fixed", "1", "1073741823")],
+                         ids=["float32", "fixed"])
+def test_the_tolerance_mode_forgives_as_much_as_it_says(variant: str, little: str, much: str, tmp_path: Path) -> None:
+    """One gain spoiled: the commands agree within a tolerance of the whole range (flags may not), and not within none."""
+    need("host")
+    home, p = written("bench-rig-pid", tmp_path), package("bench-rig-pid").program.prefix + variant
+    source = home / "src" / f"{p}.c"
+    text = source.read_text(encoding="utf-8")
+    first = text.split("unit_0_gains[STANCES]")[1].split("        ")[1].split(" ")[0].rstrip(",")
+    head, tail = text.split("unit_0_gains[STANCES]", 1)
+    halved = f"{0.9 * float(first.rstrip('f')):.6g}f" if not variant else str(int(0.9 * int(first)))
+    source.write_text(f"{head}unit_0_gains[STANCES]{tail.replace(first, halved, 1)}", encoding="utf-8")
+    main = home / "main.c"
+    period = package("bench-rig-pid").program.period_us
+    main.write_text(MAIN.format(prefix=p, big=p.upper(), period=period), encoding="utf-8")
+    differ = []
+    for tolerance in (little, much):
+        run = run_on("host", [source, home / "src" / f"{p}_selftest.c", main], home / f"t{tolerance}", [home / "src"],
+                     ["-O2", f"-D{p.upper()}_SELFTEST", f"-D{p.upper()}_TOLERANCE={tolerance}"])
+        differ.append(int(run.lines[0].split()[1], 16))
+    assert differ[0] > 300
+    assert differ[1] < 0.5 * differ[0]
