@@ -39,7 +39,7 @@ def design_stance(plant: Plant, goal: Goal) -> Design:
     sampled = sample_plant(plant, T, goal.loop.latency)
     if not plant.acts:
         return refusal(plant, sampled, SQUARE)
-    found = law_for(plant, sampled, goal)
+    found = law_for(plant, goal)
     return refusal(plant, sampled, found) if isinstance(found, str) else measured(plant, sampled, found, goal)
 
 
@@ -47,7 +47,7 @@ def measured(plant: Plant, sampled: SampledPlant, law: Law, goal: Goal) -> Desig
     """Return what a law does on a plant: poles, margins, the ideal beside it, what cannot be beaten."""
     T = sampled.sample_time
     poles = np.linalg.eigvals(close(sampled, law)).astype(np.complex128)
-    ideal = _ideal(plant, goal.control) if isinstance(goal.control, LqrControl) else None
+    ideal = _ideal(plant.for_law, goal.control) if isinstance(goal.control, LqrControl) else None
     margins = margins_of(at_actuator(sampled, law))
     integral = bode_integral(actuator_break(sampled, law)) if margins.stable else None
     return Design(plant, law, poles, equivalent(poles, T), margins, loop_limits(plant, T, goal.loop.latency), ideal,
@@ -62,8 +62,10 @@ def _ideal(plant: Plant, control: LqrControl) -> Ideal | None:
         return None
 
 
-def law_for(plant: Plant, sampled: SampledPlant, goal: Goal) -> Law | str:
-    """Return the law with its estimator, or why there is none."""
+def law_for(plant: Plant, goal: Goal) -> Law | str:
+    """Return the law with its estimator, made for the plant as firmware sees it (`Plant.for_law`), or why there is none."""
+    plant = plant.for_law
+    sampled = sample_plant(plant, 1.0 / goal.loop.rate, goal.loop.latency)
     check_noise(plant, goal)
     found = _law(plant, sampled, goal)
     if isinstance(found, str) or isinstance(goal.estimator, NoEstimator):
@@ -128,10 +130,10 @@ def response(sampled: SampledPlant, law: Law) -> Response:
 
 def refusal(plant: Plant, sampled: SampledPlant, why: str) -> Design:
     """Return a design without a law: the open loop's poles, no margins, and the reason."""
-    n = len(plant.model.states)
-    none = np.zeros(0)
-    law = Law("none", sampled.sample_time, sampled.latency, plant.model.states, (), np.zeros((0, 0)),
-              np.zeros((0, n)), none, none, np.zeros(n), 0.0, np.zeros(len(plant.units)), np.zeros_like(plant.levelling),
+    states, none = plant.for_law.model.states, np.zeros(0)
+    n = len(states)
+    law = Law("none", sampled.sample_time, sampled.latency, states, (), np.zeros((0, 0)),
+              np.zeros((0, n)), none, none, np.zeros(n), 0.0, np.zeros(len(plant.units)), np.zeros((len(plant.units), n)),
               np.array([unit.input_limit for unit in plant.units]), command_unit(plant), none, (), {})
     poles = np.linalg.eigvals(sampled.A).astype(np.complex128)
     return Design(plant, law, poles, equivalent(poles, sampled.sample_time), UNSTABLE,

@@ -99,6 +99,8 @@ def sample_plant(plant: Plant, sample_time: float, latency: float) -> SampledPla
 def sensor_rows(plant: Plant, width: int) -> Array:
     """Return (2, width): `tilt` = lean − r θ̈/g with the sensor r above the line, and `gyro` (physics page, trap 8).
 
+    On legs that give the hinge at L below the sensor moves by itself: lean − ((r − L) ψ̈ + L χ̈)/g.
+
     θ̈ is that of the sampling instant, under the torque that still acts then; a torque that follows its command without
     any lag is left out of it (wheels always lag).
     """
@@ -108,7 +110,11 @@ def sensor_rows(plant: Plant, width: int) -> Array:
 def _sensor_rows(plant: Plant, A: Array, width: int) -> Array:
     rows = np.eye(2, width)
     gravity = plant.stance.gravity * np.cos(plant.stance.slope)
-    rows[0, :len(A)] -= plant.sensor_parameters[UP] / gravity * A[1]
+    up, n = plant.sensor_parameters[UP], len(plant.model.states)
+    hinge = plant.legs.hinge if plant.legs else 0.0
+    rows[0, :len(A)] -= (up - hinge) / gravity * A[1]
+    if plant.legs:
+        rows[0, :len(A)] -= hinge / gravity * A[n - 1]
     return rows
 
 

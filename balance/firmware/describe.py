@@ -184,7 +184,7 @@ def _reading(designs: Sequence[Design], j: int) -> Reading:
 
 def _believed(design: Design, name: str) -> float:
     """Return the largest wheel speed, gimbal angle or gimbal rate that is believed: twice what the drive can reach."""
-    states = [s for s in design.plant.model.states if s not in ("lean", "lean_rate")]
+    states = [s for s in design.plant.for_law.model.states if s not in ("lean", "lean_rate")]
     owners = [row for row in design.plant.unit_parameters for _ in range(1 if row[at.KIND] == at.WHEEL else 2)]
     row = owners[states.index(name)]
     if name.endswith("gimbal_angle"):

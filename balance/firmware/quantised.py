@@ -104,13 +104,10 @@ def roundings(designs: Sequence[Design], laws: Sequence[Law]) -> tuple[Rounding,
     """Return what rounding costs on every stance; the levelling's rounding is in it, as the plant's own."""
     out = []
     for design, law, wide in zip(designs, laws, alike([d.law for d in designs]), strict=True):
-        plant = replace(
-            design.plant,
-            allotment=law.allotment,
-            levelling=law.levelling[:, : design.plant.levelling.shape[1]]
-            if law.levelling.shape == design.plant.levelling.shape
-            else design.plant.levelling,
-        )
+        levelling = design.plant.levelling.copy()            # legs that give are states no law levels
+        if law.levelling.shape == design.plant.for_law.levelling.shape:
+            levelling[:, : law.levelling.shape[1]] = law.levelling
+        plant = replace(design.plant, allotment=law.allotment, levelling=levelling)
         sampled = sample_plant(plant, law.sample_time, law.latency)
         rounded = margins_of(at_actuator(sampled, law))
         before = close(sample_plant(design.plant, law.sample_time, law.latency), wide)

@@ -23,6 +23,7 @@ from balance.kernel.layout import (
     GIMBAL_INERTIA,
     GIMBAL_SERVO,
     KIND,
+    LEGS,
     MOTOR,
     OWN_INERTIA,
     RATE_LIMIT,
@@ -131,6 +132,8 @@ def unit_input(units: Array, i: int, first: float, second: float, lean_rate: flo
     (its second state is mechanical and belongs to `equations`).
     """
     if units[i, KIND] == WHEEL:
+        if units[i, ROLE] == LEGS:
+            return command, first, outcome.NO_LIMIT
         if units[i, ROLE] != MOTOR:
             return 0.0, 0.0, outcome.NO_LIMIT
         target, met = current_target(units, i, first, command)

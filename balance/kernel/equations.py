@@ -28,11 +28,13 @@ from balance.kernel.layout import (
     INERTIA,
     KAPPA,
     KIND,
+    LEGS,
     MASS,
     MOMENTUM,
     OFFSET,
     OWN_INERTIA,
     RATE_LAG,
+    ROLE,
     SPIN_HELD,
     STICTION,
     STIFF_COS,
@@ -41,6 +43,7 @@ from balance.kernel.layout import (
     VISCOUS,
     WHEEL,
 )
+from balance.kernel.legs import legs_terms
 
 Array = NDArray[np.float64]
 
@@ -116,7 +119,11 @@ def lean_acceleration(X: Array, inputs: Array, disturbance: float, body: Array, 
     torque = gravity_torque(X[0], body) + push + disturbance - body[BODY_DRAG] * X[1]
     for i in range(units.shape[0]):
         if units[i, KIND] == WHEEL:
-            if units[i, COUPLING] == 0.0:                  # square to the line, or no wheel at all: the supply
+            if units[i, COUPLING] == 0.0:                  # square to the line, or no wheel at all: legs, the supply
+                if units[i, ROLE] == LEGS:
+                    more, line, coupling, own, back = legs_terms(X, i, body, units)
+                    mass += more - coupling**2 / own
+                    torque += line - coupling / own * (inputs[i] + back)
                 continue
             net = inputs[i] - wheel_drag(X[2 + 2 * i], units[i, COULOMB], units[i, VISCOUS], units[i, STICTION])
             mass -= units[i, COUPLING] ** 2 / units[i, OWN_INERTIA]
@@ -156,7 +163,7 @@ def derivative(X: Array, inputs: Array, disturbance: float, body: Array, units: 
         acceleration = lean_acceleration(X, inputs, disturbance, body, units, out)
     out[0], out[1] = X[1], acceleration
     for i in range(units.shape[0]):
-        unit_rates(i, X, inputs[i], acceleration, units, out)
+        unit_rates(i, X, inputs[i], acceleration, body, units, out)
 
 
 @njit(cache=True, error_model="numpy", forceinline=True)
@@ -168,8 +175,13 @@ def servo_torque(i: int, X: Array, rate: float, acceleration: float, units: Arra
 
 
 @njit(cache=True, error_model="numpy", forceinline=True)
-def unit_rates(i: int, X: Array, given: float, acceleration: float, units: Array, out: Array) -> None:
+def unit_rates(i: int, X: Array, given: float, acceleration: float, body: Array, units: Array, out: Array) -> None:
     """Fill the two rates of unit i. A wheel's second state, its current, belongs to the drive: rate 0 here."""
+    if units[i, KIND] == WHEEL and units[i, COUPLING] == 0.0 and units[i, ROLE] == LEGS:
+        _, _, coupling, own, back = legs_terms(X, i, body, units)
+        out[2 + 2 * i] = (given + back - coupling * acceleration) / own
+        out[3 + 2 * i] = X[2 + 2 * i]
+        return
     if units[i, KIND] == WHEEL:
         net = given - wheel_drag(X[2 + 2 * i], units[i, COULOMB], units[i, VISCOUS], units[i, STICTION])
         out[2 + 2 * i] = (net - units[i, COUPLING] * acceleration) / units[i, OWN_INERTIA]

@@ -24,8 +24,10 @@ from balance.kernel.layout import (
     GIMBAL_SERVO,
     GRAVITY,
     HEIGHT,
+    HINGE_MODE,
     INERTIA,
     KIND,
+    LEGS,
     MASS,
     MOTOR,
     OFFSET,
@@ -42,6 +44,7 @@ from balance.kernel.layout import (
     TOUCH_DOWN,
     WHEEL,
 )
+from balance.kernel.legs import legs_row, on_legs_of
 from balance.kernel.supply import CLAMP_GAIN, bus_row, put_voltage, share_bus
 from balance.kernel.teeth import press_teeth
 
@@ -72,6 +75,8 @@ def longest_step(units: Array) -> float:
             lag = units[i, CURRENT_LAG]
         elif units[i, KIND] == WHEEL and units[i, ROLE] == TOOTHED:
             lag = flank_frequency(units, i)
+        elif units[i, KIND] == WHEEL and units[i, ROLE] == LEGS:
+            lag = units[i, HINGE_MODE]
         elif units[i, KIND] == WHEEL:
             lag = CLAMP_GAIN if units[i, TAKES_BACK] == 0.0 else 0.0
         elif units[i, KIND] == GIMBAL_SERVO:
@@ -86,10 +91,30 @@ def disturbance_at(t: float, active: Array, count: int) -> float:
     """Return the torque about the line in N·m at time t from the first `count` rows of `active`."""
     total = 0.0
     for i in range(count):
-        s = t - active[i, outcome.START]
-        total += active[i, outcome.LEVEL] + active[i, outcome.SLOPE] * s
-        if active[i, outcome.SWING] != 0.0:
-            total += active[i, outcome.SWING] * np.sin(active[i, outcome.TURN] * s)
+        total += torque_of(t, active, i)
+    return total
+
+
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
+def torque_of(t: float, active: Array, i: int) -> float:
+    """Return the torque about the line in N·m of one row at time t."""
+    s = t - active[i, outcome.START]
+    torque = active[i, outcome.LEVEL] + active[i, outcome.SLOPE] * s
+    if active[i, outcome.SWING] != 0.0:
+        torque += active[i, outcome.SWING] * np.sin(active[i, outcome.TURN] * s)
+    return float(torque)
+
+
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+def put_on_legs(t: float, active: Array, count: int, live: Array, commands: Array) -> float:
+    """Put what acts on legs that give at time t into their command; return it in N·m, 0 for stiff legs."""
+    row = legs_row(live)
+    if row < 0:
+        return 0.0
+    total = 0.0
+    for i in range(count):
+        total += on_legs_of(active[i, outcome.LEVER], live) * torque_of(t, active, i)
+    commands[row] = total
     return total
 
 
@@ -159,6 +184,7 @@ def march(X: Array, begin: float, h: float, steps: int, commands: Array, active:
                 for j in range(X.size):
                     probe[j] = X[j] + reach * rate[j]
             torque = disturbance_at(t + reach, active, count)
+            torque -= put_on_legs(t + reach, active, count, live, commands)
             if varying == 1:
                 vary(t + reach, active, count, base, body)
             rates(probe, torque, commands, body, live, met, inputs, slopes, rate)

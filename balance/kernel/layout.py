@@ -55,10 +55,11 @@ ROTOR_INERTIA = 21    # kg·m²: N² J_r, the part of OWN_INERTIA on the motor's
 ROTOR_PART = 22       # s N J_r/(I + s N J_r): the part of COUPLING on the motor's side
 ROLE = 23          # one of the roles below
 
-# roles of a row of kind WHEEL; the last two are not stabilisers but stand behind them (`simulate.setup.kernel_units`)
+# roles of a row of kind WHEEL; all but the first are not stabilisers but stand behind them (`simulate.setup.kernel_units`)
 MOTOR = 0          # a wheel with its motor; states (Ω, i)
 TOOTHED = 1        # a wheel behind a gear with play; states (Ω, gap: how far its motor is ahead)
 BUS = 2            # the supply; states (energy above the open-circuit voltage in J, energy burnt in the brake resistor)
+LEGS = 3           # legs that give; states (rate of their lean, their lean from the pose of the stance)
 
 # a toothed wheel beside what a wheel has (its row has no motor: 0 at TORQUE_PER_AMP)
 PARTNER = 12       # row of its motor
@@ -71,6 +72,12 @@ TAKES_BACK = 18    # 1: takes current back
 CAPACITANCE = 19   # F
 OVERVOLTAGE = 20   # V: the drives stop pumping; inf: they never do
 BRAKE_OHMS = 21    # 0: none
+
+# legs that give (`kernel.legs`); COUPLING 0, OWN_INERTIA 1 as the supply has
+HINGE = 10         # m above the line
+HINGE_STIFFNESS = 12  # N·m/rad
+HINGE_DAMPING = 13    # N·m·s/rad
+HINGE_MODE = 18       # rad/s: the fastest rate of trunk and legs against each other, for the sub-step
 
 # gimballed flywheel; `COUNT` 1: single, 2: mirrored pair (one coordinate γ, second gimbal at -γ with -H)
 E_S0 = 1           # e·s₀

@@ -56,7 +56,7 @@ DISTURBANCE = 7
 TRACE_SIZE = 8
 
 # a torque about the line over time: START <= t < END: LEVEL + SLOPE (t - START) + SWING sin(TURN (t - START)); beside it
-# what is added meanwhile to J, G_s and G_c, each a level and a slope
+# what is added meanwhile to J, G_s and G_c, each a level and a slope, and how high a force acts that makes the torque
 START = 0
 END = 1
 LEVEL = 2
@@ -66,13 +66,15 @@ TURN = 5
 OF_INERTIA = 6       # kg·m², next column: per s
 OF_STIFF_SIN = 8     # N·m
 OF_STIFF_COS = 10    # N·m
-TORQUE_SIZE = 12
+LEVER = 12           # m above the line; inf: a couple on the trunk
+TORQUE_SIZE = 13
 
 # a sudden change
 AT = 0               # s
 KICK = 1             # N·m·s of angular impulse about the line
 SHIFT = 2            # m of the centre of mass along w
-JUMP_SIZE = 3
+HEIGHT = 3           # m: LEVER of the kick
+JUMP_SIZE = 4
 
 # the body changes (a load is put on, a foot sinks): what is added to each of its parameters
 # AT = 0 as above

@@ -43,6 +43,8 @@ from balance.kernel.layout import (
     DEAD_BAND,
     GIMBAL_SERVO,
     GRAVITY,
+    HEIGHT,
+    HINGE,
     KIND,
     MASS,
     OFFSET,
@@ -54,6 +56,7 @@ from balance.kernel.layout import (
     STIFF_COS,
     WHEEL,
 )
+from balance.kernel.legs import hinge_moves, legs_mass, legs_row, on_legs_of
 from balance.kernel.sensing import digitised, scrambled
 from balance.kernel.stops import rates_now, release_stops, run_piece
 from balance.kernel.supply import bus_row, most_power
@@ -121,12 +124,13 @@ def sense(X: Array, start: float, sample: int, units: Array, law: LawArrays, eve
         for j in range(queue.shape[1]):
             queue[i, j] = queue[i - 1, j]
     queue[0, queue.shape[1] - 1] = start + law.latency + lateness(start, sample, events)
-    acceleration = 0.0
+    acceleration, hinge = 0.0, (0.0, 0.0)
     if is_free(start, law.sample_time, events) and reads_sensor(law.places):
         release_stops(X, start, units, work)
         rates_now(X, start, work)
         acceleration = numbers[RATE, 1]
-    measure(X, acceleration, work.body, law.places, events.sensor, events.seed, sample, numbers[MEASURED])
+        hinge = hinge_moves(X, numbers[RATE], units)[2:]
+    measure(X, acceleration, hinge, work.body, law.places, events.sensor, events.seed, sample, numbers[MEASURED])
     for j in range(law.resting.size):
         numbers[MEASURED, j] -= law.resting[j]
     return True
@@ -219,10 +223,16 @@ def in_spell(t: float, spell: Array) -> bool:
 def change(X: Array, t: float, tiny: float, units: Array, events: Events, work: Work) -> None:
     """Apply what changes suddenly at t: release, kicks and shifts due, and which torques act from now on."""
     at = work.flags[AT]
+    legs = legs_row(units)
     if events.release > 0.0 and abs(t - events.release) <= tiny:
         X[1] = events.release_rate
+        if legs >= 0:
+            X[2 + 2 * legs] = events.release_rate
     while at[NEXT_JUMP] < events.jumps.shape[0] and events.jumps[at[NEXT_JUMP], outcome.AT] <= t + tiny:
-        kick(X, events.jumps[at[NEXT_JUMP], outcome.KICK], work)
+        blow = events.jumps[at[NEXT_JUMP], outcome.KICK]
+        on_legs = on_legs_of(events.jumps[at[NEXT_JUMP], outcome.HEIGHT], units) * blow
+        kick(X, blow - on_legs, np.int64(-1), work)
+        kick(X, on_legs, np.int64(legs), work)
         shift = events.jumps[at[NEXT_JUMP], outcome.SHIFT]
         for body in (work.body, work.base):
             body[OFFSET] += shift
@@ -266,21 +276,41 @@ def weaken_supply(t: float, units: Array, events: Events, work: Work) -> None:
 def change_body(X: Array, row: Array, work: Work) -> None:
     """Add what changes of the body; what comes at rest takes its share of the momentum about the line.
 
-    (J + ΔJ) θ̇⁺ = J θ̇⁻ is the kick −ΔJ θ̇⁻ on the machine as it is from now on.
+    (J + ΔJ) θ̇⁺ = J θ̇⁻ is the kick −ΔJ θ̇⁻ on the machine as it is from now on; with legs that give, ΔM times both rates.
     """
+    legs = legs_row(work.live)
+    before = legs_share(X, legs, work)
     for j in range(work.body.size):
         work.body[j] += row[outcome.CHANGED + j]
         work.base[j] += row[outcome.CHANGED + j]
-    kick(X, -row[outcome.AT_REST] * X[1], work)
+    comes = row[outcome.AT_REST]
+    if comes == 0.0 or legs < 0:
+        kick(X, -comes * X[1], np.int64(-1), work)
+        return
+    after = legs_share(X, legs, work)
+    psi, chi = X[1], X[2 + 2 * legs]
+    trunk = -(comes + after[0] - before[0]) * psi - (after[1] - before[1]) * chi
+    kick(X, trunk, np.int64(-1), work)
+    kick(X, -(after[1] - before[1]) * psi - (after[2] - before[2]) * chi, np.int64(legs), work)
 
 
 @njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
-def kick(X: Array, impulse: float, work: Work) -> None:
-    """Let an angular impulse about the line in N·m·s act at once: rates jump by M⁻¹·[impulse, 0, …]; 0: nothing."""
+def legs_share(X: Array, legs: int, work: Work) -> tuple[float, float, float]:
+    """Return what legs that give make of the mass matrix in kg·m² (`legs.legs_mass`); zeros for stiff ones."""
+    if legs < 0:
+        return 0.0, 0.0, 0.0
+    body = work.body
+    added, coupling, own = legs_mass(X[0] - X[3 + 2 * legs], body[MASS], body[HEIGHT], body[OFFSET], work.live[legs, HINGE])
+    return added, coupling, own
+
+
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+def kick(X: Array, impulse: float, row: int, work: Work) -> None:
+    """Let an impulse in N·m·s act at once, on the trunk (row −1) or in a row of the units: rates jump by M⁻¹ times it."""
     if impulse == 0.0:
         return
     step = work.numbers[RATE]
-    jump(np.int64(-1), X, work.body, work.live, work.numbers[INPUTS], work.numbers[PROBE], step)
+    jump(row, X, work.body, work.live, work.numbers[INPUTS], work.numbers[PROBE], step)
     X[1] += impulse * step[1]
     for i in range(work.live.shape[0]):
         place = 2 + 2 * i if work.live[i, KIND] == WHEEL else 3 + 2 * i

@@ -69,16 +69,18 @@ def read_gyro(lean_rate: float, sensor: Array, seed: int, sample: int) -> float:
 
 
 @njit(cache=True, error_model="numpy")
-def read_tilt(X: Array, acceleration: float, body: Array, sensor: Array, seed: int, sample: int) -> float:
+def read_tilt(X: Array, acceleration: float, hinge: tuple[float, float], body: Array, sensor: Array, seed: int,
+              sample: int) -> float:
     """Return the lean in rad that the accelerometer shows, counted from the balanced lean.
 
     Specific force at the place r u + s w of the leaning body: along w: -g sin θ + r θ̈ - s θ̇²; along u: g cos θ - s θ̈
     - r θ̇²; the tilt is the angle between them. Near the upright: θ - r θ̈/g (the faster the fall is caught, the more
-    it lies).
+    it lies).  `hinge`: what the hinge of legs that give adds in the world's axes, m/s² (`legs.hinge_moves`).
     """
     g, r, s = body[GRAVITY], sensor[UP], sensor[ACROSS]
-    across = -g * np.sin(X[0]) + r * acceleration - s * X[1] ** 2
-    up = g * np.cos(X[0]) - s * acceleration - r * X[1] ** 2
+    sine, cosine = np.sin(X[0]), np.cos(X[0])
+    across = -(g + hinge[1]) * sine + hinge[0] * cosine + r * acceleration - s * X[1] ** 2
+    up = (g + hinge[1]) * cosine + hinge[0] * sine - s * acceleration - r * X[1] ** 2
     if sensor[ACCEL_NOISE] > 0.0:
         across += sensor[ACCEL_NOISE] * normal(seed, sample, 1)
         up += sensor[ACCEL_NOISE] * normal(seed, sample, 2)

@@ -30,8 +30,8 @@ from balance.kernel.bundles import (
     Work,
 )
 from balance.kernel.gauge import line_momentum, note
-from balance.kernel.integrate import beyond_stop, disturbance_at, jump, march, rates, vary
-from balance.kernel.layout import ANGLE_STOP, DRIVE_TORQUE, GIMBAL_SERVO, GIMBAL_TORQUE, KIND, RATE_LAG
+from balance.kernel.integrate import beyond_stop, disturbance_at, jump, march, put_on_legs, rates, vary
+from balance.kernel.layout import ANGLE_STOP, DRIVE_TORQUE, GIMBAL_SERVO, GIMBAL_TORQUE, KIND, RATE_LAG, WHEEL
 
 Array = NDArray[np.float64]
 
@@ -128,7 +128,8 @@ def rates_now(X: Array, t: float, work: Work) -> float:
     torque = disturbance_at(t, work.active, work.flags[AT, TORQUES_ON])
     if work.flags[AT, VARYING] == 1:
         vary(t, work.active, work.flags[AT, TORQUES_ON], work.base, work.body)
-    rates(X, torque, numbers[COMMANDS], work.body, work.live, work.flags[MET], numbers[INPUTS], numbers[SLOPES],
+    on_trunk = torque - put_on_legs(t, work.active, work.flags[AT, TORQUES_ON], work.live, numbers[COMMANDS])
+    rates(X, on_trunk, numbers[COMMANDS], work.body, work.live, work.flags[MET], numbers[INPUTS], numbers[SLOPES],
           numbers[RATE])
     return float(torque)
 
@@ -145,15 +146,19 @@ def lock(i: int, live: Array) -> None:
 def stop_gimbal(i: int, X: Array, units: Array, work: Work) -> None:
     """Unit i met its stop: its rate drops to zero, shared with the body by the mass matrix; it is held there.
 
-    The stop's impulse is internal to the machine: the jumps of lean rate and gimbal rate have the ratio in which
-    the gimbal's own torque changes the two accelerations.
+    The stop's impulse is internal to the machine: the jumps of lean rate, wheels' and legs' rates and gimbal rate have
+    the ratios in which the gimbal's own torque changes the accelerations.
     """
     side = 1 if X[2 + 2 * i] > 0.0 else -1
     kind, change = work.live[i, KIND], work.numbers[RATE]
     work.live[i, KIND] = GIMBAL_TORQUE
     jump(i, X, work.body, work.live, work.numbers[INPUTS], work.numbers[PROBE], change)
     work.live[i, KIND] = kind
-    X[1] -= change[1] / change[3 + 2 * i] * X[3 + 2 * i]
+    impulse = -X[3 + 2 * i] / change[3 + 2 * i]
+    X[1] += impulse * change[1]
+    for j in range(units.shape[0]):
+        if units[j, KIND] == WHEEL:
+            X[2 + 2 * j] += impulse * change[2 + 2 * j]
     X[2 + 2 * i] = side * units[i, ANGLE_STOP]
     X[3 + 2 * i] = 0.0
     work.flags[HELD, i] = side

@@ -14,12 +14,12 @@ Places = NDArray[np.int64]
 
 
 @njit(cache=True, error_model="numpy")
-def measure(X: Array, acceleration: float, body: Array, places: Places, sensor: Array, seed: int, sample: int,
-            y: Array) -> None:
+def measure(X: Array, acceleration: float, hinge: tuple[float, float], body: Array, places: Places, sensor: Array,
+            seed: int, sample: int, y: Array) -> None:
     """Fill y with the states at `places`: place 0 is read as lean, θ - θ_b; TILT and GYRO are read by the sensor."""
     for j in range(places.size):
         if places[j] == TILT:
-            y[j] = read_tilt(X, acceleration, body, sensor, seed, sample)
+            y[j] = read_tilt(X, acceleration, hinge, body, sensor, seed, sample)
         elif places[j] == GYRO:
             y[j] = read_gyro(X[1], sensor, seed, sample)
         else:

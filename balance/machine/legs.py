@@ -39,6 +39,18 @@ class Leg:
 
 
 @dataclass(frozen=True)
+class LegCompliance:
+    """How the legs give across the contact line: a hinge between the line and the trunk, all mass above it.
+
+    Point feet pass no torque about the line, so a spring there does nothing: what gives are links, joints and the hip.
+    """
+
+    height: float = quantity("length", above=0, says="of the hinge above the contact line")
+    stiffness: float = quantity("angular stiffness", above=0)
+    damping: float = quantity("angular damping", least=0, default=0.0)
+
+
+@dataclass(frozen=True)
 class Feet:
     """All feet alike: ball radius (0 = a point) and friction coefficient against the ground."""
 

@@ -6,7 +6,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field
 
 from balance.files.fields import Shape, place, quantity, section, table, text, vector
-from balance.machine.legs import Feet, Leg
+from balance.machine.legs import Feet, Leg, LegCompliance
 from balance.machine.measured import Measured
 from balance.machine.motors import Motor, Supply
 from balance.machine.solids import Part, Vector
@@ -82,6 +82,7 @@ class Machine:
     body: dict[str, Part] | None = table(Part, default=None)
     legs: dict[str, Leg] | None = table(Leg, default=None)
     feet: Feet | None = section(Feet, default=None)
+    leg_compliance: LegCompliance | None = section(LegCompliance, default=None)
     motors: dict[str, Motor] | None = table(Motor, default=None)
     supply: Supply | None = section(Supply, default=None)
     imu: Imu | None = section(Imu, default=None)

@@ -34,7 +34,7 @@ def read_machine(path: str) -> Machine:
 def _across(tree: Tree, marks: Marks) -> Iterator[Problem]:
     """Rules across sections, read off the tree so that they speak up beside other problems of the file."""
     root = tree.root
-    for fault in (*_kind_of_body(root), *_motors(root), *_rotors(root), *_legs(root), *_measured(root)):
+    for fault in (*_kind_of_body(root), *_motors(root), *_rotors(root), *_legs(root), *_measured(root), *_compliance(root)):
         place = marks.get(fault.key) or root.place(fault.key)
         yield Problem(tree.path, *place, fault.key or "(file)", fault.given, fault.allowed, fault.hint)
 
@@ -104,6 +104,15 @@ def _legs(root: Node) -> Iterator[Fault]:
             if leg not in seen and plan.get("down"):
                 yield Fault(f"stances.{stance}", f"no place for the leg `{leg}`",
                             "every leg under `down` or `lifted`", f"add `{leg}:` to `lifted:`")
+
+
+def _compliance(root: Node) -> Iterator[Fault]:
+    """Legs that give stand on points: a ball that rolls under a hinge is not modelled."""
+    feet = root.get("feet")
+    radius = feet.get("radius") if feet is not None and feet.kind == "mapping" else None
+    if root.get("leg_compliance") is not None and radius is not None and radius.text.split()[:1] not in (["0"], ["0.0"]):
+        yield Fault("leg_compliance", "`leg_compliance` beside `feet: {radius: …}`", "one of the two",
+                    "rolling feet and legs that give are not modelled together: leave the radius out")
 
 
 def _measured(root: Node) -> Iterator[Fault]:

@@ -32,5 +32,6 @@ class Tolerances:
     torque_constant: float = number(least=0, below=0.9, default=0.0, says="share, each motor for itself; 0.08 is ±8 %")
     voltage: float = number(least=0, below=0.9, default=0.0, says="share of the supply; 0.15 is ±15 %")
     bandwidth: float = number(least=0, below=0.9, default=0.0, says="share of current loops and servos; 0.2 is ±20 %")
+    leg_stiffness: float = number(least=0, below=0.9, default=0.0, says="share of `leg_compliance`'s; 0.3 is ±30 %")
     flywheel_momentum: float = number(least=0, below=0.9, default=0.0, says="share, speed times inertia; 0.03 is ±3 %")
     pair_mismatch: PairMismatch | None = section(PairMismatch, default=None)

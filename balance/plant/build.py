@@ -12,6 +12,7 @@ from balance.machine.machine import Machine
 from balance.plant.limits import impulsive, limited_by, torque_only
 from balance.plant.linear import linear_model
 from balance.plant.off_line import add_body, add_units
+from balance.plant.on_legs import give_way
 from balance.plant.record import Bounds, Plant, Unit
 from balance.plant.sensor import sensor_parameters
 from balance.plant.sharing import allotment, levelling, line_torque_per_input, momentum_row
@@ -22,11 +23,15 @@ Array = NDArray[np.float64]
 
 
 def build_plant(machine: Machine, stance: Stance, fell: float = pi / 6.0) -> Plant:
-    """Return the dynamic model of a machine standing on two feet.
+    """Return the dynamic model of a machine standing on two feet, on legs that give where the file says so.
 
     `fell` is the lean (rad) beyond which the simulator calls it fallen.  Stabilisers square to the line give a plant
-    with `acts` False, never an error.
+    with `acts` False, never an error.  Raises InputError for legs that cannot give as stated.
     """
+    return give_way(_on_stiff_legs(machine, stance, fell), machine)
+
+
+def _on_stiff_legs(machine: Machine, stance: Stance, fell: float) -> Plant:
     pairs = [on_line(machine, name, s, stance.R_WT.T @ stance.e_W) for name, s in machine.stabilisers.items()]
     units = tuple(unit for unit, _ in pairs)
     rows = np.array([row for _, row in pairs])                               # (k, UNIT_SIZE)

@@ -15,6 +15,7 @@ from numpy.typing import NDArray
 from balance.kernel import layout as at
 from balance.plant.build import about_balance, balanced, free_inertia
 from balance.plant.linear import linear_model
+from balance.plant.on_legs import on_legs
 from balance.plant.record import Plant, Unit
 from balance.plant.sharing import momentum_row
 
@@ -26,9 +27,12 @@ def deviated(plant: Plant, by: Mapping[str, float]) -> Plant:
 
     Shares of the nominal value: `mass` (more of the same, so the inertia about its centre grows with it), `inertia` (about
     the line), `voltage` and `bandwidth` (lags of the actuators), and per unit `torque_constant`, `flywheel_momentum`;
-    SI: `height`, `offset` in m, `pair_angle` in rad.  A machine with several units writes `NAME.torque_constant`.
+    SI: `height`, `offset` in m, `pair_angle` in rad; `leg_stiffness`, a share, where the legs give.  A machine with several
+    units writes `NAME.torque_constant`.
     The inertia never falls below the mass at its distance from the line (parallel-axis theorem).
     """
+    legs = plant.legs_parameters
+    plant = plant.for_law
     body = _body(plant, by)
     rows = np.array([_row(plant, i, by) for i in range(len(plant.units))])
     stiffness, inertia = about_balance(body)
@@ -37,9 +41,14 @@ def deviated(plant: Plant, by: Mapping[str, float]) -> Plant:
     model = replace(model, B=model.B * push)
     units = tuple(_unit(plant.units[i], rows[i], by) for i in range(len(rows)))
     first = [model.states.index(s) for s in model.states if s.split(".")[-1] in ("wheel_speed", "gimbal_angle")]
-    return replace(plant, units=units, model=model, stiffness=stiffness, inertia_free=free_inertia(inertia, rows),
-                   momentum_row=momentum_row(rows, first, len(model.states)), balanced_lean=float(body[at.BALANCED]),
-                   body_parameters=body, unit_parameters=rows)
+    moved = replace(plant, units=units, model=model, stiffness=stiffness, inertia_free=free_inertia(inertia, rows),
+                    momentum_row=momentum_row(rows, first, len(model.states)), balanced_lean=float(body[at.BALANCED]),
+                    body_parameters=body, unit_parameters=rows)
+    if legs is None:
+        return moved
+    given = legs.copy()
+    given[at.HINGE_STIFFNESS] *= 1.0 + by.get("leg_stiffness", 0.0)
+    return on_legs(moved, given, push)
 
 
 def unit_key(plant: Plant, i: int, word: str) -> str:

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from balance.plant.legs import LegModes
 from balance.stance.record import Stance
 
 Array = NDArray[np.float64]
@@ -18,7 +19,8 @@ class LinearModel:
 
     States: `lean`, `lean_rate`, then per unit `NAME.wheel_speed`, or `NAME.gimbal_angle`, `NAME.gimbal_rate`
     (no `NAME.` prefix where there is one unit).  Inputs: wheel torque (N·m on the wheel), gimbal torque (N·m per
-    gimbal) or commanded gimbal rate (rad/s).  `disturbance` is the column of a torque about the line (+ outward).
+    gimbal) or commanded gimbal rate (rad/s).  `disturbance` is the column of a torque about the line (+ outward) on
+    the trunk.  Legs that give add `legs_lean`, `legs_lean_rate` at the end, and `on_legs`, the column of a torque on them.
     """
 
     states: tuple[str, ...]
@@ -26,6 +28,7 @@ class LinearModel:
     A: Array             # (n, n)
     B: Array             # (n, m)
     disturbance: Array   # (n,)
+    on_legs: Array | None = None   # (n,)
 
 
 @dataclass(frozen=True)
@@ -85,6 +88,14 @@ class Plant:
     unit_parameters: Array       # kernel.layout, (units, UNIT_SIZE)
     sensor_parameters: Array     # kernel.sensing, (SENSOR_SIZE,)
     supply_parameters: Array | None = None   # kernel.layout, (UNIT_SIZE,): the supply all wheels share; None: no limit
+    legs_parameters: Array | None = None     # kernel.layout, (UNIT_SIZE,): legs that give; None: they are stiff
+    legs: LegModes | None = None             # what their give does
+    stiff: Plant | None = None               # the same machine on stiff legs, where these give
+
+    @property
+    def for_law(self) -> Plant:
+        """The plant a law is made for: what firmware measures is the trunk, on legs taken as stiff."""
+        return self.stiff or self
 
     @property
     def acts(self) -> bool:

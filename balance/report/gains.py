@@ -65,7 +65,7 @@ def share_table(design: Design) -> Table | None:
     rows = []
     for i, unit in enumerate(plant.units):
         terms = [f"{figure(-float(k), 4)} · {name}"
-                 for k, name in zip(law.levelling[i], plant.model.states, strict=False) if k]
+                 for k, name in zip(law.levelling[i], plant.for_law.model.states, strict=False) if k]
         level = " + ".join(terms).replace(f"+ {MINUS}", f"{MINUS} ") or "–"
         limit = amount(float(law.input_limits[i]), "N*m" if unit.drive == "torque" else "rad/s")
         rows.append(Row(unit.name, (figure(float(law.allotment[i]), 5), level, f"±{limit}")))

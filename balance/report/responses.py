@@ -94,7 +94,7 @@ def respond(plant: Plant, law: Law, late: float, step: float, push: float, lasts
     sampled = sample_plant(felt, law.sample_time, max(law.latency + late, 0.0))
     n, loop = len(plant.model.states), close(sampled, law)
     x = np.zeros(len(loop))
-    x[:n], x[n] = push * plant.model.disturbance, step
+    x[:n], x[n] = push * pushed(plant), step
     count = max(int(lasts / law.sample_time), 2)
     states = np.empty((count + 1, n))
     for k in range(count + 1):
@@ -104,6 +104,15 @@ def respond(plant: Plant, law: Law, late: float, step: float, push: float, lasts
     torque = np.diff(momentum) / law.sample_time                         # dq/dt = T
     keep = np.unique(np.concatenate([np.arange(min(60, count)), np.linspace(0, count - 1, MOST_POINTS).astype(int)]))
     return Motion(keep * law.sample_time, np.degrees(states[keep, 0]), torque[keep], momentum[keep])
+
+
+def pushed(plant: Plant) -> Array:
+    """Return the model's states after a unit of angular impulse by a push at the centre of mass, (n,)."""
+    model, legs = plant.model, plant.legs
+    if model.on_legs is None or legs is None:
+        return model.disturbance
+    share = legs.hinge / plant.stance.height                             # F L of F h acts on the legs
+    return (1.0 - share) * model.disturbance + share * model.on_legs
 
 
 def disturbed(plant: Plant) -> Plant:

@@ -52,9 +52,9 @@ class Score:
         """Nothing is quiet before `time`."""
         self.quiet = max(self.quiet, time)
 
-    def load(self, begin: float, end: float, level: float, slope: float = 0.0) -> None:
-        """A torque about the line; it is quiet after it has ended, or has begun for ever."""
-        self.torques.append(_row(begin, end, outcome.LEVEL, level, slope))
+    def load(self, begin: float, end: float, level: float, slope: float = 0.0, lever: float = math.inf) -> None:
+        """A torque about the line, of a force at the height `lever` (inf: a couple); quiet once it ended or is for ever."""
+        self.torques.append(_row(begin, end, outcome.LEVEL, level, slope, lever))
         self.until(begin if math.isinf(end) else end)
 
 
@@ -93,9 +93,10 @@ def add_torques(trial: Trial, toward: str, score: Score) -> None:
     if trial.push:
         moment = _side(trial.push.toward, toward) * trial.push.impulse * trial.push.height
         if trial.push.lasts > 0.0:
-            score.load(trial.push.start, trial.push.start + trial.push.lasts, moment / trial.push.lasts)
+            score.load(trial.push.start, trial.push.start + trial.push.lasts, moment / trial.push.lasts,
+                       lever=trial.push.height)
         else:
-            score.jumps.append([trial.push.start, moment, 0.0])
+            score.jumps.append([trial.push.start, moment, 0.0, trial.push.height])
             score.until(trial.push.start)
     if trial.torque:
         end = FOR_EVER if trial.torque.lasts is None else trial.torque.start + trial.torque.lasts
@@ -105,13 +106,15 @@ def add_torques(trial: Trial, toward: str, score: Score) -> None:
         score.load(trial.ramp.start, end, 0.0, full / trial.ramp.lasts)
         score.load(end, FOR_EVER, full)
     if trial.gusts:
-        add_points(trial.gusts.points, trial.gusts.start, _side(trial.gusts.toward, toward), score)
+        add_points(trial.gusts.points, trial.gusts.start, _side(trial.gusts.toward, toward), score,
+                   trial.gusts.height or math.inf)
 
 
-def add_points(points: tuple[tuple[float, float], ...], start: float, side: float, score: Score) -> None:
+def add_points(points: tuple[tuple[float, float], ...], start: float, side: float, score: Score,
+               lever: float = math.inf) -> None:
     """A torque given by points: straight between them, nothing before the first and after the last."""
     for (a, p), (b, q) in pairwise(points):
-        score.load(start + a, start + b, side * p, side * (q - p) / (b - a))
+        score.load(start + a, start + b, side * p, side * (q - p) / (b - a), lever)
 
 
 def add_swing(trial: Trial, toward: str, score: Score) -> None:
@@ -163,7 +166,7 @@ def add_starts(trial: Trial, toward: str, score: Score) -> None:
 def add_changes(trial: Trial, toward: str, score: Score) -> None:
     """What changes of the body at one instant."""
     if trial.offset:
-        score.jumps.append([trial.offset.at, 0.0, _side(trial.offset.toward, toward) * trial.offset.shift])
+        score.jumps.append([trial.offset.at, 0.0, _side(trial.offset.toward, toward) * trial.offset.shift, math.inf])
     for part in (trial.offset, trial.payload, trial.slope):
         if part is not None:
             score.changes.append(Change(part, _side(part.toward, toward)))
@@ -198,9 +201,10 @@ def _side(said: str, toward: str) -> float:
     return SIDES[toward if said == "both" else said]
 
 
-def _row(begin: float, end: float, column: int, level: float, slope: float) -> list[float]:
+def _row(begin: float, end: float, column: int, level: float, slope: float, lever: float = math.inf) -> list[float]:
     """Return a row of the kernel's torques with a level and a slope from `column` on."""
     row = [0.0] * outcome.TORQUE_SIZE
+    row[outcome.LEVER] = lever
     row[outcome.START], row[outcome.END], row[column], row[column + 1] = begin, end, level, slope
     return row
 

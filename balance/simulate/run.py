@@ -16,10 +16,11 @@ from balance.goal.trials import Trial
 from balance.kernel import outcome
 from balance.kernel.bundles import MEMORY, Output, fresh_work
 from balance.kernel.integrate import longest_step
-from balance.kernel.layout import FELL
+from balance.kernel.layout import BALANCED, FELL
 from balance.kernel.run import run_trial
 from balance.kernel.standing import standing_lean
 from balance.machine.machine import Machine
+from balance.plant.legs import balance_on
 from balance.plant.record import Plant
 from balance.simulate.events import Happening, directions, happening
 from balance.simulate.records import Trace, TrialResult
@@ -46,7 +47,10 @@ def run_trials(design: Design, goal: Goal, machine: Machine, record: bool,
 
 
 def refuse(goal: Goal, plant: Plant) -> None:
-    """Raise InputError where a trial takes off more mass or inertia than there is, or weakens a supply that is not there."""
+    """Raise InputError where a trial asks of the machine what it has not.
+
+    More mass taken off than there is, a supply weakened that is not there, mass properties that vary on legs that give.
+    """
     problems = []
     for name, trial in goal.trials.items():
         load = trial.payload
@@ -60,6 +64,11 @@ def refuse(goal: Goal, plant: Plant) -> None:
                                     f"less than {most:.3g} kg taken off at this height on {plant.stance.name}"))
     if plant.supply_parameters is None:
         problems += _needs_supply(goal)
+    if plant.legs is not None:
+        problems += [Problem(goal.source, *goal.marks.get(f"trials.{name}.varies", (0, 0)), f"trials.{name}.varies",
+                             "`varies` on legs that give", "a machine without `leg_compliance`",
+                             "mass properties that vary over time are modelled on stiff legs only")
+                     for name, trial in goal.trials.items() if trial.varies is not None]
     if problems:
         raise InputError(problems)
 
@@ -144,6 +153,9 @@ def _of_bus(plant: Plant, value: float) -> float:
 
 def end_lean(plant: Plant, event: Happening) -> float:
     """Return the lean in rad at which gravity balances what stays on; NaN where nothing does."""
+    if plant.legs_parameters is not None:
+        lean, _ = balance_on(event.end_body, plant.legs_parameters, event.end_torque)    # only couples stay on
+        return lean - float(event.end_body[BALANCED])
     return float(standing_lean(event.end_body, plant.unit_parameters, event.end_torque))
 
 

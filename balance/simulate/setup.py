@@ -37,7 +37,9 @@ from balance.kernel.layout import (
     VISCOUS,
     WHEEL,
 )
+from balance.kernel.legs import legs_row
 from balance.kernel.sensing import GYRO, TILT
+from balance.plant.legs import balance_on
 from balance.plant.record import Plant
 from balance.plant.sharing import line_torque_per_input
 from balance.simulate.events import Happening
@@ -55,7 +57,7 @@ def law_arrays(law: Law, plant: Plant, command_bits: int | None = None) -> LawAr
 
 
 def kernel_units(plant: Plant) -> Array:
-    """Return the kernel's rows, (rows, UNIT_SIZE): the stabilisers, then wheels behind play, then the supply.
+    """Return the kernel's rows, (rows, UNIT_SIZE): the stabilisers, wheels behind play, legs that give, the supply.
 
     A wheel with play in its gear is parted: its motor keeps the unit's row, the wheel itself gets one of its own.
     """
@@ -64,6 +66,8 @@ def kernel_units(plant: Plant) -> Array:
         if row[KIND] == WHEEL and row[PLAY] > 0.0:
             behind.append(_behind_play(i, row))
     rows += behind
+    if plant.legs_parameters is not None:
+        rows.append(plant.legs_parameters.copy())
     if plant.supply_parameters is not None:
         rows.append(plant.supply_parameters.copy())
     return np.array(rows)
@@ -112,7 +116,7 @@ def places(law: Law, plant: Plant) -> NDArray[np.int64]:
     where: list[int] = [0, 1]
     for i, unit in enumerate(plant.unit_parameters):
         where += [2 + 2 * i] if unit[KIND] == WHEEL else [2 + 2 * i, 3 + 2 * i]
-    table = {**dict(zip(plant.model.states, where, strict=True)), "tilt": TILT, "gyro": GYRO}
+    table = {**dict(zip(plant.for_law.model.states, where, strict=True)), "tilt": TILT, "gyro": GYRO}
     return np.array([table[name] for name in law.measurements], dtype=np.int64)
 
 
@@ -126,6 +130,7 @@ def start_state(plant: Plant, happening: Happening, units: Array) -> Array:
 
     Wheel: q = C Ω + C²/O θ̇ with C = α(I + sNJ_r), O = I + N²J_r, so that q is the stored value with the body moving.
     Gimballed: q = n H (σ(γ) - σ(0)), solved for γ, at most to its largest q. A wheel's bias speed comes on top.
+    Legs that give start as they stand at balance: the machine leans and turns as one stiff piece.
     """
     X = np.zeros(2 + 2 * len(units))
     X[0] = plant.body_parameters[BALANCED] + happening.lean
@@ -138,6 +143,10 @@ def start_state(plant: Plant, happening: Happening, units: Array) -> Array:
         elif row[KIND] != WHEEL and part != 0.0:
             X[2 + 2 * i] = _gimbal_angle(part / (row[COUNT] * row[MOMENTUM]), row)
         X[2 + 2 * i] += unit.bias_speed
+    legs = legs_row.py_func(units)
+    if legs >= 0:
+        _, chi = balance_on(plant.body_parameters, units[legs])
+        X[2 + 2 * legs], X[3 + 2 * legs] = X[1], chi + happening.lean
     for i, row in enumerate(units):
         if row[KIND] == WHEEL and row[ROLE] == TOOTHED:      # it turns with its motor, in the middle of the play
             X[2 + 2 * i] = X[2 + 2 * int(row[PARTNER])]

@@ -83,7 +83,7 @@ def quick(machine: Machine, goal: Goal, pairs: Pairs) -> Tested:
 def unmeasured(plant: Plant, goal: Goal) -> Design:
     """Return the design of one stance without margins and response: the law is the same, and a hundred times as quick."""
     sampled = sample_plant(plant, 1.0 / goal.loop.rate, goal.loop.latency)
-    law = law_for(plant, sampled, goal) if plant.acts else "cannot act about this line"
+    law = law_for(plant, goal) if plant.acts else "cannot act about this line"
     if isinstance(law, str):
         return design_stance(plant, goal)                    # says why, and measures nothing either
     poles = np.linalg.eigvals(close(sampled, law)).astype(np.complex128)

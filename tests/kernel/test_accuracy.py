@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import math
+
 import numpy as np
 import pytest
 from scipy.integrate import solve_ivp
@@ -89,7 +91,7 @@ def by_period(b, units, X, gains, T, late, kick_at, kick, lasts):
 def test_against_dop853_with_current_voltage_and_speed_limits(kick):
     """Issue 5's bounds: lean within 5e-9 rad; wheel speed within 1e-5 of its peak (kinks of the limits are not smooth)."""
     b, units, T, late = body(inertia=0.35, stiffness=9.0), real_motor(), 0.002, 0.0027
-    ours = run(b, units, law(GAINS, T, late), events(0.5, jumps=[[0.02, kick, 0.0]], longest=longest_step(units)))
+    ours = run(b, units, law(GAINS, T, late), events(0.5, jumps=[[0.02, kick, 0.0, math.inf]], longest=longest_step(units)))
     other = by_period(b, units, [0, 0, 0, 0], GAINS, T, late, 0.02, kick, 0.5)
     met = np.isfinite(ours.first[0, :, 0])
     assert met[outcome.CURRENT] == (kick > 0.1)                   # the hard push saturates, the soft one does not
@@ -103,7 +105,7 @@ def test_against_dop853_with_current_voltage_and_speed_limits(kick):
 def test_a_step_three_times_too_long_is_seen():
     """The twin: the same comparison fails with sub-steps the current loop does not allow."""
     b, units = body(inertia=0.35, stiffness=9.0), real_motor()
-    ours = run(b, units, law(GAINS, 0.002, 0.0027), events(0.5, jumps=[[0.02, 0.24, 0.0]], longest=1e-3))
+    ours = run(b, units, law(GAINS, 0.002, 0.0027), events(0.5, jumps=[[0.02, 0.24, 0.0, math.inf]], longest=1e-3))
     other = by_period(b, units, [0, 0, 0, 0], GAINS, 0.002, 0.0027, 0.02, 0.24, 0.5)
     rows = len(ours.trace) - 1
     assert np.abs(ours.trace[:rows, outcome.LEAN] - other[:rows, 0]).max() > 5e-9

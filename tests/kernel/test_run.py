@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import math
+
 import numpy as np
 import pytest
 
@@ -59,7 +61,7 @@ def test_a_ramp_of_torque():
 def test_a_push_jumps_by_the_free_inertia_and_spares_the_wheel():
     """P ℓ/J_rest, and the wheel's own rotation I(Ω + αθ̇) is not touched (`physics.md`)."""
     units = wheel(share=0.6)
-    ran = run(body(**LEVEL), units, law(), events(0.01, jumps=[[0.005, 0.3, 0.0]]))
+    ran = run(body(**LEVEL), units, law(), events(0.01, jumps=[[0.005, 0.3, 0.0, math.inf]]))
     assert ran.X[1] == pytest.approx(0.3 / free_inertia(units), rel=ROUNDING)
     own = units[0, at.OWN_INERTIA] * ran.X[2] + units[0, at.COUPLING] * ran.X[1]
     assert own == pytest.approx(0.0, abs=1e-12)
@@ -74,14 +76,14 @@ def test_a_push_on_a_geared_wheel_goes_through_the_mass_matrix(sense):
     units[0, at.OWN_INERTIA] = inertia + ratio**2 * rotor
     mass = np.array([[0.354, units[0, at.COUPLING]], [units[0, at.COUPLING], units[0, at.OWN_INERTIA]]])
     expected = np.linalg.solve(mass, [0.3, 0.0])
-    ran = run(body(**LEVEL), units, law(), events(0.01, jumps=[[0.005, 0.3, 0.0]]))
+    ran = run(body(**LEVEL), units, law(), events(0.01, jumps=[[0.005, 0.3, 0.0, math.inf]]))
     np.testing.assert_allclose(ran.X[1:3], expected, rtol=ROUNDING)
 
 
 def test_a_push_at_a_sampling_instant_is_seen_one_sample_later():
     """v = -Ω·0 - 1·θ̇: the command follows at the next sample, not at the push."""
     control = law([0.0, 1.0, 0.0])
-    ran = run(body(**LEVEL), wheel(), control, events(0.008, jumps=[[0.004, 0.3, 0.0]]))
+    ran = run(body(**LEVEL), wheel(), control, events(0.008, jumps=[[0.004, 0.3, 0.0, math.inf]]))
     np.testing.assert_array_equal(ran.trace[:3, outcome.COMMAND], 0.0)
     assert ran.trace[3, outcome.COMMAND] < -0.5
 
@@ -89,7 +91,7 @@ def test_a_push_at_a_sampling_instant_is_seen_one_sample_later():
 def test_a_moved_centre_of_mass_pulls_with_its_weight():
     """M = m g s cos θ more, from its instant on; the law is not told, and lean counts from the old balance."""
     b = body(stiffness=12.0, mass=3.0, height=0.4)
-    ran = run(b, wheel(), law(), events(0.011, jumps=[[0.01, 0.0, 0.005]], longest=1e-5))
+    ran = run(b, wheel(), law(), events(0.011, jumps=[[0.01, 0.0, 0.005, math.inf]], longest=1e-5))
     weight = 3.0 * b[at.GRAVITY] * 0.005
     assert ran.X[1] == pytest.approx(weight * 1e-3 / free_inertia(wheel()), rel=1e-4)   # gravity's own turn: p²t² = 3e-5
 

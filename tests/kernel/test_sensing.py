@@ -11,12 +11,15 @@ from balance.kernel import outcome, sensing
 from balance.kernel.sensing import digitised, normal, read_gyro, read_tilt, scrambled
 from tests.kernel.rigs import body, events, ideal_sensor, law, run, wheel
 
+STIFF = (0.0, 0.0)
+"""The hinge of stiff legs moves with the trunk."""
+
 
 def test_at_rest_the_tilt_is_the_lean():
     b = body(side=0.6)
     for theta in (-0.3, 0.0, 0.2):
         lean = theta - b[at.BALANCED]
-        assert read_tilt(np.array([theta, 0.0]), 0.0, b, ideal_sensor(), 1, 0) == pytest.approx(lean, rel=1e-12)
+        assert read_tilt(np.array([theta, 0.0]), 0.0, STIFF, b, ideal_sensor(), 1, 0) == pytest.approx(lean, rel=1e-12)
 
 
 def test_specific_force_is_the_second_derivative_of_the_place_less_gravity():
@@ -38,15 +41,15 @@ def test_specific_force_is_the_second_derivative_of_the_place_less_gravity():
     along_w, along_u = felt @ [c, -s], felt @ [s, c]
     expected = np.arctan2(-along_w, along_u)
     X = np.array([theta(0), 0.7])
-    assert read_tilt(X, 2.6, b, sensor, 1, 0) == pytest.approx(expected, abs=1e-6)   # rounding of 1e-16/h² = 1e-8
-    assert abs(read_tilt(X, 0.0, b, sensor, 1, 0) - expected) > 0.05                 # the twin: without θ̈
+    assert read_tilt(X, 2.6, STIFF, b, sensor, 1, 0) == pytest.approx(expected, abs=1e-6)   # rounding of 1e-16/h² = 1e-8
+    assert abs(read_tilt(X, 0.0, STIFF, b, sensor, 1, 0) - expected) > 0.05                 # the twin: without θ̈
 
 
 def test_the_faster_the_fall_is_caught_the_more_it_lies():
     """Near the upright: θ - r θ̈/g."""
     b, sensor = body(), ideal_sensor()
     sensor[sensing.UP] = 0.4
-    lies = read_tilt(np.array([1e-4, 0.0]), -0.01, b, sensor, 1, 0)
+    lies = read_tilt(np.array([1e-4, 0.0]), -0.01, STIFF, b, sensor, 1, 0)
     assert lies == pytest.approx(1e-4 + 0.4 * 0.01 / b[at.GRAVITY], rel=1e-5)
 
 
@@ -54,7 +57,7 @@ def test_bias_range_and_counts():
     sensor = ideal_sensor()
     sensor[[sensing.GYRO_BIAS, sensing.TILT_BIAS]] = 0.02, 0.003
     assert read_gyro(0.5, sensor, 1, 0) == 0.52
-    assert read_tilt(np.array([0.0, 0.0]), 0.0, body(), sensor, 1, 0) == pytest.approx(0.003)
+    assert read_tilt(np.array([0.0, 0.0]), 0.0, STIFF, body(), sensor, 1, 0) == pytest.approx(0.003)
     sensor[[sensing.GYRO_STEP, sensing.GYRO_RANGE]] = 0.1, 4.0
     assert read_gyro(0.5, sensor, 1, 0) == pytest.approx(0.5)
     assert read_gyro(0.54, sensor, 1, 0) == pytest.approx(0.6)

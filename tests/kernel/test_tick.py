@@ -39,7 +39,7 @@ def test_lean_is_measured_from_the_balanced_lean():
     body = np.zeros(at.BODY_SIZE)
     body[at.BALANCED] = -0.02
     y = np.zeros(3)
-    measure(np.array([0.01, 0.5, 30.0, 2.0]), 0.0, body, np.array([0, 1, 2]), np.zeros(0), 0, 0, y)
+    measure(np.array([0.01, 0.5, 30.0, 2.0]), 0.0, (0.0, 0.0), body, np.array([0, 1, 2]), np.zeros(0), 0, 0, y)
     np.testing.assert_allclose(y, [0.03, 0.5, 30.0], rtol=1e-12)
 
 

@@ -60,10 +60,15 @@ class Reduced:
 
 
 def reduced(machine: Machine, stance: Stance) -> Reduced:
-    """Return the model of a machine standing on two feet."""
+    """Return the model of a machine standing on two feet; legs that give are a massless body under a hinge of its own.
+
+    The kernel counts both leans from upright, the engine's hinge between them turns by their difference.
+    """
     e_T = stance.R_WT.T @ stance.e_W
-    radius = stance.foot_radius
+    radius, give = stance.foot_radius, machine.leg_compliance
     columns: dict[str, dict[str, float]] = {"line": {"roll": radius, "line": 1.0}}
+    if give is not None:
+        columns = {"line": {"hinge": 1.0}, "legs": {"line": 1.0, "hinge": -1.0}}
     bodies = [_any_part(name, part) for name, part in (machine.body or {}).items()]
     bodies += [_link(name, link, a, b) for name, link, a, b in _links(machine, stance)]
     for name, unit in machine.stabilisers.items():
@@ -83,8 +88,16 @@ def reduced(machine: Machine, stance: Stance) -> Reduced:
     <joint name="yaw" type="hinge" pos="{_v(ball)}" axis="{_v(R.T @ stance.u_W)}"/>
     <joint name="swerve" type="hinge" pos="{_v(ball)}" axis="{_v(R.T @ stance.w_W)}"/>
     <inertial mass="{NOTHING}" pos="0 0 0" diaginertia="{NOTHING} {NOTHING} {NOTHING}"/>
-    {''.join(bodies)}</body></worldbody></mujoco>""")
+    {_hinged(bodies, ball, e_T, R.T @ stance.u_W, give)}</body></worldbody></mujoco>""")
     return Reduced(model, columns)
+
+
+def _hinged(bodies: list[str], foot: np.ndarray, e_T: np.ndarray, up: np.ndarray, give: object) -> str:
+    """Return the parts, on a trunk that hinges on the legs where these give."""
+    if give is None:
+        return "".join(bodies)
+    return f"""<body name="above"><joint name="hinge" type="hinge" pos="{_v(foot + give.height * up)}" axis="{_v(e_T)}"/>
+    <inertial mass="{NOTHING}" pos="0 0 0" diaginertia="{NOTHING} {NOTHING} {NOTHING}"/>{''.join(bodies)}</body>"""
 
 
 def _quaternion(R: np.ndarray) -> str:

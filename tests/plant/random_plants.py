@@ -6,6 +6,8 @@ from dataclasses import replace
 
 import numpy as np
 
+from balance.base.errors import InputError
+from balance.machine.legs import LegCompliance
 from balance.machine.machine import Machine
 from balance.machine.solids import Tensor
 from balance.machine.stabilisers import Drag, ReactionWheel, Stabiliser
@@ -28,6 +30,24 @@ def random_drive(rng: np.random.Generator, unit: Stabiliser) -> Stabiliser:
     axes = np.column_stack([s, np.cross(g, s), g])                   # a frame symmetric about the planes of its axes
     F = axes @ np.diag(rng.uniform(5e-3, 9e-3, 3)) @ axes.T
     return replace(unit, gimbal=gimbal, frame_inertia=Tensor(F[0, 0], F[1, 1], F[2, 2], F[0, 1], F[0, 2], F[1, 2]))
+
+
+def random_plant_on_legs(seed: int) -> tuple[Machine, Plant]:
+    """Return such a machine on legs that give: soft ones, that have two unstable poles, to ten times that stiff."""
+    machine, plant = random_plant(seed)
+    rng = np.random.default_rng(5000 + seed)
+    h, weight = plant.stance.height, plant.stance.mass * plant.stance.gravity
+    hinge = float(rng.uniform(0.2, 0.8)) * h
+    critical = weight * (h - hinge) * hinge / h
+    share = float(rng.choice([rng.uniform(0.2, 0.6), rng.uniform(2.0, 20.0)]))
+    feet = replace(machine.feet, radius=0.0) if machine.feet else None
+    while True:
+        give = LegCompliance(hinge, critical * share, float(rng.uniform(0.0, 2.0)))
+        machine = replace(machine, feet=feet, leg_compliance=give)
+        try:
+            return machine, build_plant(machine, build_stance(machine, "s"))
+        except InputError:
+            share *= 3.0                                                   # a large offset bends soft legs without end
 
 
 def random_plant(seed: int) -> tuple[Machine, Plant]:

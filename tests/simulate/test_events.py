@@ -56,8 +56,8 @@ def test_every_part_takes_its_sign(toward, sign):
     assert happens.end_body[at.OFFSET] == sign * 0.003
     assert happens.end_body[at.STIFF_COS] == pytest.approx(sign * 0.003 * 30.0, rel=1e-12)
     assert happens.end_torque == sign * 0.3
-    np.testing.assert_allclose(happens.events.jumps, [[0.1, 0.0, sign * 0.003], [0.1, sign * 0.2, 0.0]]
-                               if sign > 0 else [[0.1, -0.2, 0.0], [0.1, 0.0, -0.003]])
+    np.testing.assert_allclose(happens.events.jumps, [[0.1, 0.0, sign * 0.003, math.inf], [0.1, sign * 0.2, 0.0, 0.5]]
+                               if sign > 0 else [[0.1, -0.2, 0.0, 0.5], [0.1, 0.0, -0.003, math.inf]])
     swing = happens.events.torques[1]
     assert swing[outcome.SWING] == sign * 0.7
 

@@ -22,7 +22,8 @@ def ranges_of(plant: Plant, tolerances: Tolerances | None, loop: Loop) -> tuple[
     """
     given = tolerances or Tolerances()
     found = [_both("mass", given.mass), _both("height", given.height, "m"), _both("offset", given.offset, "m"),
-             _both("inertia", given.inertia), *_units(plant, given), *_lags(plant, given),
+             _both("inertia", given.inertia), _both("leg_stiffness", given.leg_stiffness if plant.legs else 0.0),
+             *_units(plant, given), *_lags(plant, given),
              Range(LATENCY, -min(loop.latency_tolerance, loop.latency), loop.latency_tolerance + loop.jitter, "s")]
     return tuple(one for one in found if one.high > one.low)
 

@@ -19,7 +19,6 @@ from numpy.typing import NDArray
 
 from balance.design.build import law_for
 from balance.design.law import Law
-from balance.design.loop import sample_plant
 from balance.design.pid import NOISE_SHARE
 from balance.design.records import Range, Retuning
 from balance.design.robustness.screen import JUDGED, Screen, screen_of
@@ -161,7 +160,7 @@ def _worst(screen: Screen, ranges: tuple[Range, ...]) -> tuple[float, list[Mappi
 
 def _law(plant: Plant, goal: Goal) -> Law | None:
     """Return the law these weights give on the plant as stated, or None."""
-    found = law_for(plant, sample_plant(plant, 1.0 / goal.loop.rate, goal.loop.latency), goal)
+    found = law_for(plant, goal)
     return found if isinstance(found, Law) else None
 
 
