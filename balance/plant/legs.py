@@ -112,8 +112,8 @@ def doubling(pole: float) -> float:
 def bound_scales(A: Array, trunk: Array, legs: Array, hinge: float, height: float) -> tuple[float, float, float, float]:
     """Return (p, rad of lean, rad/s of lean rate, N·s at the centre of mass) per N·m·s of p-discounted torque.
 
-    Along an unstable mode with left eigenvector ℓ, ż = p z + ℓ·b T: what can be caught is |ℓ x₀| < |ℓ·b| ∫ e^{−ps} T ds, with
-    b the column of a torque on the trunk and x₀ a machine that leans as one stiff piece, turns as one, or was just pushed.
+    Along an unstable mode with left eigenvector ℓ, ż = p z + ℓ·b T: what can be caught is |ℓ x₀| < |ℓ·b| ∫ e^{−ps} T ds,
+    with b the column of a torque on the trunk, x₀ a machine that leans or turns as one stiff piece, or was just pushed.
     The fastest unstable mode counts; a second one only makes it harder.
     """
     values, left = np.linalg.eig(A.T)

@@ -9,7 +9,8 @@ import pytest
 ROOT = Path(__file__).resolve().parents[2]
 DESIGNS = sorted(path.stem for path in (ROOT / "designs").glob("*.yaml"))
 PLANTS = sorted(path.stem for path in (ROOT / "plants").glob("*.yaml"))
-GOOD = ("bench-rig", "bench-rig-kalman", "bench-rig-pid", "bench-rig-sensed", "quay-gyros", "scout-built", "scout-wheels")
+GOOD = ("bench-rig", "bench-rig-kalman", "bench-rig-on-legs", "bench-rig-pid", "bench-rig-sensed", "quay-gyros",
+        "scout-built", "scout-wheels")
 SHORT = "bench-rig-short"
 
 Answer = dict[str, object]
