@@ -41,6 +41,7 @@ def _stance(plant: Plant) -> Tree:
         "toppling_stiffness_n_m_per_rad": number(plant.stiffness),
         "pole_rad_s": number(plant.pole),
         "unstable_pole_rad_s": number(plant.unstable_pole),
+        "leg_compliance": _legs(plant),
         "doubling_time_s": number(plant.doubling_time),
         "balanced_lean_rad": number(plant.balanced_lean),
         "line": {
@@ -67,6 +68,19 @@ def _stance(plant: Plant) -> Tree:
             "A": matrix(plant.model.A),
             "B": matrix(plant.model.B),
         },
+    }
+
+
+def _legs(plant: Plant) -> Tree | None:
+    """Write what legs that give do; null where they are stiff. All poles of the machine without a law that fall away."""
+    legs = plant.legs
+    return None if legs is None else {
+        "hinge_height_m": number(legs.hinge),
+        "stiffness_n_m_per_rad": number(legs.stiffness),
+        "critical_stiffness_n_m_per_rad": number(legs.critical),
+        "unstable_poles_rad_s": row(legs.unstable),
+        "mode_rad_s": number(legs.mode),
+        "mode_damping_ratio": number(legs.damping),
     }
 
 

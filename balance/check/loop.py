@@ -4,9 +4,12 @@ from __future__ import annotations
 
 import math
 
+import numpy as np
+
 from balance.check.records import Verdict
 from balance.check.tolerances import judge_tolerances
 from balance.design.limits import beyond
+from balance.design.loop import close, sample_plant
 from balance.design.records import Design, Margins
 from balance.design.steady import tolerable_offset
 from balance.goal.goal import Requirements
@@ -36,9 +39,24 @@ def _stability(design: Design) -> Verdict:
     largest = max((abs(z) for z in design.poles), default=0.0)
     stable = design.margins.stable
     reason = "" if stable else (f"the largest closed-loop eigenvalue is {largest:.4f}, outside the unit circle; "
-                                f"pole × delay is {design.limits.pole_times_delay:.2f}")
+                                f"pole × delay is {design.limits.pole_times_delay:.2f}{_because_of_legs(design)}")
     return Verdict("stable_loop", design.plant.stance.name, "stable" if stable else "unstable", "", "stable", "is",
                    stable, reason)
+
+
+def _because_of_legs(design: Design) -> str:
+    """Say what the give of the legs has to do with a lost loop; "" where they are stiff or do not matter."""
+    legs, stiff = design.plant.legs, design.plant.stiff
+    if legs is None or stiff is None or design.refused:
+        return ""
+    if len(legs.unstable) > 1:
+        return (f"; the legs buckle: {legs.stiffness:.3g} N·m/rad is below the critical {legs.critical:.3g} N·m/rad, so the "
+                "machine falls in two ways at once")
+    sampled = sample_plant(stiff, design.law.sample_time, design.law.latency)
+    if np.abs(np.linalg.eigvals(close(sampled, design.law))).max() >= 1.0:
+        return ""
+    return (f"; on stiff legs the same law holds: it is their give that loses it (without a law trunk and legs swing at "
+            f"{legs.mode / (2.0 * math.pi):.3g} Hz, damping ratio {legs.damping:.2g})")
 
 
 def _asked(require: Requirements, margins: Margins) -> list[tuple[str, float, float, str, str]]:

@@ -2,11 +2,14 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
+
 from balance.base.tables import text_table
 from balance.cli.colour import NOT_MET
 from balance.cli.words import folded, side_by_side
 from balance.plant.record import Plant, Unit
 from balance.report.amounts import amount, share
+from balance.report.facts import leg_words
 from balance.stance.measured import Disagreement
 
 CANNOT = "cannot act about this line"
@@ -71,6 +74,7 @@ def _stances(plants: tuple[Plant, ...]) -> str:
             ("inertia, rotors free", lambda p: amount(p.inertia_free, "kg*m^2", 4)),
             ("toppling stiffness", lambda p: amount(p.stiffness, "N*m/rad", 4)),
             ("pole", lambda p: amount(p.pole, "1/s", 4)),
+            *_legs(plants),
             ("time for a fall to double", lambda p: amount(p.doubling_time, "s")),
             ("inward turn to the lifted foot", _touch_down),
             ("torque limit about the line", lambda p: amount(p.torque_limit, "N*m")),
@@ -80,6 +84,19 @@ def _stances(plants: tuple[Plant, ...]) -> str:
             ("set by", lambda p: p.bounds.limited_by if p.acts else ""),
         ],
     )
+
+
+def _legs(plants: tuple[Plant, ...]) -> list[tuple[str, Callable[[Plant], str]]]:
+    """Rows about legs that give; none where they are stiff."""
+    if plants[0].legs is None:
+        return []
+    labels = (("legs give at a hinge", "hinge"), ("leg stiffness", "stiffness"), ("below it they buckle", "critical"),
+              ("trunk and legs swing at", "mode"), ("unstable poles with that", "unstable"))
+
+    def words(word: str) -> Callable[[Plant], str]:
+        return lambda p: leg_words(p)[word]
+
+    return [(label, words(word)) for label, word in labels]
 
 
 def _touch_down(plant: Plant) -> str:

@@ -14,13 +14,15 @@ from balance.report.verdicts import spoken
 def assumed(result: CheckResult) -> tuple[str, ...]:
     """Say what the model takes for granted."""
     machine = result.machine
-    said = ["Trunk and legs are rigid, and the two feet are points that neither slip nor lift. The friction needed is "
+    legs = ("The trunk is rigid, the legs give at one massless hinge; margins and trials know of it, the law does not."
+            if machine.leg_compliance else "Trunk and legs are rigid: nothing gives, nothing rings.")
+    said = [f"{legs} The two feet are points that neither slip nor lift. The friction needed is "
             "reported for the whole machine across the line, not foot by foot.",
             "The margins are those of the linear model at the balanced lean; the trials run the full one, with sine gravity "
             "and every stated limit.",
-            "A push acts square to the contact line. The supply holds its open-circuit voltage: sag and what braking gives "
-            "back are not simulated.",
-            "Gears have no backlash, bearings no stiction, structures no resonance."]
+            "A push acts square to the contact line.",
+            "Backlash of gears, stiction of bearings, sag of the supply and what its capacitor does with braking energy are "
+            "in the trials where the machine file states them, and nowhere else."]
     if isinstance(result.goal.estimator, NoEstimator):
         said.insert(0, "Lean and lean rate are measured as they are: no noise, bias or estimator is in the loop.")
     if machine.lumped is not None:

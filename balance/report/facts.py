@@ -33,6 +33,7 @@ def machine_table(plants: tuple[Plant, ...]) -> Table:
         row("inertia J_rest, rotors free", lambda p: amount(p.inertia_free, "kg*m^2", 4)),
         row("toppling stiffness G", lambda p: amount(p.stiffness, "N*m/rad", 4)),
         row("pole p = √(G/J_rest)", lambda p: f"{figure(p.pole)} rad/s"),
+        *_legs(plants),
         row("a lean doubles every", lambda p: amount(p.doubling_time, "s")),
         row("lifted foot lands at", landing),
         row("torque limit about the line", lambda p: amount(p.torque_limit, "N*m")),
@@ -43,6 +44,26 @@ def machine_table(plants: tuple[Plant, ...]) -> Table:
         possible("which is limited by", lambda p: p.bounds.limited_by),
     )
     return Table("The machine on its two feet", ("Quantity", *(p.stance.name for p in plants)), rows, NOTE)
+
+
+def leg_words(plant: Plant) -> dict[str, str]:
+    """Say what the give of the legs does on one stance; dashes where they are stiff."""
+    legs = plant.legs
+    if legs is None:
+        return dict.fromkeys(("hinge", "stiffness", "critical", "mode", "unstable"), "–")
+    swings = f"{figure(legs.mode / (2.0 * math.pi))} Hz, damping ratio {figure(legs.damping, 2)}"
+    return {"hinge": f"{amount(legs.hinge, 'm')} up", "stiffness": amount(legs.stiffness, "N*m/rad"),
+            "critical": amount(legs.critical, "N*m/rad"), "mode": swings if math.isfinite(legs.mode) else "nothing swings",
+            "unstable": f"{' and '.join(figure(float(p)) for p in legs.unstable)} rad/s" if len(legs.unstable) else "none"}
+
+
+def _legs(plants: tuple[Plant, ...]) -> tuple[Row, ...]:
+    """Rows about legs that give; none where they are stiff."""
+    if plants[0].legs is None:
+        return ()
+    return tuple(Row(label, tuple(leg_words(p)[word] for p in plants)) for label, word in (
+        ("the legs give at a hinge", "hinge"), ("their stiffness", "stiffness"), ("below which they buckle", "critical"),
+        ("trunk and legs swing at", "mode"), ("unstable poles with that", "unstable")))
 
 
 def landing(plant: Plant) -> str:
