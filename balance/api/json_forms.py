@@ -8,7 +8,7 @@ from balance.api.json_margins import json_margins
 from balance.api.json_numbers import Tree, number, row
 from balance.design.forms import actuator_gains, pid_forms
 from balance.design.records import Design
-from balance.design.sensors import sensor_margins
+from balance.design.sensors import all_sensors, sensor_margins
 from balance.design.steady import standing
 
 
@@ -18,6 +18,7 @@ def json_forms(design: Design) -> Tree:
     return {
         "stance": design.plant.stance.name,
         "sensor_margins": [{"at": name, **json_margins(found)} for name, found in sensor_margins(design)],
+        "all_sensors_disk": number(all_sensors(design)),
         "actuators": [] if design.refused else [
             {"unit": a.unit, "measurements": list(design.law.measurements), "si": row(a.si),
              "ampere": None if a.current is None else row(a.current), "duty": None if a.duty is None else row(a.duty)}

@@ -9,9 +9,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from balance.base.tables import text_table
+from balance.cli.words import folded
 from balance.design.forms import actuator_gains, pid_forms
 from balance.design.records import Design, Margins
-from balance.design.sensors import sensor_margins
+from balance.design.sensors import all_sensors, sensor_margins
 from balance.report.amounts import amount, figure
 
 
@@ -25,7 +26,13 @@ def show_forms(design: Design) -> str:
 def _sensors(design: Design) -> str:
     rows = [[name, *_margins(m)] for name, m in sensor_margins(design)]
     head = ["cut at the sensor of", "gain down", "up", "phase", "at", "delay", "Ms"]
-    return f"{design.plant.stance.name}: margins at each sensor\n{text_table(head, rows, 'lrrrrrr')}"
+    at_once = all_sensors(design)
+    if not math.isfinite(at_once):
+        return f"{design.plant.stance.name}: margins at each sensor\n{text_table(head, rows, 'lrrrrrr')}"
+    most = (2.0 + at_once) / (2.0 - at_once) if at_once < 2.0 else math.inf
+    words = (f"all sensors off at once, each in its own way: disk margin {figure(at_once)}, gains within "
+             f"{figure(1.0 / most)} to {figure(most)}, phases within {amount(2.0 * math.atan(0.5 * at_once), 'rad')}")
+    return (f"{design.plant.stance.name}: margins at each sensor\n{text_table(head, rows, 'lrrrrrr')}\n\n{folded(words)}")
 
 
 def _margins(m: Margins) -> Sequence[str]:
