@@ -19,12 +19,15 @@ from balance.kernel.layout import (
     GRAVITY,
     KIND,
     MASS,
+    OFFSET,
     OWN_INERTIA,
     RESISTANCE,
     TORQUE_PER_AMP,
     VISCOUS,
     WHEEL,
 )
+from balance.plant.legs import balance_on
+from balance.plant.record import Plant
 
 Array = NDArray[np.float64]
 
@@ -52,13 +55,28 @@ def standing(design: Design) -> Standing:
     plant = design.plant
     weight = float(plant.body_parameters[MASS] * plant.body_parameters[GRAVITY])
     per_lean = _momentum_per_lean(design)
-    per_metre = -per_lean * weight / plant.stiffness if plant.stiffness > 0.0 else 0.0    # outward mass: it leans inward
+    per_metre = per_lean * _lean_per_offset(plant, weight) if plant.stiffness > 0.0 else 0.0
     momentum = 1e-3 * per_metre
     where = _per_momentum(design) * momentum
     kept = [i for i, name in enumerate(plant.model.states) if name.endswith(("wheel_speed", "gimbal_angle"))]
     speeds = where[kept]
     return Standing(_tolerable(design, per_metre), _tolerable(design, per_lean), momentum, speeds,
                     _drag_power(plant.unit_parameters, speeds), plant.momentum_capacity / (1e-3 * weight))
+
+
+def _lean_per_offset(plant: Plant, weight: float) -> float:
+    """Return how the balance moves per metre of centre-of-mass error, rad/m: outward mass leans it inward.
+
+    −m g/G; on legs that give they bend as well, and further: a central difference of the balance over 0.2 mm.
+    """
+    if plant.legs_parameters is None:
+        return -weight / plant.stiffness
+    ends = []
+    for shift in (1e-4, -1e-4):
+        body = plant.body_parameters.copy()
+        body[OFFSET] += shift
+        ends.append(balance_on(body, plant.legs_parameters)[0])
+    return (ends[0] - ends[1]) / 2e-4
 
 
 def tolerable_offset(design: Design) -> float:

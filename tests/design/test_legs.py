@@ -12,7 +12,8 @@ from balance.design.build import design_stance
 from balance.design.loop import close, sample_plant
 from balance.design.robustness.ranges import ranges_of
 from balance.design.robustness.worst import worst_case
-from balance.goal.trials import Start, Trial
+from balance.design.steady import standing
+from balance.goal.trials import OffsetShift, Start, Trial
 from balance.kernel import layout as at
 from balance.kernel.sensing import ACCEL_NOISE, ACCEL_STEP, GYRO_BIAS, GYRO_NOISE, GYRO_STEP, TILT_BIAS
 from balance.machine.legs import LegCompliance
@@ -69,6 +70,15 @@ def test_legs_that_ring_or_sag_lose_the_loop(stiffness, damping, kept):
     design, _, _ = designed(height=0.15, stiffness=stiffness, damping=damping)
     assert design.margins.stable == kept
     assert design.plant.stiff is not None
+
+
+def test_a_weight_that_slips_costs_more_on_soft_legs():
+    """Standing momentum after 1 mm, against the simulator run until it stands; stiff legs would say 4 % less."""
+    design, goal, _ = designed(height=0.15, stiffness=60.0, damping=2.0)
+    due = standing(design).momentum
+    run = run_one(design, goal, "slip", Trial(offset=OffsetShift(1e-3), lasts=25.0), "outward", False)
+    assert run.end_momentum == pytest.approx(due, rel=2e-3)                # sine against its slope, and the last of settling
+    assert abs(standing(designed()[0]).momentum / due - 1.0) > 0.02
 
 
 def test_the_worst_stiffness_is_found():
