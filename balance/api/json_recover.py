@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from balance.api.json_numbers import Tree, number
-from balance.simulate.records import TrialResult
+from balance.simulate.records import FootLoad, TrialResult
 
 
 def json_recover(trials: tuple[TrialResult, ...]) -> Tree:
@@ -32,7 +32,18 @@ def _trial(trial: TrialResult) -> Tree:
         "peak_supply_current_a": number(trial.peak_supply_current),
         "friction_needed": number(trial.friction_needed),
         "lift_off": trial.lift_off,
+        "feet": [_foot(foot) for foot in trial.feet],
         "standing_swing_rad": number(trial.standing_swing),
         "end_lean_rad": number(trial.end_lean),
         "end_momentum_n_m_s": number(trial.end_momentum),
+    }
+
+
+def _foot(foot: FootLoad) -> Tree:
+    return {
+        "foot": foot.foot,
+        "least_load_n": number(foot.least_load),
+        "friction_needed": number(foot.friction_needed),
+        "lift_off_s": number(foot.lift_off),
+        "slip_s": number(foot.slip),
     }

@@ -68,7 +68,7 @@ def worst_cases(goal: Goal, design: Design, trials: Sequence[TrialResult]) -> li
                                _too_slow))
     if friction is not None:
         verdicts.append(_worst("friction_needed", trials, lambda r: r.friction_needed, "", friction, lambda r, v, lim:
-                               f"{_which(r)} needs {v:.2f} under the feet, {v - lim:.2f} too much: they would slip"))
+                               f"{_which(r)} needs {v:.2f} under {_worse_foot(r)}, {v - lim:.2f} too much"))
     if require.bus_voltage is not None and plant.supply_parameters is not None:
         verdicts.append(_worst("bus_voltage", trials, lambda r: r.peak_bus_voltage, "V", require.bus_voltage,
                                lambda r, v, lim: f"{_which(r)} pumps the bus {v - lim:.2g} V too high: braking wheels give "
@@ -77,11 +77,37 @@ def worst_cases(goal: Goal, design: Design, trials: Sequence[TrialResult]) -> li
         verdicts.append(_worst("standing_swing", trials, lambda r: r.standing_swing, "rad", require.standing_swing,
                                lambda r, v, lim: f"{_which(r)} keeps swinging {math.degrees(v - lim):.2g}° too far"
                                if math.isfinite(v) else f"{_which(r)} does not stand at the end ({r.verdict})"))
-    if any(r.lift_off for r in trials):
-        lifted = next(r for r in trials if r.lift_off)
-        verdicts.append(Verdict("feet_on_ground", plant.stance.name, "lifted", "", "on the ground", "is", False,
-                                f"{_which(lifted)}: the feet carried no load at one moment"))
+    return verdicts + feet_verdicts(plant.stance.name, trials, require.friction_needed is not None)
+
+
+def feet_verdicts(stance: str, trials: Sequence[TrialResult], grip: bool) -> list[Verdict]:
+    """Return a verdict where a foot lifts, and (`grip`) one where a foot needs more than the machine's `feet.friction`."""
+    verdicts = []
+    lifted = [r for r in trials if r.lift_off]
+    if lifted:
+        verdicts.append(Verdict("feet_on_ground", stance, "lifted", "", "on the ground", "is", False, _told(
+            lifted[0], "lift_off", "carries no load", "the feet carry no load at one moment")))
+    slipped = [r for r in trials if any(math.isfinite(foot.slip) for foot in r.feet)]
+    if grip and slipped:
+        verdicts.append(Verdict("feet_grip", stance, "slipped", "", "hold", "is", False,
+                                _told(slipped[0], "slip", "needs more friction than the feet have", "")))
     return verdicts
+
+
+def _told(result: TrialResult, when: str, what: str, otherwise: str) -> str:
+    """Return which foot is the first to do it, and when."""
+    feet = [(getattr(foot, when), foot.foot) for foot in result.feet if math.isfinite(getattr(foot, when))]
+    if not feet:
+        return f"{_which(result)}: {otherwise}"
+    time, foot = min(feet)
+    return f"{_which(result)}: foot {foot} {what} at {time:.2f} s; what comes after is not simulated"
+
+
+def _worse_foot(result: TrialResult) -> str:
+    """Return the foot that needs most friction in words."""
+    if not result.feet:
+        return "the feet"
+    return f"foot {max(result.feet, key=lambda foot: foot.friction_needed).foot}"
 
 
 def _worst(name: str, trials: Sequence[TrialResult], value_of: Callable[[TrialResult], float], unit: str, limit: float,

@@ -7,6 +7,7 @@ from balance.check.records import Verdict
 from balance.cli.words import closing, failures, folded
 from balance.design.records import Design
 from balance.report.amounts import amount, share
+from balance.report.ground import each_foot
 from balance.simulate.records import TrialResult
 
 
@@ -36,6 +37,8 @@ def trial_table(design: Design, trials: tuple[TrialResult, ...]) -> str:
         for t in trials
     ]
     notes = [folded(f"{', '.join(names)}: {reason}") for reason, names in _met_on_the_way(trials).items()]
+    notes += [folded(f"foot {one.foot}: least load {one.words[0]}, friction needed {one.words[1]}, {one.words[2]}")
+              for one in each_foot(trials)]
     return "\n".join([f"stance {name}", text_table(head, rows, "lllrrrr"), *notes])
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 import os
 from dataclasses import replace
 from itertools import pairwise
@@ -46,7 +47,7 @@ def _filled(goal: Goal, key: str, gusts: Gusts) -> Gusts:
     problem = _columns(sheet) or _order(sheet)
     if problem:
         raise InputError([problem])
-    lever = 1.0
+    lever = math.inf
     if "force" in sheet.columns:
         if gusts.height is None:
             line, column = goal.marks.get(key, (line, column))
@@ -55,7 +56,9 @@ def _filled(goal: Goal, key: str, gusts: Gusts) -> Gusts:
                                       f"{gusts.file} states a force")])
         lever = gusts.height
     values = sheet.columns.get("torque") or sheet.columns["force"]
-    return replace(gusts, points=tuple((t, lever * v) for t, v in zip(sheet.columns["time"], values, strict=True)))
+    times = lever if math.isfinite(lever) else 1.0
+    points = tuple((t, times * v) for t, v in zip(sheet.columns["time"], values, strict=True))
+    return replace(gusts, points=points, lever=lever)
 
 
 def _columns(sheet: Sheet) -> Problem | None:

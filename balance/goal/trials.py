@@ -7,6 +7,7 @@ trial harder without pushing anybody (a weak supply, missed samples) is in `goal
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass, field
 
 from balance.files.fields import Shape, choice, place, quantity, section, text
@@ -17,7 +18,10 @@ TOWARD = ("both", "outward", "inward")
 
 @dataclass(frozen=True)
 class Push:
-    """A short push; `for` 0 s is an instantaneous impulse. `height` is above the contact line."""
+    """A short push; `for` 0 s is an instantaneous impulse. `height` is above the contact line.
+
+    Only a push that lasts is felt by the feet: a blow of no duration would need a force without bound under them.
+    """
 
     impulse: float = quantity("impulse", least=0)
     height: float = quantity("length", above=0)
@@ -59,6 +63,7 @@ class Gusts:
     start: float = quantity("time", least=0, default=0.0, written="from")
     toward: str = choice(TOWARD, default="both")
     points: tuple[tuple[float, float], ...] = field(default=(), metadata={"shape": None})    # s, N·m
+    lever: float = field(default=math.inf, metadata={"shape": None})    # m, of a force; inf: a torque is stated
 
 
 @dataclass(frozen=True)

@@ -58,7 +58,7 @@ class Output(NamedTuple):
 
     history: Array        # (samples + 1, 2): lean, line momentum at each sample and at the end
     trace: Array          # (samples + 1, TRACE_SIZE + 2 u), or no rows: nothing recorded
-    metrics: Array        # (METRIC_SIZE,) given as zeros
+    metrics: Array        # (METRIC_SIZE,) given as `fresh_metrics`
     first: Array          # (u + 1, LIMITS, 2) given as inf
 
 
@@ -106,6 +106,15 @@ TORQUES_ON = 2    # how many rows of Work.active count
 CLIPPED = 3       # 1: the law's own limits were met at this sample
 VARYING = 4       # 1: a row of Work.active changes the body over time
 NEXT_CHANGE = 5
+
+
+def fresh_metrics() -> Array:
+    """Return the metrics of a trial that has not begun, (METRIC_SIZE,)."""
+    out = np.zeros(outcome.METRIC_SIZE)
+    for foot in range(2):
+        at = outcome.FEET + foot * outcome.FOOT_SIZE
+        out[[at + outcome.LEAST_LOAD, at + outcome.LIFT_OFF, at + outcome.SLIP]] = np.inf
+    return out
 
 
 def fresh_work(body: Array, units: Array, law: LawArrays, events: Events) -> Work:

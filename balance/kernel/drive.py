@@ -84,7 +84,9 @@ def current_target(units: Array, i: int, speed: float, command: float) -> tuple[
         return current, met
     low, high = current_window(units, i, speed)
     slack = SLACK * units[i, CURRENT_LIMIT]
-    if current > high + slack:
+    if abs(units[i, BACK_EMF] * speed) > units[i, BUS_VOLTAGE] + units[i, RESISTANCE] * units[i, CURRENT_LIMIT]:
+        met = outcome.UNREGULATED
+    elif current > high + slack:
         met = outcome.CURRENT if high >= units[i, CURRENT_LIMIT] else outcome.VOLTAGE
     elif current < low - slack:
         met = outcome.CURRENT if low <= -units[i, CURRENT_LIMIT] else outcome.VOLTAGE

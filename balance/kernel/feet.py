@@ -35,6 +35,7 @@ from balance.kernel.layout import (
     TRANSVERSE,
     WHEEL,
 )
+from balance.kernel.legs import hinge_moves
 
 Array = NDArray[np.float64]
 
@@ -48,18 +49,20 @@ def centre(theta: float, body: Array) -> tuple[float, float]:
 
 
 @njit(cache=True, error_model="numpy", forceinline=True)
-def foot_forces(X: Array, dX: Array, body: Array) -> tuple[float, float]:
-    """Return (force across the line along w, sum of the normal forces) on the whole machine in N.
+def foot_forces(X: Array, dX: Array, push: float, body: Array, units: Array) -> tuple[float, float]:
+    """Return (force across the line along w, sum of the normal forces) of the ground on the whole machine in N.
 
-    F = m(θ̈(r + z_c) − θ̇² y_c), N = m(g cos β − θ̈ y_c − θ̇² z_c): the foot balls roll on by r θ.  Wheels and gimballed
-    rotors turn about their own centres of mass and carry no force.
+    F = m(θ̈(r + z_c) − θ̇² y_c) − push, N = m(g cos β − θ̈ y_c − θ̇² z_c): the foot balls roll on by r θ; `push` is what
+    pushes along w beside the ground.  Wheels and gimballed rotors turn about their own centres of mass and carry no force;
+    legs that give move the hinge, and the trunk with it.
     """
     y, z = centre(X[0], body)
-    across = body[MASS] * (dX[1] * (body[FOOT_RADIUS] + z) - X[1] ** 2 * y)
-    return across, body[MASS] * (body[GRAVITY] - dX[1] * y - X[1] ** 2 * z)
+    _, _, aside, up = hinge_moves(X, dX, units)
+    across = body[MASS] * (dX[1] * (body[FOOT_RADIUS] + z) - X[1] ** 2 * y + aside)
+    return across - push, body[MASS] * (body[GRAVITY] - dX[1] * y - X[1] ** 2 * z + up)
 
 
-@njit(cache=True, error_model="numpy")
+@njit(cache=True, error_model="numpy", forceinline=True)
 def turning(X: Array, dX: Array, body: Array, units: Array) -> tuple[float, float]:
     """Return dL/dt about the centre of mass in N·m along the world's u and w: what the feet's couple must make.
 
@@ -95,21 +98,24 @@ def turning(X: Array, dX: Array, body: Array, units: Array) -> tuple[float, floa
     return du * c - dw * s, du * s + dw * c
 
 
-@njit(cache=True, error_model="numpy")
-def each_foot(X: Array, dX: Array, body: Array, units: Array) -> tuple[float, float, float, float, float]:
+@njit(cache=True, error_model="numpy", forceinline=True)
+def each_foot(X: Array, dX: Array, push: float, body: Array, units: Array) -> tuple[float, float, float, float, float]:
     """Return (normal on a, normal on b, force along w on a, on b, force along e on both together) in N.
 
     Moments about foot a: L (e × R_b) = ρ × R + dL/dt, R the whole ground force and ρ from foot a to the centre of mass.
     A wheel off the line twists the machine and moves load from one foot to the other.  How the two share the force
-    along the line is not determined by rigid bodies.
+    along the line is not determined by rigid bodies.  `push`, N along w, acts right above or below the centre of mass as
+    seen along the line: it does not twist the machine.  Where nothing is known of the feet, foot a stands for both.
     """
-    across, normal = foot_forces(X, dX, body)
+    across, normal = foot_forces(X, dX, push, body, units)
     along = -body[MASS] * body[GRAVITY_ALONG]
     y, z = centre(X[0], body)
+    aside, up, _, _ = hinge_moves(X, dX, units)
+    y, z = y + aside, z + up
     du, dw = turning(X, dX, body, units)
-    x, length = body[COM_ALONG], body[LENGTH]
-    normal_b = (x * normal - (body[FOOT_RADIUS] + z) * along + dw) / length
-    across_b = (x * across - y * along - du) / length
+    x, share = body[COM_ALONG], 1.0 / body[LENGTH] if body[LENGTH] > 0.0 else 0.0
+    normal_b = (x * normal - (body[FOOT_RADIUS] + z) * along + dw) * share
+    across_b = (x * across - y * along - du) * share
     return normal - normal_b, normal_b, across - across_b, across_b, along
 
 

@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 from balance.kernel import outcome
 from balance.kernel.drive import torque_available
 from balance.kernel.equations import gimbal_terms
-from balance.kernel.feet import foot_forces
+from balance.kernel.feet import each_foot, friction_needed
 from balance.kernel.layout import (
     BACK_EMF,
     BALANCED,
@@ -18,8 +18,10 @@ from balance.kernel.layout import (
     COUPLING,
     E_GXS0,
     E_S0,
+    FRICTION,
     GIMBAL_INERTIA,
     KIND,
+    LENGTH,
     MOMENTUM,
     MOTOR,
     OWN_INERTIA,
@@ -115,17 +117,12 @@ def watch(t: float, h: float, X: Array, dX: Array, body: Array, units: Array, me
     torque = line_torque(X, dX, units)
     stored = line_momentum(X, units)
     power, current = bus_power(X, dX, units)
-    sideways, normal = foot_forces(X, dX, body)
     metrics[outcome.PEAK_LEAN] = max(metrics[outcome.PEAK_LEAN], abs(X[0] - body[BALANCED]))
     metrics[outcome.PEAK_TORQUE] = max(metrics[outcome.PEAK_TORQUE], abs(torque))
     metrics[outcome.PEAK_MOMENTUM] = max(metrics[outcome.PEAK_MOMENTUM], abs(stored))
     metrics[outcome.PEAK_CURRENT] = max(metrics[outcome.PEAK_CURRENT], current)
     metrics[outcome.PEAK_POWER] = max(metrics[outcome.PEAK_POWER], power)
     metrics[outcome.TORQUE_SQUARED] += h * torque * torque
-    if normal <= 0.0:
-        metrics[outcome.LIFTED] = 1.0
-    else:
-        metrics[outcome.FRICTION] = max(metrics[outcome.FRICTION], abs(sideways) / normal)
     limited = False
     for i in range(units.shape[0]):
         if met[i] != outcome.NO_LIMIT:
@@ -133,6 +130,23 @@ def watch(t: float, h: float, X: Array, dX: Array, body: Array, units: Array, me
             note(t, stored, i, met[i], first)
     if limited:
         metrics[outcome.SATURATED] += h
+
+
+@njit(cache=True, error_model="numpy", forceinline=True)
+def watch_feet(t: float, X: Array, dX: Array, push: float, body: Array, units: Array, metrics: Array) -> None:
+    """Gather each foot's least load and needed friction at t, under a horizontal push in N; keep when it lifts or slips."""
+    load_a, load_b, across_a, across_b, along = each_foot(X, dX, push, body, units)
+    for foot in range(2 if body[LENGTH] > 0.0 else 1):
+        at = outcome.FEET + foot * outcome.FOOT_SIZE
+        load, across = (load_a, across_a) if foot == 0 else (load_b, across_b)
+        metrics[at + outcome.LEAST_LOAD] = min(metrics[at + outcome.LEAST_LOAD], load)
+        if load <= 0.0:
+            metrics[at + outcome.LIFT_OFF] = min(metrics[at + outcome.LIFT_OFF], t)
+            continue
+        needed = friction_needed(load, across, along, load_a + load_b)
+        metrics[at + outcome.GRIP] = max(metrics[at + outcome.GRIP], needed)
+        if needed > body[FRICTION]:
+            metrics[at + outcome.SLIP] = min(metrics[at + outcome.SLIP], t)
 
 
 @njit(cache=True, error_model="numpy", forceinline=True)

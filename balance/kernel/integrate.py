@@ -13,7 +13,7 @@ from numpy.typing import NDArray
 from balance.kernel import outcome
 from balance.kernel.drive import LIMITER_GAIN, unit_input
 from balance.kernel.equations import derivative
-from balance.kernel.gauge import watch, watch_bus
+from balance.kernel.gauge import watch, watch_bus, watch_feet
 from balance.kernel.layout import (
     ANGLE_STOP,
     BALANCED,
@@ -119,6 +119,16 @@ def put_on_legs(t: float, active: Array, count: int, live: Array, commands: Arra
 
 
 @njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
+def push_at(t: float, active: Array, count: int) -> float:
+    """Return the horizontal force along w in N that makes these torques at time t; a couple has none."""
+    total = 0.0
+    for i in range(count):
+        if active[i, outcome.LEVER] != np.inf:
+            total += torque_of(t, active, i) / active[i, outcome.LEVER]
+    return total
+
+
+@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
 def vary(t: float, active: Array, count: int, base: Array, body: Array) -> None:
     """Put what the rows of `active` make of the body at time t.
 
@@ -191,6 +201,7 @@ def march(X: Array, begin: float, h: float, steps: int, commands: Array, active:
             if stage == 0:
                 settle_currents(X, inputs, live, met, held)
                 watch(t, h, X, rate, body, units, met, metrics, first)
+                watch_feet(t, X, rate, push_at(t, active, count), body, units, metrics)
                 watch_bus(X, units, live, metrics)
             weight = h / 3.0 if 0 < stage < 3 else h / 6.0
             for j in range(X.size):

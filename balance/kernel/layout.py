@@ -20,8 +20,9 @@ FELL = 11          # rad: |lean| beyond which it fell
 PRODUCT_U = 12     # kg·m²: u·(I_com e) at θ = 0, without what varies with the gimbals' angles; only the feet feel it
 PRODUCT_W = 13     # kg·m²: w·(I_com e)
 COM_ALONG = 14     # m: the centre of mass from foot a, along e
-LENGTH = 15        # m: from foot a to foot b
+LENGTH = 15        # m: from foot a to foot b; 0: nothing is known of the feet, they are looked at together
 GRAVITY_ALONG = 16 # m/s²: the part of gravity along e (negative where the line rises)
+FRICTION = 17      # coefficient of the feet on the ground
 BODY_SIZE = 20
 
 # unit parameters, common

@@ -18,16 +18,22 @@ PEAK_MOMENTUM = 3    # N·m·s about the line
 TORQUE_SQUARED = 4   # N²·m²·s: ∫T²dt
 PEAK_CURRENT = 5     # A
 PEAK_POWER = 6       # W, from the bus
-FRICTION = 7         # largest |tangential| / normal
-LIFTED = 8           # 1: the sum of normal forces reached zero
-END_TIME = 9         # s
-END_LEAN = 10        # rad
-END_MOMENTUM = 11    # N·m·s
-SAMPLES = 12         # samples taken, the start included
-PEAK_BUS = 13        # V, highest bus voltage
-DEEPEST_SAG = 14     # V, most by which the bus stood below the open-circuit voltage
-PEAK_SUPPLY = 15     # A, from the supply
-METRIC_SIZE = 16
+END_TIME = 7         # s
+END_LEAN = 8         # rad
+END_MOMENTUM = 9     # N·m·s
+SAMPLES = 10         # samples taken, the start included
+PEAK_BUS = 11        # V, highest bus voltage
+DEEPEST_SAG = 12     # V, most by which the bus stood below the open-circuit voltage
+PEAK_SUPPLY = 13     # A, from the supply
+FEET = 14            # foot a, then foot b, each with the four below; feet that are looked at together: the first
+METRIC_SIZE = 22
+
+# of one foot
+LEAST_LOAD = 0       # N, least normal force
+GRIP = 1             # largest |tangential| / normal while it carries load
+LIFT_OFF = 2         # s when the normal force first reached zero; inf: never
+SLIP = 3             # s when |tangential| / normal was first above the feet's friction; inf: never
+FOOT_SIZE = 4
 
 # limits
 NO_LIMIT = 0
@@ -42,7 +48,8 @@ OUTPUT = 8           # the law's limit of its line command (last row)
 SUPPLY = 9           # the supply gives no more current
 OVERVOLTAGE = 10     # the bus takes no more of what braking gives back
 FORCED = 11          # back-EMF above the bus voltage: the wheel is braked, whatever is asked
-LIMITS = 12
+UNREGULATED = 12     # back-EMF above bus voltage and R i_max: the current is out of the driver's control
+LIMITS = 13
 
 # columns of a recorded sample
 TIME = 0
@@ -66,7 +73,7 @@ TURN = 5
 OF_INERTIA = 6       # kg·m², next column: per s
 OF_STIFF_SIN = 8     # N·m
 OF_STIFF_COS = 10    # N·m
-LEVER = 12           # m above the line; inf: a couple on the trunk
+LEVER = 12           # m above the line where a force acts; inf: a couple on the trunk, no force
 TORQUE_SIZE = 13
 
 # a sudden change

@@ -249,7 +249,7 @@ def change(X: Array, t: float, tiny: float, units: Array, events: Events, work: 
         if events.torques[i, outcome.START] <= t + tiny and events.torques[i, outcome.END] > t + tiny:
             for j in range(outcome.TORQUE_SIZE):
                 work.active[on, j] = events.torques[i, j]
-                if j >= outcome.OF_INERTIA and events.torques[i, j] != 0.0:
+                if outcome.OF_INERTIA <= j < outcome.LEVER and events.torques[i, j] != 0.0:
                     at[VARYING] = 1
             on += 1
     at[TORQUES_ON] = on

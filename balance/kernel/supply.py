@@ -151,7 +151,7 @@ def share_bus(X: Array, power: float, volts: float, bus: int, live: Array, slope
         cut_currents(X, bus, live, most, back, slopes, met)
     inputs[bus], slopes[bus] = 0.0, 0.0
     for i in range(bus):
-        motor = live[i, KIND] == WHEEL and live[i, ROLE] == MOTOR
+        motor = live[i, KIND] == WHEEL and live[i, ROLE] == MOTOR and met[i] != outcome.UNREGULATED
         if motor and abs(live[i, BACK_EMF] * X[2 + 2 * i]) > volts * (1.0 + SLACK):
             met[i] = outcome.FORCED
     if takes_back:

@@ -40,5 +40,5 @@ def add_body(stance: Stance, rows: Array, body: Array) -> None:
             products -= row[at.COUNT] * held * row[at.E_S0] * row[[at.S0_U, at.S0_W]]
     body[[at.PRODUCT_U, at.PRODUCT_W]] = products
     body[at.COM_ALONG] = (stance.com_W - stance.p_a_W) @ stance.e_W
-    body[at.LENGTH] = stance.length
+    body[at.LENGTH] = stance.length if stance.joints else 0.0        # three numbers say nothing of the feet
     body[at.GRAVITY_ALONG] = -stance.gravity * stance.e_W[2]

@@ -16,11 +16,10 @@ def assumed(result: CheckResult) -> tuple[str, ...]:
     machine = result.machine
     legs = ("The trunk is rigid, the legs give at one massless hinge; margins and trials know of it, the law does not."
             if machine.leg_compliance else "Trunk and legs are rigid: nothing gives, nothing rings.")
-    said = [f"{legs} The two feet are points that neither slip nor lift. The friction needed is "
-            "reported for the whole machine across the line, not foot by foot.",
+    said = [f"{legs} The two feet stay where they are: what would make one slip or lift is reported, not what comes after it.",
             "The margins are those of the linear model at the balanced lean; the trials run the full one, with sine gravity "
             "and every stated limit.",
-            "A push acts square to the contact line.",
+            "A push acts square to the contact line, level with the centre of mass as seen along the line.",
             "Backlash of gears, stiction of bearings, sag of the supply and what its capacitor does with braking energy are "
             "in the trials where the machine file states them, and nowhere else."]
     if isinstance(result.goal.estimator, NoEstimator):

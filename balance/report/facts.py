@@ -111,7 +111,7 @@ def trial_table(trials: tuple[TrialResult, ...]) -> Table:
     head = ("Trial", "Outcome", "Peak lean", "Settled after", "Peak torque", "At that limit for", "Momentum used",
             "RMS torque", "Peak draw", "Friction needed", "Limits met")
     return Table("What happened", head, rows,
-                 "Settling counts from the trial's last event. Friction is what the feet need across the line.", wordy=True)
+                 "Settling counts from the trial's last event. Friction is what the worse foot needs.", wordy=True)
 
 
 def trial_cells(t: TrialResult) -> tuple[str, ...]:

@@ -20,6 +20,7 @@ from balance.report.figures.palette import as_bytes
 from balance.report.figures.recovery import draw_recovery
 from balance.report.figures.response import draw_response
 from balance.report.gains import gain_table, pole_table, share_table
+from balance.report.ground import foot_table
 from balance.report.histories import picture_trials
 from balance.report.loops import LoopPicture, picture_loop
 from balance.report.margins import margin_table
@@ -132,6 +133,9 @@ def _trials(result: CheckResult, design: Design) -> list[str]:
     drawn = [html.picture(as_bytes(draw_recovery(p), "svg"), f"{name}, trial {p.name}: lean, torque, momentum over time",
                           f"{p.name}: {told(planned.get(p.name))}") for p in picture_trials(design, mine, planned)]
     parts = [html.sub_heading("Recovery"), html.table(trial_table(mine))]
+    feet = foot_table(mine)
+    if feet is not None:
+        parts.append(html.table(feet))
     if drawn:
         parts.append(html.folded(f"{name}: {len(drawn)} trials drawn", html.figures(drawn), design is result.designs[0]))
     return parts

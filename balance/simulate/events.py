@@ -106,8 +106,8 @@ def add_torques(trial: Trial, toward: str, score: Score) -> None:
         score.load(trial.ramp.start, end, 0.0, full / trial.ramp.lasts)
         score.load(end, FOR_EVER, full)
     if trial.gusts:
-        add_points(trial.gusts.points, trial.gusts.start, _side(trial.gusts.toward, toward), score,
-                   trial.gusts.height or math.inf)
+        gusts = trial.gusts
+        add_points(gusts.points, gusts.start, _side(gusts.toward, toward), score, gusts.lever)
 
 
 def add_points(points: tuple[tuple[float, float], ...], start: float, side: float, score: Score,
@@ -202,7 +202,7 @@ def _side(said: str, toward: str) -> float:
 
 
 def _row(begin: float, end: float, column: int, level: float, slope: float, lever: float = math.inf) -> list[float]:
-    """Return a row of the kernel's torques with a level and a slope from `column` on."""
+    """Return a row of the kernel's torques with a level and a slope from `column` on, of a force at the height `lever`."""
     row = [0.0] * outcome.TORQUE_SIZE
     row[outcome.LEVER] = lever
     row[outcome.START], row[outcome.END], row[column], row[column + 1] = begin, end, level, slope

@@ -26,6 +26,17 @@ class Trace:
 
 
 @dataclass(frozen=True)
+class FootLoad:
+    """What the ground had to give one foot in a trial. After a foot has lifted or slipped the motion is no longer true."""
+
+    foot: str
+    least_load: float           # N, least normal force
+    friction_needed: float      # largest |tangential| / normal while it carried load
+    lift_off: float             # s when it first carried no load; NaN: it stayed on the ground
+    slip: float                 # s when it first needed more than the feet's friction; NaN: it did not slip
+
+
+@dataclass(frozen=True)
 class TrialResult:
     """What happened in one trial, one direction."""
 
@@ -43,8 +54,9 @@ class TrialResult:
     rms_torque: float           # N·m
     peak_current: float         # A, largest of the motors (0 for gimbal drives)
     peak_bus_power: float       # W
-    friction_needed: float      # largest |tangential| / normal, whole machine across the line
-    lift_off: bool              # the sum of normal forces reached zero
+    friction_needed: float      # largest |tangential| / normal of either foot; blows that take no time are not in it
+    lift_off: bool              # a foot carried no load at one moment
+    feet: tuple[FootLoad, ...]  # foot a, foot b; none where no legs are known: then the two above count both together
     standing_swing: float       # rad, amplitude of the lean about its trend in the last second; inf when it fell
     end_lean: float             # rad
     end_momentum: float         # N·m·s

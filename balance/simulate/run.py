@@ -23,6 +23,7 @@ from balance.machine.machine import Machine
 from balance.plant.legs import balance_on
 from balance.plant.record import Plant
 from balance.simulate.events import Happening, directions, happening
+from balance.simulate.ground import foot_loads, lifted, most_friction
 from balance.simulate.records import Trace, TrialResult
 from balance.simulate.setup import empty_output, kernel_units, law_arrays, start_state
 from balance.simulate.stepped import Controller, run_stepped
@@ -137,7 +138,7 @@ def _result(design: Design, name: str, event: Happening, ended: int, output: Out
         momentum_used=_share(float(metrics[outcome.PEAK_MOMENTUM]), float(plant.momentum_capacity)),
         rms_torque=math.sqrt(metrics[outcome.TORQUE_SQUARED] / metrics[outcome.END_TIME]),
         peak_current=float(metrics[outcome.PEAK_CURRENT]), peak_bus_power=float(metrics[outcome.PEAK_POWER]),
-        friction_needed=float(metrics[outcome.FRICTION]), lift_off=bool(metrics[outcome.LIFTED] > 0.0),
+        friction_needed=most_friction(metrics), lift_off=lifted(metrics), feet=foot_loads(plant.stance, metrics),
         standing_swing=standing_swing(time, lean) if ended == outcome.RAN else math.inf,
         end_lean=float(metrics[outcome.END_LEAN]), end_momentum=float(metrics[outcome.END_MOMENTUM]),
         peak_bus_voltage=_of_bus(plant, metrics[outcome.PEAK_BUS]),

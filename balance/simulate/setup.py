@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from balance.design.law import Law
 from balance.kernel import outcome
-from balance.kernel.bundles import LawArrays, Output
+from balance.kernel.bundles import LawArrays, Output, fresh_metrics
 from balance.kernel.layout import (
     AXIS_SHARE,
     BALANCED,
@@ -157,7 +157,7 @@ def empty_output(units: int, samples: int, record: bool) -> Output:
     """Return the arrays one trial fills; `units`: rows of the kernel."""
     return Output(np.zeros((samples + 1, 2)),
                   np.zeros((samples + 1 if record else 0, outcome.TRACE_SIZE + 2 * units)),
-                  np.zeros(outcome.METRIC_SIZE), np.full((units + 1, outcome.LIMITS, 2), math.inf))
+                  fresh_metrics(), np.full((units + 1, outcome.LIMITS, 2), math.inf))
 
 
 def _gimbal_angle(share: float, row: Array) -> float:

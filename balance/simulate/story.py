@@ -26,6 +26,7 @@ WORDS = {
     outcome.DRIVE: "strength of the gimbal drive", outcome.STOP: "gimbal stop",
     outcome.SUPPLY: "supply's current limit", outcome.OVERVOLTAGE: "bus overvoltage limit",
     outcome.FORCED: "speed at which the bus brakes the wheel by itself",
+    outcome.UNREGULATED: "speed above which the driver no longer holds the current",
 }
 FULL = (outcome.VOLTAGE, outcome.SPEED, outcome.STOP)
 """Limits that mean: no more momentum."""
@@ -86,6 +87,7 @@ def limit_story(first: Array, names: Sequence[str], capacity: float, command: st
     full = [entry for entry in met if entry[2] in FULL]
     if full and full[0] != met[0]:
         told.append(full[0])
+    told += [entry for entry in met if entry[2] == outcome.UNREGULATED and entry not in told][:1]
     return "; ".join(_one(first, entry, names, capacity, command) for entry in told)
 
 

@@ -17,6 +17,7 @@ from balance.goal.trials import OffsetShift, Push, Start, Trial
 from balance.kernel import layout as at
 from balance.machine.read import read_machine
 from balance.plant.build import build_plant
+from balance.simulate.records import FootLoad
 from balance.simulate.run import run_one, run_trials
 from balance.stance.build import build_stance
 
@@ -126,6 +127,33 @@ def test_feet_that_lift_are_told(rig, caught):
     _, goal, design = rig
     verdict = judge(goal, [design], [replace(caught[0], lift_off=True), *caught[1:]])[-1]
     assert (verdict.name, verdict.passed) == ("feet_on_ground", False)
+    assert "what comes after" not in verdict.reason                       # three numbers: which foot is not known
+
+
+def on_feet(result, *feet):
+    """Return a result with feet of given friction, lift-off and slip."""
+    loads = tuple(FootLoad(name, 10.0, friction, lift, slip) for name, friction, lift, slip in feet)
+    return replace(result, feet=loads, friction_needed=max(f.friction_needed for f in loads),
+                   lift_off=any(math.isfinite(f.lift_off) for f in loads))
+
+
+def test_the_foot_that_lifts_or_slips_is_named_with_its_time(rig, caught):
+    """`feet_grip` speaks where the design allows more friction than the machine's feet have."""
+    _, goal, design = rig
+    asked = replace(goal, require=Requirements(friction_needed=0.9))
+    stays = on_feet(caught[0], ("fore", 0.2, math.nan, math.nan), ("left", 0.3, math.nan, math.nan))
+    assert {"feet_on_ground", "feet_grip"}.isdisjoint(v.name for v in judge(asked, [design], [stays]))
+    lifts = on_feet(caught[0], ("fore", 0.2, 0.31, math.nan), ("left", 0.8, math.nan, 0.27))
+    found = {v.name: v for v in judge(asked, [design], [lifts])}
+    assert found["friction_needed"].passed
+    assert not found["feet_on_ground"].passed
+    assert "foot fore carries no load at 0.31 s" in found["feet_on_ground"].reason
+    assert not found["feet_grip"].passed
+    assert "foot left needs more friction than the feet have at 0.27 s" in found["feet_grip"].reason
+    strict = replace(goal, require=Requirements(friction_needed=0.5))
+    verdict = next(v for v in judge(strict, [design], [lifts]) if v.name == "friction_needed")
+    assert not verdict.passed
+    assert "under foot left" in verdict.reason
 
 
 @pytest.mark.parametrize(("allowed", "passes"), [("refused", False), ("allowed", True)])

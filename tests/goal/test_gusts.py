@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from pathlib import Path
 
 import pytest
@@ -31,12 +32,14 @@ def problems(tmp_path, sheet, gusts="{file: wind.csv}"):
 def test_units_of_the_head_count(tmp_path):
     goal = read_goal(design(tmp_path, "# measured on the roof\ntime [ms], torque [mN*m]\n0, 0\n\n100, 250\n200, -50\n"))
     assert goal.trials["wind"].gusts.points == ((0.0, 0.0), (0.1, 0.25), (0.2, -0.05))
+    assert goal.trials["wind"].gusts.lever == math.inf                     # a torque is no force
     assert goal.trials["shove"].gusts is None
 
 
 def test_a_force_takes_its_height_as_lever(tmp_path):
     goal = read_goal(design(tmp_path, "time [s], force [N]\n0, 0\n1, 2\n", "{file: wind.csv, height: 450 mm}"))
     assert goal.trials["wind"].gusts.points[1] == (1.0, pytest.approx(0.9))
+    assert goal.trials["wind"].gusts.lever == 0.45
     found = problems(tmp_path, "time [s], force [N]\n0, 0\n1, 2\n")
     assert [(p.key, "height" in p.allowed) for p in found] == [("trials.wind.gusts.height", True)]
 

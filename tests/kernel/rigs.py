@@ -8,7 +8,7 @@ import numpy as np
 
 from balance.kernel import layout as at
 from balance.kernel import outcome, sensing
-from balance.kernel.bundles import MEMORY, Events, LawArrays, Output, fresh_work
+from balance.kernel.bundles import MEMORY, Events, LawArrays, Output, fresh_metrics, fresh_work
 from balance.kernel.run import run_trial
 
 
@@ -70,12 +70,13 @@ def ideal_sensor():
     return out
 
 
-def events(lasts, torques=(), jumps=(), release=(0.0, 0.0), longest=1e-4, sensor=None, seed=1, changes=(), spells=()):
-    """Return what happens; breaks are gathered here. A row of torques may end early: zeros follow."""
+def events(lasts, torques=(), jumps=(), release=(0.0, 0.0), longest=1e-4, sensor=None, seed=1, changes=(), spells=(),
+           lever=np.inf):
+    """Return what happens; breaks are gathered here. A row of torques may end early: zeros follow. All act at `lever`."""
     spans = [r for r in (*torques, *spells)]
     times = {r[0] for r in spans} | {r[1] for r in spans} | {r[0] for r in (*jumps, *changes)} | {release[0]}
     breaks = sorted(t for t in times if 0 < t < lasts)
-    rows = [[*r, *[0.0] * (outcome.TORQUE_SIZE - len(r))] for r in torques]
+    rows = [[*r[:outcome.LEVER], *[0.0] * (outcome.LEVER - len(r)), lever] for r in torques]
     return Events(np.array(rows, float).reshape(-1, outcome.TORQUE_SIZE),
                   np.array(jumps, float).reshape(-1, outcome.JUMP_SIZE), np.array(breaks, float), *release, lasts, longest,
                   ideal_sensor() if sensor is None else sensor, seed,
@@ -100,7 +101,7 @@ def run(b, units, control, happens, X=None, memory=0.0):
     X = np.zeros(2 + 2 * len(units)) if X is None else np.array(X, float)
     samples = int(np.ceil(happens.lasts / control.sample_time - 1e-9))
     out = Output(np.zeros((samples + 1, 2)), np.zeros((samples + 1, outcome.TRACE_SIZE + 2 * len(units))),
-                 np.zeros(outcome.METRIC_SIZE), np.full((len(units) + 1, outcome.LIMITS, 2), np.inf))
+                 fresh_metrics(), np.full((len(units) + 1, outcome.LIMITS, 2), np.inf))
     work = fresh_work(b, units, control, happens)
     work.numbers[MEMORY, 0] = memory
     end = run_trial(X, units, control, happens, work, out)

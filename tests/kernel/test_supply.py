@@ -137,6 +137,17 @@ def test_a_supply_that_breaks_down_brakes_the_wheel_by_itself():
     assert not np.isfinite(healthy.first[0, outcome.FORCED, 0])
 
 
+@pytest.mark.parametrize(("amps", "flag", "other"), [(30.0, outcome.FORCED, outcome.UNREGULATED),
+                                                     (10.0, outcome.UNREGULATED, outcome.FORCED)])
+def test_beyond_bus_voltage_and_what_the_limit_drops_the_current_is_out_of_control(amps, flag, other):
+    """18 V of back-EMF on 12 V that are left: 30 A × 0.3 ohm hold 6 V more than that, 10 A do not (V + R i_max = 15 V)."""
+    units = np.vstack([wheel(inertia=1e-2, lag=2000.0, torque=np.inf, speed=np.inf, volts=0.0, ohms=0.3, amps=amps), bus()])
+    happens = events(0.06, spells=[[0.05, 0.1, outcome.SUPPLY_LEFT, 0.5]], longest=longest_step(units))
+    ran = run(body(**STILL), units, law(), happens, X=[0, 0, 300.0, 0, 0, 0])
+    assert ran.first[0, flag, 0] == pytest.approx(0.05, abs=1e-9)
+    assert not np.isfinite(ran.first[0, other, 0])
+
+
 def by_scipy(units, source, commands, start, lasts):
     """Run motors on a still body with DOP853; the bus written anew: fixed point for the sag, bisection for limits."""
     V0, Rb, amps = source[0, at.BUS_VOLTAGE], source[0, at.SOURCE_OHMS], source[0, at.SOURCE_AMPS]

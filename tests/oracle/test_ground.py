@@ -37,7 +37,8 @@ def rates(plant, X, torque=0.0):
 
 def needed(plant, X, torque=0.0):
     """Return F/N at a state."""
-    across, normal = foot_forces(np.asarray(X, float), rates(plant, X, torque), plant.body_parameters)
+    dX = rates(plant, X, torque)
+    across, normal = foot_forces(np.asarray(X, float), dX, 0.0, plant.body_parameters, plant.unit_parameters)
     return across / normal
 
 
@@ -124,8 +125,8 @@ def test_rolling_feet_by_the_rolling_of_the_centre():
         return np.array([r * t + (height - r) * np.sin(t), r + (height - r) * np.cos(t)])
 
     second = (centre(path[0]) - 2 * centre(X[0]) + centre(back[0])) / step**2          # error of order step²
-    across, normal = foot_forces(X, rates(plant, X), plant.body_parameters)
+    across, normal = foot_forces(X, rates(plant, X), 0.0, plant.body_parameters, plant.unit_parameters)
     assert [across, normal] == pytest.approx(mass * (second + np.array([0.0, 9.81])), rel=1e-5)
     plant.body_parameters[at.FOOT_RADIUS] = 0.0                                             # the twin: point feet
-    point = foot_forces(X, rates(plant, X), plant.body_parameters)
+    point = foot_forces(X, rates(plant, X), 0.0, plant.body_parameters, plant.unit_parameters)
     assert hypot(point[0] - across, point[1] - normal) > 0.05 * hypot(across, normal)

@@ -6,9 +6,10 @@ import numpy as np
 import pytest
 
 from balance.kernel import layout as at
+from balance.kernel.feet import each_foot
 from balance.simulate.setup import kernel_units
 from tests.parity.reduced import reduced
-from tests.parity.test_random_machines import TOLERANCE, motion, random_state
+from tests.parity.test_random_machines import TOLERANCE, feet_of_the_engine, motion, random_state
 from tests.plant.random_plants import random_plant_on_legs
 
 STATES = 2
@@ -51,3 +52,20 @@ def test_hundred_machines(block):
         off[-1, at.HINGE] *= 1.001
         twins += residuals(machine, plant, engine, X, inputs, torque, off).max() > 1e-5
     assert twins == 20                  # a hinge 0.1 % too high is seen on every machine
+
+
+def test_each_foot_s_load_on_legs_that_give():
+    """The legs' own motion loads the feet too; forgotten (the twin: the same state without their row) it shows."""
+    twins = 0
+    for seed in range(40):
+        machine, plant = random_plant_on_legs(seed)
+        engine = reduced(machine, plant.stance)
+        X, inputs, torque, units = on_legs(np.random.default_rng(3000 + seed), plant)
+        angles, rates, a, _, dX = motion(machine, plant, engine, X, inputs, torque, units)
+        angles["legs"], rates["legs"], a["legs"] = X[-1], X[-2], dX[-2]
+        expected = feet_of_the_engine(plant, engine, X[-1], angles, rates, a)
+        found = np.array(each_foot(X, dX, 0.0, plant.body_parameters, units))
+        assert np.abs(found - expected).max() <= TOLERANCE * np.abs(expected).max(), (seed, found, expected)
+        stiff = np.array(each_foot(X[:-2], dX[:-2], 0.0, plant.body_parameters, units[:-1]))
+        twins += np.abs(stiff - expected).max() > 1e-3 * np.abs(expected).max()
+    assert twins == 40

@@ -73,6 +73,7 @@ def test_a_push_that_lasts_has_the_same_impulse():
     assert happens.events.jumps.shape == (0, outcome.JUMP_SIZE)
     row = happens.events.torques[0]
     assert row[outcome.LEVEL] * (row[outcome.END] - row[outcome.START]) == pytest.approx(0.4 * 0.5)
+    assert row[outcome.LEVER] == 0.5
     assert happens.quiet_from == pytest.approx(0.25)
 
 

@@ -121,6 +121,24 @@ def test_inward_the_lifted_foot_catches_it(quay):
     assert ran(quay, trial, "inward").verdict == "touched down"
 
 
+def test_each_foot_has_its_loads_and_a_machine_of_three_numbers_has_none(quay, rig):
+    """Standing near balance the two feet of the carrier carry its weight; soap under them is noticed at once."""
+    trial = Trial(push=Push(2.0, 0.8, lasts=0.1))
+    result = ran(quay, trial)
+    stance = quay[2].plant.stance
+    assert [foot.foot for foot in result.feet] == [stance.foot_from, stance.foot_to]
+    assert sum(foot.least_load for foot in result.feet) == pytest.approx(stance.mass * stance.gravity, rel=0.01)
+    assert result.friction_needed == max(foot.friction_needed for foot in result.feet)
+    assert all(math.isnan(foot.slip) and math.isnan(foot.lift_off) for foot in result.feet)
+    body = quay[2].plant.body_parameters.copy()
+    body[at.FRICTION] = 0.5 * result.friction_needed
+    soap = replace(quay[2], plant=replace(quay[2].plant, body_parameters=body))
+    assert all(0.1 <= foot.slip < 0.5 for foot in ran(quay, trial, design=soap).feet)
+    lumped = ran(rig, trial)
+    assert lumped.feet == ()
+    assert 0.0 < lumped.friction_needed < math.inf
+
+
 @pytest.mark.parametrize("stored", [0.1, -0.2])
 def test_stored_momentum_at_the_start(rig, stored):
     trace = ran(rig, Trial(start=Start(0.01, 0.3, stored)), record=True).trace

@@ -78,6 +78,14 @@ def test_one_unit_needs_no_name():
     assert limit_story(limits(), ["gyros"], 8.4, "torque") == ""
 
 
+def test_a_current_out_of_control_is_told_whenever_it_came():
+    first = limits()
+    first[0, outcome.TORQUE] = 0.1, 0.02
+    first[0, outcome.UNREGULATED] = 0.7, 0.1
+    assert limit_story(first, ["wheel"], 0.3, "torque") == (
+        "torque limit reached at 0.10 s; speed above which the driver no longer holds the current reached at 0.70 s")
+
+
 def test_a_swing_that_stands_has_its_amplitude_and_a_slow_return_has_none():
     """A sine of 5 Hz on a slow return e^{-t/2}: the parabola takes all but 1e-3 of the return, 5 % of the sine at most."""
     swing, back = 0.002 * np.sin(2 * np.pi * 5.0 * TIME), 0.05 * np.exp(-TIME / 2.0)
