@@ -16,7 +16,7 @@ def assumed(result: CheckResult) -> tuple[str, ...]:
     machine = result.machine
     legs = ("The trunk is rigid, the legs give at one massless hinge; margins and trials know of it, the law does not."
             if machine.leg_compliance else "Trunk and legs are rigid: nothing gives, nothing rings.")
-    said = [f"{legs} The two feet stay where they are: what would make one slip or lift is reported, not what comes after it.",
+    said = [f"{legs} The two feet stay where they are: what makes one slip or lift is reported, not what comes after it.",
             "The margins are those of the linear model at the balanced lean; the trials run the full one, with sine gravity "
             "and every stated limit.",
             "A push acts square to the contact line, level with the centre of mass as seen along the line.",

@@ -70,13 +70,12 @@ def ideal_sensor():
     return out
 
 
-def events(lasts, torques=(), jumps=(), release=(0.0, 0.0), longest=1e-4, sensor=None, seed=1, changes=(), spells=(),
-           lever=np.inf):
-    """Return what happens; breaks are gathered here. A row of torques may end early: zeros follow. All act at `lever`."""
+def events(lasts, torques=(), jumps=(), release=(0.0, 0.0), longest=1e-4, sensor=None, seed=1, changes=(), spells=()):
+    """Return what happens; breaks are gathered here. A row of torques may end early: zeros follow, and it is a couple."""
     spans = [r for r in (*torques, *spells)]
     times = {r[0] for r in spans} | {r[1] for r in spans} | {r[0] for r in (*jumps, *changes)} | {release[0]}
     breaks = sorted(t for t in times if 0 < t < lasts)
-    rows = [[*r[:outcome.LEVER], *[0.0] * (outcome.LEVER - len(r)), lever] for r in torques]
+    rows = [[*r, *[0.0] * (outcome.LEVER - len(r)), np.inf][:outcome.TORQUE_SIZE] for r in torques]
     return Events(np.array(rows, float).reshape(-1, outcome.TORQUE_SIZE),
                   np.array(jumps, float).reshape(-1, outcome.JUMP_SIZE), np.array(breaks, float), *release, lasts, longest,
                   ideal_sensor() if sensor is None else sensor, seed,

@@ -157,7 +157,7 @@ def test_a_push_at_the_centre_of_percussion_needs_no_friction():
     percussion = row[at.INERTIA] / (MASS * HEIGHT)
     for lever, needed in ((percussion, 0.0), (percussion / 2, force / 2), (inf, force)):
         height = percussion if lever == inf else lever                           # a couple of the same torque: all of m θ̈ h
-        a, b = feet_of(row, units, 0.004, torques=[[0.0, 1.0, force * height]], lever=lever)
+        a, b = feet_of(row, units, 0.004, torques=[[0.0, 1.0, force * height, *[0.0] * (outcome.LEVER - 3), lever]])
         for foot in (a, b):
             assert foot[outcome.GRIP] == pytest.approx(needed / (MASS * 9.81), rel=2e-4, abs=1e-5)   # it leans 0.1 mrad
 

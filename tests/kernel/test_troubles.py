@@ -23,6 +23,7 @@ T = 0.002
 def row(begin, end, column, level, slope):
     """Return a row of torques that changes the body."""
     out = [0.0] * outcome.TORQUE_SIZE
+    out[outcome.LEVER] = np.inf
     out[outcome.START], out[outcome.END], out[column], out[column + 1] = begin, end, level, slope
     return out
 
