@@ -8,6 +8,7 @@ from balance.api.json_plant import json_plant
 from balance.api.json_recover import json_recover
 from balance.check.records import CheckResult, Verdict
 from balance.stance.compared import bench_against_cad
+from balance.stance.statics import statics_of
 
 
 def json_verdicts(verdicts: tuple[Verdict, ...]) -> Tree:
@@ -21,7 +22,8 @@ def json_check(result: CheckResult) -> Tree:
         "machine": result.machine.machine,
         "design": result.goal.design,
         **json_verdicts(result.verdicts),
-        "plant": json_plant(tuple(d.plant for d in result.designs), bench_against_cad(result.machine)),
+        "plant": json_plant(tuple(d.plant for d in result.designs), bench_against_cad(result.machine),
+                            tuple(statics_of(result.machine, d.plant.stance) for d in result.designs)),
         "gains": json_gains(result.designs),
         "recover": json_recover(result.trials),
     }

@@ -3,15 +3,25 @@
 from __future__ import annotations
 
 from balance.api.json_numbers import Tree, matrix, number, row
-from balance.plant.record import Plant, Unit
+from balance.plant.gyros import holds_lean_rate, needs_link, turn_times, turning
+from balance.plant.record import Plant
 from balance.stance.measured import Disagreement
+from balance.stance.statics import Statics
 
 
-def json_plant(plants: tuple[Plant, ...], measured: tuple[Disagreement, ...] = ()) -> Tree:
-    """Write the plants of one machine; `stances` is a list also for one stance. `measured`: the bench beside CAD."""
+def json_plant(plants: tuple[Plant, ...], measured: tuple[Disagreement, ...] = (),
+               statics: tuple[Statics, ...] = ()) -> Tree:
+    """Write the plants of one machine; `stances` is a list also for one stance.
+
+    `measured`: the bench beside CAD; `statics`: what stands behind each plant, one by one.
+    """
+    rests = {one.stance.name: one for one in statics}
     return {
         "machine": plants[0].machine if plants else "",
-        "stances": [_stance(p) for p in plants],
+        "stances": [{**_stance(p), **json_statics(rests.get(p.stance.name))} for p in plants],
+        "turn_times": [{"unit": unit.name, "from": a, "to": b, "time_s": number(time)}
+                       for i, unit in enumerate(plants[0].units if plants else ())
+                       for (a, b), time in turn_times(plants, i).items()],
         "measured": [_measured(one) for one in measured],
     }
 
@@ -61,7 +71,7 @@ def _stance(plant: Plant) -> Tree:
             "impulse_n_s": number(plant.bounds.impulse),
             "limited_by": plant.bounds.limited_by,
         },
-        "units": [_unit(u) for u in plant.units],
+        "units": [_unit(plant, i) for i in range(len(plant.units))],
         "model": {
             "states": list(plant.model.states),
             "inputs": list(plant.model.inputs),
@@ -84,7 +94,26 @@ def _legs(plant: Plant) -> Tree | None:
     }
 
 
-def _unit(unit: Unit) -> Tree:
+def json_statics(one: Statics | None) -> Tree:
+    """Write joint angles, the margins with all feet down and the shift to balance of one stance."""
+    if one is None:
+        return {}
+    support, words = one.support, ("swing_rad", "hip_rad", "knee_rad")
+    return {
+        "joints": {leg: {word: number(angle) for word, angle in zip(words, angles, strict=False)}
+                   for leg, angles in one.stance.joints.items()},
+        "all_feet_down": None if support is None else {
+            "margins": [{"from": e.foot_from, "to": e.foot_to, "margin_m": number(e.margin)} for e in support.edges],
+            "least_margin_m": number(support.margin)},
+        "all_feet_down_reason": one.unsupported,
+        "shift_to_balance_m": number(one.shift.distance),
+        "shift_reached": one.shift.reached,
+        "shift_reason": one.shift.reason,
+    }
+
+
+def _unit(plant: Plant, i: int) -> Tree:
+    unit, table, held = plant.units[i], turning(plant, i), holds_lean_rate(plant.unit_parameters[i])
     return {
         "name": unit.name,
         "kind": unit.kind,
@@ -93,4 +122,11 @@ def _unit(unit: Unit) -> Tree:
         "spin_inertia_kg_m2": number(unit.inertia),
         "momentum_capacity_n_m_s": number(unit.momentum_capacity),
         "torque_limit_n_m": number(unit.torque_limit),
+        "energy_j": number(unit.energy),
+        "spin_up_s": number(unit.spin_up),
+        "drive_holds_lean_rate_rad_s": number(held),
+        "needs_link": needs_link(plant, i),
+        "turntable": None if table is None else {
+            "rate_rad_s": number(table.rate), "couple_level_n_m": number(table.level),
+            "couple_at_stops_n_m": number(table.stops), "share_of_lighter_foot": number(table.share)},
     }

@@ -42,11 +42,13 @@ def run_plant(asked: argparse.Namespace, progress: Progress) -> Outcome:
     from balance.api.plant import plant
     from balance.cli.show_plant import show_plant
     from balance.stance.compared import bench_against_cad
+    from balance.stance.statics import statics_of
 
     plants = plant(body.machine, body.stances, body.fell)
     code = MET if all(p.acts for p in plants) else UNMET
     measured = bench_against_cad(body.machine)
-    text, answer = show_plant(plants, measured), json_plant(plants, measured)
+    statics = tuple(statics_of(body.machine, p.stance) for p in plants)
+    text, answer = show_plant(plants, measured, statics), json_plant(plants, measured, statics)
     if asked.figure:
         from balance.api.report import figure
 

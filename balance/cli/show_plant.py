@@ -9,21 +9,47 @@ from balance.cli.colour import NOT_MET
 from balance.cli.words import folded, side_by_side
 from balance.plant.record import Plant, Unit
 from balance.report.amounts import amount, share
+from balance.report.at_rest import at_rest_table, gyro_table, joint_table, link_cautions, turn_table
 from balance.report.facts import leg_words
+from balance.report.tables import Table
 from balance.stance.measured import Disagreement
+from balance.stance.statics import Statics
 
 CANNOT = "cannot act about this line"
 
 
-def show_plant(plants: tuple[Plant, ...], measured: tuple[Disagreement, ...] = ()) -> str:
-    """Return the text of the answer: the stances side by side, each stabiliser about each line, the bench beside CAD."""
+def show_plant(plants: tuple[Plant, ...], measured: tuple[Disagreement, ...] = (),
+               statics: tuple[Statics, ...] = ()) -> str:
+    """Return the text of the answer: the stances side by side, each stabiliser about each line, the bench beside CAD.
+
+    `statics` go with `plants` one by one; without them nothing is said of legs and of all feet down.
+    """
     head = f"{plants[0].machine}: standing on two feet, free to topple about the line through them"
     notes = [
         folded(f"{NOT_MET}: {p.stance.name}: the stabilisers {CANNOT} (every one is square to it)")
         for p in plants
         if not p.acts
     ]
-    return "\n\n".join([folded(head), _stances(plants), _units(plants), *_bench(measured), *notes, SIGNS])
+    notes += [folded(f"caution: {words}") for words in link_cautions(plants)]
+    parts = [_stances(plants), *_at_rest(statics), _units(plants), *_gyros(plants), *_bench(measured)]
+    return "\n\n".join([folded(head), *parts, *notes, SIGNS])
+
+
+def _at_rest(statics: tuple[Statics, ...]) -> list[str]:
+    """Joint angles and margins; nothing for a machine given by three numbers."""
+    told = [table for table in (at_rest_table(statics), joint_table(statics)) if table is not None]
+    return [_plain(table) for table in told]
+
+
+def _gyros(plants: tuple[Plant, ...]) -> list[str]:
+    """What flywheels in gimbals ask of drive, motor, turntable and feet; nothing for wheels."""
+    return [_plain(table) for table in (gyro_table(plants), turn_table(plants)) if table is not None]
+
+
+def _plain(table: Table) -> str:
+    """A report's table as text, its note under it."""
+    body = text_table(list(table.head), [[row.label, *row.cells] for row in table.rows], "l" + "r" * (len(table.head) - 1))
+    return f"{table.caption}\n{body}" + (f"\n\n{folded(table.note)}" if table.note else "")
 
 
 def _bench(measured: tuple[Disagreement, ...]) -> list[str]:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from math import inf, sqrt
+from math import inf, log, sqrt
 
 from balance.machine.motors import Gear, Motor, Supply
 
@@ -57,6 +57,20 @@ class Drive:
     def time_constant(self, inertia: float) -> float:
         """Return how fast speed settles at a fixed voltage in s, for the `inertia` that turns with the wheel (kg·m²)."""
         return inertia * self.slope
+
+    def spin_up(self, inertia: float, speed: float) -> float:
+        """Return the time from rest to `speed` (rad/s) in s with `inertia` (kg·m²), drag left out; inf where it cannot.
+
+        All the current there is, then down the line of torque against speed.
+        """
+        if self.voltage == inf:
+            return inertia * speed / self.stall_torque
+        kink = self.no_load_speed - self.slope * self.stall_torque
+        time = inertia * min(speed, kink) / self.stall_torque
+        if speed <= kink:
+            return time
+        left = (self.no_load_speed - speed) / (self.no_load_speed - kink)
+        return time - self.time_constant(inertia) * log(left) if left > 0.0 else inf
 
     def torque_at(self, speed: float) -> float:
         """Return the torque in N·m still available in the sense of turning at `speed` ≥ 0 (rad/s)."""

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from math import nan
 
 import numpy as np
 from numpy.typing import NDArray
@@ -49,6 +50,10 @@ class Unit:
     gimbal_axis_T: Array | None  # (3,)
     at_T: Array                  # (3,)
     bias_speed: float = 0.0      # rad/s the law keeps a wheel turning at
+    energy: float = 0.0          # J in all its flywheels at their spin speed; wheels: at their top speed
+    spin_up: float = nan         # s to the spin speed by its own motor; NaN: no spin motor is stated
+    turn_rate: float = 0.0       # rad/s of its turntable; 0: it stands on none
+    linked: bool = False         # the two gimbals of a pair are geared to each other
 
 
 @dataclass(frozen=True)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from math import inf, log, sin, sqrt
+from math import inf, log, nan, sin, sqrt
 
 import numpy as np
 from numpy.typing import NDArray
@@ -29,7 +29,7 @@ def on_line(machine: Machine, name: str, stabiliser: Stabiliser, e_T: Array) -> 
     """Return one stabiliser's record and kernel row (UNIT_SIZE,) for the line direction `e_T` (3,), trunk frame."""
     if isinstance(stabiliser, ReactionWheel):
         return _wheel(machine, name, stabiliser, e_T)
-    return _gimballed(name, stabiliser, e_T)
+    return _gimballed(machine, name, stabiliser, e_T)
 
 
 def _wheel(machine: Machine, name: str, wheel: ReactionWheel, e_T: Array) -> tuple[Unit, Array]:
@@ -52,9 +52,10 @@ def _wheel(machine: Machine, name: str, wheel: ReactionWheel, e_T: Array) -> tup
     top = min(wheel.speed_limit, drive.no_load_speed)
     if wheel.gear is not None and wheel.gear.backlash > 0.0:
         put_play(row, wheel.gear, inertia, most)
-    return Unit(name, "reaction wheel", "torque", share, inertia.wheel + inertia.motor * inertia.ratio**2,
-                abs(row[at.COUPLING]) * top, abs(row[at.COUPLING]) / inertia.own * most, most, top, drive.bandwidth,
-                axis, None, np.array(wheel.at), wheel.bias_speed), row
+    turning = inertia.wheel + inertia.motor * inertia.ratio**2
+    return Unit(name, "reaction wheel", "torque", share, turning, abs(row[at.COUPLING]) * top,
+                abs(row[at.COUPLING]) / inertia.own * most, most, top, drive.bandwidth, axis, None, np.array(wheel.at),
+                wheel.bias_speed, energy=0.5 * turning * top**2), row
 
 
 FLANK_DAMPING = 0.3
@@ -84,7 +85,7 @@ def supply_row(machine: Machine) -> Array | None:
     return row
 
 
-def _gimballed(name: str, flywheel: GimballedFlywheel, e_T: Array) -> tuple[Unit, Array]:
+def _gimballed(machine: Machine, name: str, flywheel: GimballedFlywheel, e_T: Array) -> tuple[Unit, Array]:
     """Return a gimballed unit; its frame's principal axes are taken along gimbal axis, spin axis and their normal."""
     s_T, g_T, R = faced_axes(flywheel, e_T)
     rotor, gimbal = rotor_mass(flywheel.rotor), flywheel.gimbal
@@ -112,7 +113,23 @@ def _gimballed(name: str, flywheel: GimballedFlywheel, e_T: Array) -> tuple[Unit
     return Unit(name, "scissored pair" if pair else "gimballed flywheel", "rate" if servo else "torque", acting,
                 rotor.spin, line_momentum * sin(gimbal.angle_limit), line_momentum * gimbal.rate_limit,
                 gimbal.rate_limit if servo else gimbal.torque_limit, gimbal.angle_limit,
-                row[at.RATE_LAG] if servo else inf, s_T, g_T, np.array(flywheel.at)), row
+                row[at.RATE_LAG] if servo else inf, s_T, g_T, np.array(flywheel.at),
+                energy=0.5 * row[at.COUNT] * rotor.spin * flywheel.spin_speed**2,
+                spin_up=_spin_up(machine, flywheel, rotor.spin), turn_rate=_turn_rate(flywheel),
+                linked=isinstance(flywheel, ScissoredPair) and flywheel.linked), row
+
+
+def _spin_up(machine: Machine, flywheel: GimballedFlywheel, spin: float) -> float:
+    """Return the time in s in which its own motor brings one flywheel to its speed; NaN where none is stated."""
+    motor = (machine.motors or {}).get(flywheel.spin_motor or "")
+    if motor is None:
+        return nan
+    return drive_of(motor, None, machine.supply).spin_up(spin + motor.rotor_inertia, flywheel.spin_speed)
+
+
+def _turn_rate(flywheel: GimballedFlywheel) -> float:
+    table = flywheel.mount.turntable if flywheel.mount else None
+    return table.rate_limit if table else 0.0
 
 
 def discounted(row: Array, pole: float) -> float:

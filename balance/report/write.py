@@ -9,8 +9,10 @@ from balance.check.records import CheckResult
 from balance.design.records import Design
 from balance.design.robustness.one_law import compared
 from balance.machine.machine import Machine
+from balance.plant.record import Plant
 from balance.report import page as html
 from balance.report.assumed import assumed, unchecked
+from balance.report.at_rest import at_rest_table, gyro_table, joint_table, link_cautions, turn_table
 from balance.report.cautions import cautions
 from balance.report.facts import bench_table, machine_table, trial_table, unit_table
 from balance.report.figures.bode import draw_bode
@@ -31,6 +33,7 @@ from balance.report.seal import free_place
 from balance.report.told import told
 from balance.report.verdicts import headline, tally, verdict_tables
 from balance.stance.compared import bench_against_cad
+from balance.stance.statics import statics_of
 
 PAGE = "report.html"
 
@@ -56,6 +59,7 @@ def compose(result: CheckResult) -> str:
     if designs:
         plants, measured = tuple(design.plant for design in designs), bench_against_cad(result.machine)
         sections.append(("machine", "The machine", "", [html.table(machine_table(plants)), html.table(unit_table(plants)),
+                          *_behind(result.machine, plants),
                           *([html.table(bench_table(measured))] if measured else [])]))
         sections.append(("margins", "Margins", "", _margins(result.machine, designs, pictures)))
     for i, (design, loop) in enumerate(zip(designs, pictures, strict=True)):
@@ -70,6 +74,14 @@ def compose(result: CheckResult) -> str:
         parts += [html.heading(words, anchor, kind), *inside]
     title = f"{result.goal.design}: does the balance assist hold {result.machine.machine}?"
     return html.page(title, parts, [(anchor, words) for anchor, words, _, _ in sections])
+
+
+def _behind(machine: Machine, plants: tuple[Plant, ...]) -> list[str]:
+    """Return what stands behind the dynamics: legs at rest, all feet down, and what flywheels ask of the rest."""
+    statics = tuple(statics_of(machine, plant.stance) for plant in plants)
+    tables = (at_rest_table(statics), joint_table(statics), gyro_table(plants), turn_table(plants))
+    return [*(html.table(table) for table in tables if table is not None),
+            *(html.paragraph(f"Caution: {words}.", "note") for words in link_cautions(plants))]
 
 
 def _verdicts(result: CheckResult) -> list[str]:

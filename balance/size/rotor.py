@@ -7,7 +7,7 @@ hub or spider that must carry a ring are not counted.
 from __future__ import annotations
 
 from dataclasses import dataclass
-from math import inf, log
+from math import inf
 
 import numpy as np
 from numpy.typing import NDArray
@@ -118,15 +118,7 @@ def _drive(question: Question, candidate: Candidate) -> Drive:
 def _spin_up(question: Question, candidate: Candidate, spin: float) -> float:
     """Return the time to 98 % of the top speed in s: constant torque, then the motor's line; inf where it cannot."""
     drive, motor = _drive(question, candidate), (question.parts.motors or {})[candidate.motor]
-    inertia, goal = spin + candidate.ratio**2 * motor.rotor_inertia, NEAR_TOP * candidate.speed
-    if drive.voltage == inf:
-        return inertia * goal / drive.stall_torque
-    kink = drive.voltage / drive.back_emf - drive.slope * drive.stall_torque
-    time = inertia * min(goal, kink) / drive.stall_torque
-    if goal <= kink:
-        return time
-    left = (drive.no_load_speed - goal) / (drive.no_load_speed - kink)
-    return time - drive.time_constant(inertia) * log(left) if left > 0.0 else inf
+    return drive.spin_up(spin + candidate.ratio**2 * motor.rotor_inertia, NEAR_TOP * candidate.speed)
 
 
 def _heat(question: Question, candidate: Candidate, rms_torque: float, air: float) -> tuple[float, float]:

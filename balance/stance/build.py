@@ -44,11 +44,15 @@ def build_stance(machine: Machine, name: str) -> Stance:
     check_rotors(machine)
     if machine.lumped is not None:
         return lumped_stance(machine, machine.lumped)
-    plans = machine.stances or {}
-    stance = stand(machine, name, plans[name])
+    return stand_as_built(machine, name, (machine.stances or {})[name])
+
+
+def stand_as_built(machine: Machine, name: str, plan: StancePlan) -> Stance:
+    """Return the machine standing as `plan` says, with what the bench measured of it in place of CAD."""
+    stance = stand(machine, name, plan)
     if machine.measured is None:
         return stance
-    cad = stand(machine, machine.measured.pose, plans[machine.measured.pose])
+    cad = stand(machine, machine.measured.pose, (machine.stances or {})[machine.measured.pose])
     bench = bench_of(machine, machine.measured, cad)
     real = corrected(stance, correction(cad, measured_stance(cad, bench)))
     refuse_unphysical(machine, real)
@@ -56,7 +60,7 @@ def build_stance(machine: Machine, name: str) -> Stance:
 
 
 def stand(machine: Machine, name: str, plan: StancePlan) -> Stance:
-    """Return the machine standing as `plan` says (errors as `build_stance`)."""
+    """Return the machine standing as `plan` says, by its parts alone (errors as `build_stance`)."""
     check_feet(machine, name, plan)
     R_WT, p_WT = turned(*plan.trunk.turn), np.array(plan.trunk.at)
     a, b = contact_line(plan)

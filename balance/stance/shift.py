@@ -8,7 +8,7 @@ import numpy as np
 
 from balance.base.errors import InputError
 from balance.machine.machine import Machine
-from balance.stance.build import stand
+from balance.stance.build import stand_as_built
 from balance.stance.record import Stance
 
 ROUNDS = 20
@@ -52,4 +52,4 @@ def shift_to_balance(machine: Machine, stance: Stance) -> BalanceShift:
 def _moved(machine: Machine, stance: Stance, distance: float) -> Stance:
     plan = (machine.stances or {})[stance.name]
     x, y, z = (float(c) for c in np.array(plan.trunk.at) + distance * stance.w_W)
-    return stand(machine, stance.name, replace(plan, trunk=replace(plan.trunk, at=(x, y, z))))
+    return stand_as_built(machine, stance.name, replace(plan, trunk=replace(plan.trunk, at=(x, y, z))))

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from balance.machine.machine import Machine, StancePlan
 from balance.maths.hull import hull_order
-from balance.stance.build import stand
+from balance.stance.build import stand_as_built
 from balance.stance.record import Stance
 
 Array = NDArray[np.float64]
@@ -51,7 +51,7 @@ def all_down(machine: Machine, stance: Stance) -> Support:
         return Support(contacts, stance.com_W, (), {})
     plan = (machine.stances or {})[stance.name]
     lowered = lowered_feet(plan, stance)
-    standing = stand(machine, stance.name, replace(plan, lifted=lowered))
+    standing = stand_as_built(machine, stance.name, replace(plan, lifted=lowered))
     contacts = {foot: np.array(at) for foot, at in (plan.down | lowered).items()}
     return Support(contacts, standing.com_W, support_edges(contacts, standing.com_W), standing.joints)
 
