@@ -124,13 +124,14 @@ def _any_part(name: str, part: object) -> str:
 
 def _wheel(machine: Machine, name: str, wheel: ReactionWheel, _: object) -> tuple[str, dict[str, dict[str, float]]]:
     """Return wheel and motor rotor, each on its own joint; the gear is in the column."""
-    spin, across = rotor_moments(wheel.rotor)
+    gear, (spin, across) = wheel.gear, rotor_moments(wheel.rotor)
     J, frame = machine.motors[wheel.motor].rotor_inertia, _frame(wheel.axis)
     joint = '<joint name="{}" type="hinge" axis="0 0 1"/>'
+    if gear is not None and gear.includes_rotor:             # what was measured at the wheel is wheel and rotor together
+        spin -= gear.ratio**2 * J
     thin = J / 2 * (1 + 1e-12)                               # a disc's own two are just half; rounding must not refuse it
     text = _body(f"{name}.wheel", wheel.at, frame, wheel.rotor.mass, [across, across, spin], joint.format(name))
     text += _body(f"{name}.rotor", wheel.at, frame, NOTHING, [thin, thin, J], joint.format(f"{name}.motor"))
-    gear = wheel.gear
     turns = 1.0 if gear is None else gear.ratio * (1.0 if gear.sense == "same" else -1.0)
     return text, {name: {name: 1.0, f"{name}.motor": turns}}
 

@@ -14,6 +14,7 @@ from balance.machine.stabilisers import Drag, ReactionWheel, Stabiliser
 from balance.plant.build import build_plant
 from balance.plant.record import Plant
 from balance.stance.build import build_stance
+from balance.stance.rotors import rotor_mass
 from tests.property.machines import random_machine
 
 
@@ -30,6 +31,17 @@ def random_drive(rng: np.random.Generator, unit: Stabiliser) -> Stabiliser:
     axes = np.column_stack([s, np.cross(g, s), g])                   # a frame symmetric about the planes of its axes
     F = axes @ np.diag(rng.uniform(5e-3, 9e-3, 3)) @ axes.T
     return replace(unit, gimbal=gimbal, frame_inertia=Tensor(F[0, 0], F[1, 1], F[2, 2], F[0, 1], F[0, 2], F[1, 2]))
+
+
+def with_its_motor(rng: np.random.Generator, machine: Machine, unit: Stabiliser) -> Stabiliser:
+    """Say of some geared wheels that their inertia was measured with the motor behind the gear, where it can have been."""
+    weighed = rng.random() < 0.5
+    if not weighed or not isinstance(unit, ReactionWheel) or unit.gear is None:
+        return unit
+    behind = unit.gear.ratio**2 * machine.motors[unit.motor].rotor_inertia
+    if behind > 0.7 * rotor_mass(unit.rotor).spin:
+        return unit
+    return replace(unit, gear=replace(unit.gear, includes_rotor=True))
 
 
 def random_plant_on_legs(seed: int) -> tuple[Machine, Plant]:
@@ -55,5 +67,7 @@ def random_plant(seed: int) -> tuple[Machine, Plant]:
     rng = np.random.default_rng(seed)
     machine = random_machine(rng)
     units = {name: random_drive(rng, unit) for name, unit in machine.stabilisers.items()}
+    weighed = np.random.default_rng((seed, 1))
+    units = {name: with_its_motor(weighed, machine, unit) for name, unit in units.items()}
     machine = replace(machine, stabilisers=units)
     return machine, build_plant(machine, build_stance(machine, "s"))
