@@ -155,8 +155,9 @@ def test_several_stances_fold_but_open_in_print():
     result = answer("scout-wheels", "on-fore-left")
     (one,) = result.designs
     other = replace(one, plant=replace(one.plant, stance=replace(one.plant.stance, name="on-two")))
-    both = replace(result, designs=(one, other), verdicts=(*result.verdicts, *(replace(v, stance="on-two", passed=False)
-                                                                              for v in result.verdicts)))
+    stances = {**result.machine.stances, "on-two": result.machine.stances["on-fore-left"]}
+    twice = (*result.verdicts, *(replace(v, stance="on-two", passed=False) for v in result.verdicts))
+    both = replace(result, machine=replace(result.machine, stances=stances), designs=(one, other), verdicts=twice)
     text = compose(both)
     said = words(text)
     assert said.index("Requirements by stance") < said.index("Not met") < said.index("on-fore-left: all")
