@@ -7,6 +7,7 @@ from balance.check.records import Verdict
 from balance.cli.words import closing, failures, folded
 from balance.design.records import Design
 from balance.report.amounts import amount, share
+from balance.report.facts import settled
 from balance.report.ground import each_foot
 from balance.simulate.records import TrialResult
 
@@ -30,7 +31,7 @@ def trial_table(design: Design, trials: tuple[TrialResult, ...]) -> str:
             t.toward,
             t.verdict,
             amount(t.peak_lean, "rad"),
-            _settled(t),
+            settled(t),
             amount(t.peak_torque, "N*m"),
             share(t.momentum_used),
         ]
@@ -49,7 +50,3 @@ def _met_on_the_way(trials: tuple[TrialResult, ...]) -> dict[str, list[str]]:
         if trial.reason and trial.verdict == "recovered":
             met.setdefault(trial.reason, []).append(f"{trial.name} {trial.toward}")
     return met
-
-
-def _settled(trial: TrialResult) -> str:
-    return amount(trial.settling_time, "s") if trial.settling_time < float("inf") else "never"

@@ -157,7 +157,8 @@ class Varies:
     """What legs or a load that move by themselves change over time, as [time, change] points from 0 on.
 
     Each is added to the stance's own value, straight between points, the last one stays: J (every rotor locked),
-    G_s = m g h and G_c = m g δ, and a torque about the line. A changing J takes J̇ θ̇ from the lean.
+    G_s = m g h and G_c = m g δ, and a torque about the line. A changing J takes J̇ θ̇ from the lean. The feet's loads leave
+    out the force that moves the centre of mass so.
     """
 
     inertia: Table | None = place(_over_time("inertia", "change of J over time"), None)

@@ -49,7 +49,8 @@ SUPPLY = 9           # the supply gives no more current
 OVERVOLTAGE = 10     # the bus takes no more of what braking gives back
 FORCED = 11          # back-EMF above the bus voltage: the wheel is braked, whatever is asked
 UNREGULATED = 12     # back-EMF above bus voltage and R i_max: the current is out of the driver's control
-LIMITS = 13
+SENSOR = 13          # gyro or accelerometer beyond its range (last row)
+LIMITS = 14
 
 # columns of a recorded sample
 TIME = 0

@@ -57,7 +57,7 @@ from balance.kernel.layout import (
     WHEEL,
 )
 from balance.kernel.legs import hinge_moves, legs_mass, legs_row, on_legs_of
-from balance.kernel.sensing import digitised, scrambled
+from balance.kernel.sensing import digitised, out_of_range, scrambled
 from balance.kernel.stops import rates_now, release_stops, run_piece
 from balance.kernel.supply import bus_row, most_power
 from balance.kernel.tick import law_tick, measure, reads_sensor, servo_steps, share_out
@@ -130,6 +130,8 @@ def sense(X: Array, start: float, sample: int, units: Array, law: LawArrays, eve
         rates_now(X, start, work)
         acceleration = numbers[RATE, 1]
         hinge = hinge_moves(X, numbers[RATE], units)[2:]
+        if out_of_range(X, acceleration, hinge, work.body, events.sensor):
+            note(start, output.history[sample, 1], units.shape[0], outcome.SENSOR, output.first)
     measure(X, acceleration, hinge, work.body, law.places, events.sensor, events.seed, sample, numbers[MEASURED])
     for j in range(law.resting.size):
         numbers[MEASURED, j] -= law.resting[j]

@@ -68,19 +68,36 @@ def read_gyro(lean_rate: float, sensor: Array, seed: int, sample: int) -> float:
     return float(digitised(value, sensor[GYRO_STEP], sensor[GYRO_RANGE]))
 
 
+@njit(cache=True, error_model="numpy", forceinline=True)
+def specific_force(X: Array, acceleration: float, hinge: tuple[float, float], body: Array,
+                   sensor: Array) -> tuple[float, float]:
+    """Return what an accelerometer without faults shows along w and u in m/s².
+
+    At the place r u + s w of the leaning body: along w: -g sin θ + r θ̈ - s θ̇²; along u: g cos θ - s θ̈ - r θ̇².
+    `hinge`: what the hinge of legs that give adds in the world's axes, m/s² (`legs.hinge_moves`).
+    """
+    g, r, s = body[GRAVITY], sensor[UP], sensor[ACROSS]
+    sine, cosine = np.sin(X[0]), np.cos(X[0])
+    across = -(g + hinge[1]) * sine + hinge[0] * cosine + r * acceleration - s * X[1] ** 2
+    return across, (g + hinge[1]) * cosine + hinge[0] * sine - s * acceleration - r * X[1] ** 2
+
+
+@njit(cache=True, error_model="numpy")
+def out_of_range(X: Array, acceleration: float, hinge: tuple[float, float], body: Array, sensor: Array) -> bool:
+    """Return whether gyro or accelerometer would have to show more than they can, noise apart."""
+    across, up = specific_force(X, acceleration, hinge, body, sensor)
+    return bool(abs(X[1] + sensor[GYRO_BIAS]) > sensor[GYRO_RANGE] or max(abs(across), abs(up)) > sensor[ACCEL_RANGE])
+
+
 @njit(cache=True, error_model="numpy")
 def read_tilt(X: Array, acceleration: float, hinge: tuple[float, float], body: Array, sensor: Array, seed: int,
               sample: int) -> float:
     """Return the lean in rad that the accelerometer shows, counted from the balanced lean.
 
-    Specific force at the place r u + s w of the leaning body: along w: -g sin θ + r θ̈ - s θ̇²; along u: g cos θ - s θ̈
-    - r θ̇²; the tilt is the angle between them. Near the upright: θ - r θ̈/g (the faster the fall is caught, the more
-    it lies).  `hinge`: what the hinge of legs that give adds in the world's axes, m/s² (`legs.hinge_moves`).
+    The tilt is the angle of the specific force. Near the upright: θ - r θ̈/g (the faster the fall is caught, the more it
+    lies).
     """
-    g, r, s = body[GRAVITY], sensor[UP], sensor[ACROSS]
-    sine, cosine = np.sin(X[0]), np.cos(X[0])
-    across = -(g + hinge[1]) * sine + hinge[0] * cosine + r * acceleration - s * X[1] ** 2
-    up = (g + hinge[1]) * cosine + hinge[0] * sine - s * acceleration - r * X[1] ** 2
+    across, up = specific_force(X, acceleration, hinge, body, sensor)
     if sensor[ACCEL_NOISE] > 0.0:
         across += sensor[ACCEL_NOISE] * normal(seed, sample, 1)
         up += sensor[ACCEL_NOISE] * normal(seed, sample, 2)

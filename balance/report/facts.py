@@ -9,7 +9,11 @@ from balance.plant.record import Plant, Unit
 from balance.report.amounts import MINUS, amount, figure, fixed, share, speed
 from balance.report.tables import Row, Table
 from balance.simulate.records import TrialResult
+from balance.simulate.story import SETTLED_LEAST
 from balance.stance.measured import Disagreement
+
+SEEN = 0.1 * SETTLED_LEAST
+"""rad: a standing swing from here on is worth telling: a tenth of the band that counts as settled."""
 
 NOTE = ("Lean is measured from the balanced lean, positive outward: away from the lifted feet. “Best possible” is the "
         "closed form for the all-out manoeuvre of the linear machine, without delay and noise; no controller does better.")
@@ -114,11 +118,17 @@ def trial_table(trials: tuple[TrialResult, ...]) -> Table:
                  "Settling counts from the trial's last event. Friction is what the worse foot needs.", wordy=True)
 
 
+def settled(t: TrialResult) -> str:
+    """Say when the lean has settled, and what swing is left that a person could see or hear."""
+    when = amount(t.settling_time, "s") if math.isfinite(t.settling_time) else "never"
+    swings = math.isfinite(t.standing_swing) and t.standing_swing > SEEN
+    return f"{when}, ±{amount(t.standing_swing, 'rad')} left" if swings else when
+
+
 def trial_cells(t: TrialResult) -> tuple[str, ...]:
     """One trial's numbers."""
-    settled = amount(t.settling_time, "s") if math.isfinite(t.settling_time) else "never"
     draw = (amount(t.peak_bus_power, "W"), *((amount(t.peak_current, "A"),) if t.peak_current else ()))
-    return (t.verdict, amount(t.peak_lean, "rad"), settled, amount(t.peak_torque, "N*m"),
+    return (t.verdict, amount(t.peak_lean, "rad"), settled(t), amount(t.peak_torque, "N*m"),
             amount(t.torque_saturated, "s") if t.torque_saturated else "–", share(t.momentum_used),
             amount(t.rms_torque, "N*m"), ", ".join(draw),
             figure(t.friction_needed, 2) + (", feet lift" if t.lift_off else ""), t.reason or "–")

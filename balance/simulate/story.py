@@ -26,6 +26,7 @@ WORDS = {
     outcome.DRIVE: "strength of the gimbal drive", outcome.STOP: "gimbal stop",
     outcome.SUPPLY: "supply's current limit", outcome.OVERVOLTAGE: "bus overvoltage limit",
     outcome.FORCED: "speed at which the bus brakes the wheel by itself",
+    outcome.SENSOR: "range of gyro or accelerometer",
     outcome.UNREGULATED: "speed above which the driver no longer holds the current",
 }
 FULL = (outcome.VOLTAGE, outcome.SPEED, outcome.STOP)

@@ -109,3 +109,17 @@ def test_noise_of_a_trial_depends_on_its_seed_alone():
 
     np.testing.assert_array_equal(commands(5), commands(5))
     assert np.abs(commands(5) - commands(6)).max() > 0.01
+
+
+@pytest.mark.parametrize(("place", "most", "sample"), [
+    (sensing.GYRO_RANGE, 0.0321, 17), (sensing.GYRO_RANGE, np.inf, None),        # θ̇ = 1 rad/s² × 2 ms × sample
+    (sensing.ACCEL_RANGE, 0.29, 1), (sensing.ACCEL_RANGE, 0.31, None)])          # r θ̈ = 0.3 m/s², as soon as it acts
+def test_a_sensor_beyond_its_range_is_told_with_its_time(place, most, sample):
+    sensor = ideal_sensor()
+    sensor[[sensing.UP, place]] = 0.3, most
+    still = body(inertia=0.354, stiffness=1e-300, mass=1.0, height=1.0)
+    torque = 0.354 - 4e-3                                                        # the wheel turns freely
+    control = law(gains=(0.0, 0.0), places=(0, sensing.GYRO))
+    ran = run(still, wheel(), control, events(0.05, [[0.0, 1.0, torque]], sensor=sensor))
+    told = ran.first[-1, outcome.SENSOR, 0]
+    assert told == (np.inf if sample is None else pytest.approx(0.002 * sample, abs=1e-12))

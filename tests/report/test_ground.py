@@ -1,10 +1,11 @@
-"""The feet's table: the worst of each foot over the trials, and what lifted or slipped first."""
+"""What trials leave behind, in words: the feet's table, what lifted or slipped first, the swing that stays."""
 
 from __future__ import annotations
 
 from dataclasses import replace
-from math import nan
+from math import inf, nan, radians
 
+from balance.report.facts import settled
 from balance.report.ground import foot_table
 from balance.simulate.records import FootLoad
 
@@ -23,3 +24,10 @@ def test_worst_of_each_foot_and_the_first_to_slip(answered):
 
 def test_no_table_where_nothing_is_known_of_the_feet(answered):
     assert foot_table(answered("bench-rig", "line").trials) is None
+
+
+def test_a_swing_that_stays_is_told_where_it_can_be_seen(answered):
+    one = replace(answered("bench-rig", "line").trials[0], settling_time=1.25)
+    told = [settled(replace(one, standing_swing=radians(swing))).replace("\xa0", " ") for swing in (0.04, 0.004)]
+    assert told == ["1.25 s, ±0.0400° left", "1.25 s"]
+    assert settled(replace(one, settling_time=inf, standing_swing=inf)) == "never"
