@@ -19,6 +19,7 @@ def _trial(trial: TrialResult) -> Tree:
         "verdict": trial.verdict,
         "reason": trial.reason,
         "peak_lean_rad": number(trial.peak_lean),
+        "peak_lean_rate_rad_s": number(trial.peak_lean_rate),
         "settling_time_s": number(trial.settling_time),
         "peak_torque_n_m": number(trial.peak_torque),
         "torque_saturated_s": number(trial.torque_saturated),

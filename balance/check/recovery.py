@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Sequence
 
+from balance.check.gyros import judge_gyros
 from balance.check.records import Verdict
 from balance.check.rescue import what_it_needs
 from balance.design.records import Design
@@ -77,6 +78,7 @@ def worst_cases(goal: Goal, design: Design, trials: Sequence[TrialResult]) -> li
         verdicts.append(_worst("standing_swing", trials, lambda r: r.standing_swing, "rad", require.standing_swing,
                                lambda r, v, lim: f"{_which(r)} keeps swinging {math.degrees(v - lim):.2g}° too far"
                                if math.isfinite(v) else f"{_which(r)} does not stand at the end ({r.verdict})"))
+    verdicts += judge_gyros(design, trials)
     return verdicts + feet_verdicts(plant.stance.name, trials, require.friction_needed is not None)
 
 

@@ -118,6 +118,7 @@ def watch(t: float, h: float, X: Array, dX: Array, body: Array, units: Array, me
     stored = line_momentum(X, units)
     power, current = bus_power(X, dX, units)
     metrics[outcome.PEAK_LEAN] = max(metrics[outcome.PEAK_LEAN], abs(X[0] - body[BALANCED]))
+    metrics[outcome.PEAK_RATE] = max(metrics[outcome.PEAK_RATE], abs(X[1]))
     metrics[outcome.PEAK_TORQUE] = max(metrics[outcome.PEAK_TORQUE], abs(torque))
     metrics[outcome.PEAK_MOMENTUM] = max(metrics[outcome.PEAK_MOMENTUM], abs(stored))
     metrics[outcome.PEAK_CURRENT] = max(metrics[outcome.PEAK_CURRENT], current)

@@ -25,8 +25,9 @@ SAMPLES = 10         # samples taken, the start included
 PEAK_BUS = 11        # V, highest bus voltage
 DEEPEST_SAG = 12     # V, most by which the bus stood below the open-circuit voltage
 PEAK_SUPPLY = 13     # A, from the supply
-FEET = 14            # foot a, then foot b, each with the four below; feet that are looked at together: the first
-METRIC_SIZE = 22
+PEAK_RATE = 14       # rad/s, largest lean rate
+FEET = 15            # foot a, then foot b, each with the four below; feet that are looked at together: the first
+METRIC_SIZE = 23
 
 # of one foot
 LEAST_LOAD = 0       # N, least normal force

@@ -13,7 +13,7 @@ from balance.report.verdicts import judged_value, limit_words, spoken
 LOOP = ("stable_loop", "phase_margin", "gain_margin_lower", "gain_margin_upper", "delay_margin", "modulus_margin",
         "disk_margin", "peak_sensitivity", "offset_error")
 OVER_TRIALS = ("momentum_used", "peak_lean", "settling_time", "friction_needed", "standing_swing", "feet_on_ground",
-               "feet_grip")
+               "feet_grip", "gimbal_push_back", "turning_unloads")
 
 
 @dataclass(frozen=True)

@@ -46,6 +46,7 @@ class TrialResult:
     verdict: str                # "recovered" | "touched down" | "fell outward" | "fell inward" | "did not settle"
     reason: str                 # which limit was met first and when, in words; "" when none
     peak_lean: float            # rad, |lean|
+    peak_lean_rate: float       # rad/s, |lean rate|
     settling_time: float        # s after the last scheduled event; inf when it never settled
     peak_torque: float          # N·m about the line
     torque_saturated: float     # s spent at the torque limit

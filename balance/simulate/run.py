@@ -132,7 +132,7 @@ def _result(design: Design, name: str, event: Happening, ended: int, output: Out
         reason = _and(reason, f"stored momentum still grows and would be full {full_in:.2g} s later")
     return TrialResult(
         name=name, stance=plant.stance.name, toward=event.toward, verdict=verdict, reason=reason,
-        peak_lean=float(metrics[outcome.PEAK_LEAN]), settling_time=settled,
+        peak_lean=float(metrics[outcome.PEAK_LEAN]), peak_lean_rate=float(metrics[outcome.PEAK_RATE]), settling_time=settled,
         peak_torque=float(metrics[outcome.PEAK_TORQUE]), torque_saturated=float(metrics[outcome.SATURATED]),
         peak_momentum=float(metrics[outcome.PEAK_MOMENTUM]),
         momentum_used=_share(float(metrics[outcome.PEAK_MOMENTUM]), float(plant.momentum_capacity)),
