@@ -62,6 +62,7 @@ def _stance(plant: Plant) -> Tree:
             "slope_rad": number(stance.slope),
         },
         "touch_down_lean_rad": None if stance.touch_down_lean is None else number(stance.touch_down_lean),
+        "touch_down_outward_rad": None if stance.outward_touch_down is None else number(stance.outward_touch_down),
         "momentum_capacity_n_m_s": number(plant.momentum_capacity),
         "torque_limit_n_m": number(plant.torque_limit),
         "acts": bool(plant.acts),

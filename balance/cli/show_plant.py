@@ -103,6 +103,7 @@ def _stances(plants: tuple[Plant, ...]) -> str:
             *_legs(plants),
             ("time for a fall to double", lambda p: amount(p.doubling_time, "s")),
             ("inward turn to the lifted foot", _touch_down),
+            *_outward(plants),
             ("torque limit about the line", lambda p: amount(p.torque_limit, "N*m")),
             ("momentum capacity", lambda p: amount(p.momentum_capacity, "N*m*s")),
             ("largest lean from standstill", lambda p: amount(p.bounds.lean, "rad") if p.acts else "none"),
@@ -128,6 +129,17 @@ def _legs(plants: tuple[Plant, ...]) -> list[tuple[str, Callable[[Plant], str]]]
 def _touch_down(plant: Plant) -> str:
     lean = plant.stance.touch_down_lean
     return "nothing lifted" if lean is None else amount(lean, "rad")
+
+
+def _outward(plants: tuple[Plant, ...]) -> list[tuple[str, Callable[[Plant], str]]]:
+    """The row about feet lifted on the outward side; none where there are none."""
+    there = any(p.stance.outward_touch_down is not None for p in plants)
+    return [("outward turn to a lifted foot", _lands_outward)] if there else []
+
+
+def _lands_outward(plant: Plant) -> str:
+    turn = plant.stance.outward_touch_down
+    return "nothing lifted there" if turn is None else amount(turn, "rad")
 
 
 def _units(plants: tuple[Plant, ...]) -> str:

@@ -27,6 +27,7 @@ from balance.kernel.layout import (
     HINGE_MODE,
     INERTIA,
     KIND,
+    LANDS_OUTWARD,
     LEGS,
     MASS,
     MOTOR,
@@ -239,7 +240,7 @@ def beyond_stop(X: Array, units: Array, held: Flags) -> int:
 def ended(X: Array, body: Array) -> int:
     """Return how the trial has ended in this state (RAN: it has not)."""
     lean = X[0] - body[BALANCED]
-    if X[0] <= -body[TOUCH_DOWN]:
+    if X[0] <= -body[TOUCH_DOWN] or X[0] >= body[LANDS_OUTWARD]:
         return outcome.TOUCHED_DOWN
     if lean > body[FELL]:
         return outcome.FELL_OUTWARD

@@ -28,6 +28,15 @@ class JointLimits:
 
 
 @dataclass(frozen=True)
+class LegPose:
+    """Joint angles stated for one leg in one stance, in place of those that inverse kinematics would find."""
+
+    hip: float = quantity("angle", says="from straight down, outward positive")
+    swing: float = quantity("angle", default=0.0, says="sideways, before the hip bends")
+    knee: float = quantity("angle", default=0.0, says="from straight, as the hip counts")
+
+
+@dataclass(frozen=True)
 class Leg:
     """One leg. Without `lower` it is a single link that must span hip to foot."""
 

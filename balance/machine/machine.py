@@ -6,7 +6,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field
 
 from balance.files.fields import Shape, place, quantity, section, table, text, vector
-from balance.machine.legs import Feet, Leg, LegCompliance
+from balance.machine.legs import Feet, Leg, LegCompliance, LegPose
 from balance.machine.measured import Measured
 from balance.machine.motors import Motor, Supply
 from balance.machine.solids import Part, Vector
@@ -62,11 +62,15 @@ _POINT = Shape("list", items=Shape("quantity", "length"), length=3)
 
 @dataclass(frozen=True)
 class StancePlan:
-    """Two feet down and the rest lifted to stated places: foot name -> contact point in the world."""
+    """Two feet down and the rest lifted to stated places: foot name -> contact point in the world.
+
+    A leg under `poses` is placed by its stated joint angles, and must end at its foot.
+    """
 
     down: dict[str, Vector] = place(Shape("table", items=_POINT))
     trunk: Pose = section(Pose)
     lifted: dict[str, Vector] = place(Shape("table", items=_POINT), None)
+    poses: dict[str, LegPose] | None = table(LegPose, default=None)
 
 
 @dataclass(frozen=True)

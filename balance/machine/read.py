@@ -100,6 +100,10 @@ def _legs(root: Node) -> Iterator[Fault]:
                     allowed = f"a name under `legs`: {listed(legs.names())}"
                     yield Fault(f"stances.{stance}.{word}.{foot}", f"the foot `{foot}`", allowed,
                                 did_you_mean(foot, legs.names()))
+        for leg, _ in _entries(plan, "poses"):
+            if leg not in legs.names():
+                yield Fault(f"stances.{stance}.poses.{leg}", f"the leg `{leg}`",
+                            f"a name under `legs`: {listed(legs.names())}", did_you_mean(leg, legs.names()))
         for leg in legs.names():
             if leg not in seen and plan.get("down"):
                 yield Fault(f"stances.{stance}", f"no place for the leg `{leg}`",

@@ -97,6 +97,31 @@ def check_gimbal_axes(unit: GimballedFlywheel) -> Iterator[Fault]:
         yield Fault("gimbal_axis", f"{angle:.4g} deg from the spin axis", "square to the spin axis")
 
 
+SKEW = 0.01
+"""Products of inertia of a gimbal's frame that are left out, as a share of its largest moment: less than a part states."""
+
+
+def check_gimballed(unit: GimballedFlywheel) -> Iterator[Fault]:
+    """Axes square to each other; a frame whose principal axes are they and their normal: what else it had would be lost."""
+    yield from check_gimbal_axes(unit)
+    t = unit.frame_inertia
+    if t is None:
+        return
+    rows = ((t.xx, t.xy, t.xz), (t.xy, t.yy, t.yz), (t.xz, t.yz, t.zz))
+    s, g = (tuple(x / math.hypot(*axis) for x in axis) for axis in (unit.spin_axis, unit.gimbal_axis))
+    n = (g[1] * s[2] - g[2] * s[1], g[2] * s[0] - g[0] * s[2], g[0] * s[1] - g[1] * s[0])
+
+    def moment(a: tuple[float, ...], b: tuple[float, ...]) -> float:
+        return sum(a[i] * rows[i][j] * b[j] for i in range(3) for j in range(3))
+
+    largest = max(moment(axis, axis) for axis in (s, g, n))
+    skew = max(abs(moment(s, g)), abs(moment(s, n)), abs(moment(g, n)))
+    if skew > SKEW * largest:
+        yield Fault("frame_inertia", f"a product of {skew:.3g} kg*m^2 between gimbal axis, spin axis and their normal",
+                    f"at most {SKEW * largest:.2g} kg*m^2, 1 % of the largest moment",
+                    "its principal axes must be those three: balance the frame, or check the axes of the tensor")
+
+
 def check_motor(motor: Motor) -> Iterator[Fault]:
     """What it stands for ever is no more than what it stands for a moment."""
     if motor.continuous_current > motor.peak_current:
@@ -161,7 +186,7 @@ def _mm(length: float) -> str:
 
 RULES: Rules = {
     Tensor: check_tensor, Part: check_part, TubeSize: check_tube, RimWebSize: check_rim, Rotor: check_rotor,
-    GimballedFlywheel: check_gimbal_axes, ScissoredPair: check_gimbal_axes, Motor: check_motor,
+    GimballedFlywheel: check_gimballed, ScissoredPair: check_gimballed, Motor: check_motor,
     Supply: check_supply, Drag: check_drag, ReactionWheel: check_wheel, Gear: check_gear,
     Lumped: check_lumped, StancePlan: check_stance,
 }

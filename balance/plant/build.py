@@ -66,6 +66,7 @@ def _body(stance: Stance, rows: Array, fell: float) -> Array:
     body[at.BODY_DRAG], body[at.MASS], body[at.GRAVITY] = stance.drag, stance.mass, down
     body[at.HEIGHT], body[at.OFFSET], body[at.FOOT_RADIUS] = stance.height, stance.offset, stance.foot_radius
     body[at.BALANCED] = balanced(stance.offset, stance.height - stance.foot_radius)
+    body[at.LANDS_OUTWARD] = stance.outward_touch_down if stance.outward_touch_down is not None else inf
     body[at.TOUCH_DOWN] = stance.touch_down_lean if stance.touch_down_lean is not None else inf
     body[at.FELL], body[at.FRICTION] = fell, stance.friction
     return body

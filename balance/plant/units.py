@@ -53,7 +53,8 @@ def _wheel(machine: Machine, name: str, wheel: ReactionWheel, e_T: Array) -> tup
     if wheel.gear is not None and wheel.gear.backlash > 0.0:
         put_play(row, wheel.gear, inertia, most)
     turning = inertia.wheel + inertia.motor * inertia.ratio**2
-    return Unit(name, "reaction wheel", "torque", share, turning, abs(row[at.COUPLING]) * top,
+    stored = abs(float(row[at.COUPLING])) * top if row[at.COUPLING] != 0.0 else 0.0      # square, and no top speed: none
+    return Unit(name, "reaction wheel", "torque", share, turning, stored,
                 abs(row[at.COUPLING]) / inertia.own * most, most, top, drive.bandwidth, axis, None, np.array(wheel.at),
                 wheel.bias_speed, energy=0.5 * turning * top**2), row
 

@@ -40,6 +40,7 @@ def machine_table(plants: tuple[Plant, ...]) -> Table:
         *_legs(plants),
         row("a lean doubles every", lambda p: amount(p.doubling_time, "s")),
         row("lifted foot lands at", landing),
+        *((row("and outward at", landing_outward),) if any(p.stance.outward_touch_down is not None for p in plants) else ()),
         row("torque limit about the line", lambda p: amount(p.torque_limit, "N*m")),
         row("momentum capacity about the line", lambda p: amount(p.momentum_capacity, "N*m*s")),
         possible("best possible lean from rest", lambda p: amount(p.bounds.lean, "rad")),
@@ -74,6 +75,12 @@ def landing(plant: Plant) -> str:
     """Say at which lean the lifted foot meets the ground."""
     angle = plant.stance.touch_down_lean
     return "never: a fall both ways" if angle is None else f"{amount(angle + plant.balanced_lean, 'rad')} inward"
+
+
+def landing_outward(plant: Plant) -> str:
+    """Say at which lean a foot lifted on the outward side meets the ground."""
+    angle = plant.stance.outward_touch_down
+    return "never" if angle is None else f"{amount(angle - plant.balanced_lean, 'rad')} outward"
 
 
 def bench_table(measured: tuple[Disagreement, ...]) -> Table:

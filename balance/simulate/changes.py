@@ -18,6 +18,7 @@ from balance.kernel.layout import (
     GRAVITY_ALONG,
     HEIGHT,
     INERTIA,
+    LANDS_OUTWARD,
     MASS,
     OFFSET,
     STIFF_COS,
@@ -99,5 +100,5 @@ def _sloped(body: Array, slope: Slope, side: float) -> Array:
     out[GRAVITY], out[GRAVITY_ALONG] = whole * math.cos(new), -whole * math.sin(new)
     out[STIFF_SIN] = body[STIFF_SIN] * share
     out[STIFF_COS] = body[STIFF_COS] * share - out[MASS] * out[GRAVITY] * body[FOOT_RADIUS] * math.sin(rises)
-    out[TOUCH_DOWN] = body[TOUCH_DOWN] + rises
+    out[TOUCH_DOWN], out[LANDS_OUTWARD] = body[TOUCH_DOWN] + rises, body[LANDS_OUTWARD] - rises
     return out

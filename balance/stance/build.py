@@ -79,6 +79,7 @@ def stand(machine: Machine, name: str, plan: StancePlan) -> Stance:
         height=float((com - p_a) @ u), offset=float((com - p_a) @ w),
         inertia_locked=about_line(I_com, mass, com - p_a, e), com_W=com, I_com_W=I_com, drag=0.0,
         foot_radius=feet.radius, friction=feet.friction, lifted=lifted, touch_down_lean=touch_down(lifted),
+        outward_touch_down=touch_down(lifted, 1.0),
         joints={leg_name: leg.joints for leg_name, leg in legs.items()},
         points_W=_points(bodies_T, {n: leg.points for n, leg in legs.items()}, R_WT, p_WT),
     )

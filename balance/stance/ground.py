@@ -60,13 +60,13 @@ def lifted_places(machine: Machine, name: str, plan: StancePlan, p_a: Array, u: 
     return places
 
 
-def touch_down(lifted: dict[str, tuple[float, float]]) -> float | None:
-    """Return the inward turn (rad, positive) at which the first lifted foot lands; None: none is inward.
+def touch_down(lifted: dict[str, tuple[float, float]], side: float = -1.0) -> float | None:
+    """Return the turn (rad, positive) toward `side` (−1 inward, +1 outward) at which a foot lifted there lands; None: none.
 
     Exactly atan(clearance ÷ distance): a turn about the line carries the foot on a circle, and equal balls at
     all feet roll together.
     """
-    angles = [atan2(max(clearance, 0.0), -across) for across, clearance in lifted.values() if across < 0.0]
+    angles = [atan2(max(clearance, 0.0), side * across) for across, clearance in lifted.values() if side * across > 0.0]
     return min(angles) if angles else None
 
 

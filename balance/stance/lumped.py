@@ -39,6 +39,6 @@ def lumped_stance(machine: Machine, lumped: Lumped) -> Stance:
         p_WT=np.zeros(3), slope=0.0, gravity=machine.gravity, mass=lumped.mass, height=lumped.height,
         offset=lumped.offset, inertia_locked=lumped.inertia + spin, com_W=com,
         I_com_W=(lumped.inertia - steiner + spin) * np.eye(3), drag=lumped.drag,
-        foot_radius=feet.radius, friction=feet.friction, lifted={}, touch_down_lean=None, joints={},
+        foot_radius=feet.radius, friction=feet.friction, lifted={}, touch_down_lean=None, outward_touch_down=None, joints={},
         points_W={name: np.array([unit_.at]) for name, unit_ in machine.stabilisers.items()},
     )

@@ -8,7 +8,7 @@ from math import hypot
 import numpy as np
 from numpy.typing import NDArray
 
-from balance.machine.legs import Leg, Link
+from balance.machine.legs import Leg, LegPose, Link
 from balance.maths.inertia import rotated
 from balance.maths.legs import bend_angles, leg_axes, link_axes, reach_range, swing_angle
 from balance.stance.bodies import Body
@@ -62,6 +62,20 @@ def place_leg(name: str, leg: Leg, end: Array) -> PlacedLeg | OutOfReach:
     bodies = (_link(f"{name} upper", leg.upper, hip, R_upper, leg.upper.length),
               _link(f"{name} lower", leg.lower, knee, R_lower, leg.lower.length))
     return PlacedLeg((swing, bend, knee_angle), bodies, np.array([hip, knee, end]))
+
+
+def pose_leg(name: str, leg: Leg, pose: LegPose) -> PlacedLeg:
+    """Return a leg laid by stated joint angles, in the trunk's axes; its end is wherever they put it."""
+    hip, axes = np.array(leg.hip), leg_axes(np.array(leg.hip))
+    R_upper = link_axes(axes, pose.swing, pose.hip)
+    knee = hip + leg.upper.length * R_upper[:, 0]
+    upper = _link(f"{name} upper" if leg.lower else name, leg.upper, hip, R_upper, leg.upper.length)
+    if leg.lower is None:
+        return PlacedLeg((pose.swing, pose.hip), (upper,), np.array([hip, knee]))
+    R_lower = link_axes(axes, pose.swing, pose.hip + pose.knee)
+    end = knee + leg.lower.length * R_lower[:, 0]
+    lower = _link(f"{name} lower", leg.lower, knee, R_lower, leg.lower.length)
+    return PlacedLeg((pose.swing, pose.hip, pose.knee), (upper, lower), np.array([hip, knee, end]))
 
 
 def _one_link(name: str, leg: Leg, hip: Array, end: Array, swing: float,

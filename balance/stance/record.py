@@ -42,6 +42,7 @@ class Stance:
     friction: float
     lifted: dict[str, tuple[float, float]]   # foot -> (signed distance from the line along w, clearance) in m
     touch_down_lean: float | None   # rad > 0: inward turn from θ = 0 that lands a lifted foot; None: never
+    outward_touch_down: float | None   # rad > 0: the same outward, by a foot lifted on that side
     joints: dict[str, tuple[float, ...]]     # leg -> joint angles (swing, hip, knee) in rad
     points_W: dict[str, Array]      # drawing: leg name -> (k, 3) hip, knee, foot; part name -> (1, 3) centre
 

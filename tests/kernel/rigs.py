@@ -12,12 +12,14 @@ from balance.kernel.bundles import MEMORY, Events, LawArrays, Output, fresh_metr
 from balance.kernel.run import run_trial
 
 
-def body(inertia=0.354, stiffness=12.0, side=0.0, mass=3.0, height=0.4, fell=0.6, touch_down=np.inf):
+def body(inertia=0.354, stiffness=12.0, side=0.0, mass=3.0, height=0.4, fell=0.6, touch_down=np.inf,
+         lands_outward=np.inf):
     """Return a body about its line: J, G_s, G_c; lean counts from its balanced lean."""
     out = np.zeros(at.BODY_SIZE)
     out[at.INERTIA], out[at.STIFF_SIN], out[at.STIFF_COS] = inertia, stiffness, side
     out[at.MASS], out[at.HEIGHT], out[at.GRAVITY] = mass, height, stiffness / (mass * height)
     out[at.BALANCED], out[at.TOUCH_DOWN], out[at.FELL] = -np.arctan2(side, stiffness), touch_down, fell
+    out[at.LANDS_OUTWARD] = lands_outward
     return out
 
 

@@ -60,6 +60,7 @@ def random_rig(rng):
     body[at.STIFF_SIN], body[at.STIFF_COS], body[at.BODY_DRAG] = mass * down * high, mass * down * side, loss
     body[at.MASS], body[at.GRAVITY], body[at.HEIGHT], body[at.OFFSET] = mass, down, high, side
     body[at.BALANCED], body[at.TOUCH_DOWN], body[at.FELL] = -np.arctan2(side, high), np.inf, 0.8
+    body[at.LANDS_OUTWARD] = np.inf
     rows = np.vstack([wheel(inertia=spin, share=share, torque=1e3, speed=1e4), np.zeros((1, at.UNIT_SIZE))])
     rows[1, [at.KIND, at.ROLE, at.OWN_INERTIA]] = at.WHEEL, at.LEGS, 1.0
     rows[1, [at.HINGE, at.HINGE_STIFFNESS, at.HINGE_DAMPING]] = hinge, stiff, loses

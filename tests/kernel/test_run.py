@@ -126,6 +126,14 @@ def test_what_is_no_number_is_never_a_recovery():
     assert ran.end != outcome.RAN
 
 
+def test_a_foot_lifted_outward_catches_there_and_only_there():
+    ran = run(body(lands_outward=0.2), wheel(), law(), events(3.0), X=[0.05, 0.0, 0.0, 0.0])
+    assert ran.end == outcome.TOUCHED_DOWN
+    assert ran.X[0] == pytest.approx(0.2, abs=1e-3)
+    ran = run(body(lands_outward=0.2), wheel(), law(), events(3.0), X=[-0.05, 0.0, 0.0, 0.0])
+    assert ran.end == outcome.FELL_INWARD
+
+
 def test_touch_down_counts_from_the_pose_not_from_the_balanced_lean():
     b = body(side=1.2, touch_down=0.2)                            # balanced at -0.0997 rad
     ran = run(b, wheel(), law(), events(3.0), X=[b[at.BALANCED] - 0.02, 0.0, 0.0, 0.0])

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
@@ -9,6 +10,7 @@ import pytest
 
 from balance.base.errors import InputError
 from balance.machine.read import read_machine
+from balance.machine.rules import check_gimballed
 from balance.machine.solids import Tensor
 from balance.machine.tensors import check_tensor, principal_moments
 
@@ -91,3 +93,20 @@ def test_bodies_of_real_parts_pass_and_shrunken_ones_do_not():
         assert list(check_tensor(Tensor(J[0, 0], J[1, 1], J[2, 2], J[0, 1], J[0, 2], J[1, 2]))) == []
         values = np.linalg.eigvalsh(J)
         assert list(check_tensor(Tensor(values[0], values[1], 1.01 * (values[0] + values[1]))))
+
+
+def test_a_skew_gimbal_frame_is_refused():
+    """Products between the axes the equations know would be lost in silence; 1 % of the largest moment is let pass."""
+    straight = Tensor(4e-3, 5e-3, 6e-3)
+    unit = replace(read_machine("plants/quay-carrier.yaml").stabilisers["gyros"], frame_inertia=straight)
+    assert not list(check_gimballed(unit))
+    for product in ("xy", "xz", "yz"):
+        (fault,) = check_gimballed(replace(unit, frame_inertia=replace(straight, **{product: 1e-4})))
+        assert fault.key == "frame_inertia"
+        assert "product of 0.0001" in fault.given
+        assert not list(check_gimballed(replace(unit, frame_inertia=replace(straight, **{product: 5e-5}))))
+    # the same frame seen along turned axes is straight again
+    c = 2**-0.5
+    turned = replace(unit, spin_axis=(0.0, 0.0, 1.0), gimbal_axis=(c, c, 0.0),
+                     frame_inertia=Tensor(4.5e-3, 4.5e-3, 6e-3, xy=-0.5e-3))
+    assert not list(check_gimballed(turned))
