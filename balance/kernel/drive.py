@@ -7,10 +7,10 @@ proportion to what is left, with `limiter_gain`, so that the torque is cut witho
 from __future__ import annotations
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
 from balance.kernel import outcome
+from balance.kernel.compiled import inlined, part
 from balance.kernel.equations import gimbal_terms
 from balance.kernel.layout import (
     ANGLE_STOP,
@@ -44,13 +44,13 @@ SLACK = 1e-9
 """Relative excess below which a command that equals its limit does not count as limited."""
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def limiter_gain(units: Array, i: int) -> float:
     """Return the speed limiter's gain in 1/s: a quarter of the current loop's bandwidth, at most LIMITER_GAIN."""
     return float(min(0.25 * units[i, CURRENT_LAG], LIMITER_GAIN))
 
 
-@njit(cache=True, error_model="numpy")
+@part
 def current_window(units: Array, i: int, speed: float) -> tuple[float, float]:
     """Return the smallest and largest current in A the bus can drive at this wheel speed.
 
@@ -64,7 +64,7 @@ def current_window(units: Array, i: int, speed: float) -> tuple[float, float]:
     return min(max(low, -most), most), min(max(high, -most), most)
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def current_target(units: Array, i: int, speed: float, command: float) -> tuple[float, int]:
     """Return the current in A the loop heads for under a torque command in N·m, and the limit that cut it."""
     met = outcome.NO_LIMIT
@@ -93,7 +93,7 @@ def current_target(units: Array, i: int, speed: float, command: float) -> tuple[
     return min(max(current, low), high), met
 
 
-@njit(cache=True, error_model="numpy")
+@part
 def gimbal_torque(units: Array, i: int, angle: float, rate: float, lean_rate: float,
                   command: float) -> tuple[float, int]:
     """Return the torque in N·m of a torque-driven gimbal under a torque command, and the limit that cut it.
@@ -117,7 +117,7 @@ def gimbal_torque(units: Array, i: int, angle: float, rate: float, lean_rate: fl
     return torque, met
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def gimbal_rate(units: Array, i: int, command: float) -> tuple[float, int]:
     """Return the rate in rad/s a position servo is asked for, and the limit that cut it."""
     most = units[i, RATE_LIMIT]
@@ -125,7 +125,7 @@ def gimbal_rate(units: Array, i: int, command: float) -> tuple[float, int]:
     return min(max(command, -most), most), met
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def unit_input(units: Array, i: int, first: float, second: float, lean_rate: float,
                command: float) -> tuple[float, float, int]:
     """Return (input of the equations of motion, rate of the second state, limit met) of one unit.
@@ -149,7 +149,7 @@ def unit_input(units: Array, i: int, first: float, second: float, lean_rate: flo
     return torque, 0.0, met
 
 
-@njit(cache=True, error_model="numpy")
+@part
 def torque_available(units: Array, i: int, first: float, share: float, sign: float) -> float:
     """Return the torque about the line in N·m one unit could give now toward `sign`, as a magnitude.
 

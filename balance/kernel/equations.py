@@ -7,9 +7,9 @@ own acceleration only, so it is solved by elimination: each unit hands its share
 from __future__ import annotations
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
+from balance.kernel.compiled import inlined, part
 from balance.kernel.layout import (
     BODY_DRAG,
     COULOMB,
@@ -48,14 +48,14 @@ from balance.kernel.legs import legs_terms
 Array = NDArray[np.float64]
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def gravity_torque(theta: float, body: Array) -> float:
     """Return M(θ) in N·m, rolling feet of radius r included: G_s − m g r in place of G_s."""
     rolled = body[STIFF_SIN] - body[MASS] * body[GRAVITY] * body[FOOT_RADIUS]
     return float(rolled * np.sin(theta) + body[STIFF_COS] * np.cos(theta))
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def rolling(theta: float, theta_dot: float, body: Array) -> tuple[float, float]:
     """Return (what a foot ball adds to J(θ), what it adds to the torque); both 0 for point feet.
 
@@ -73,7 +73,7 @@ STICKS = 0.05
 """rad/s: below it a wheel with stiction creeps instead of standing: too slow to matter, fast enough for a 0.1 ms step."""
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def wheel_drag(speed: float, coulomb: float, viscous: float, stiction: float) -> float:
     """Return f(Ω) in N·m. Without stiction Coulomb drag fades linearly below 1 rad/s: no chatter.
 
@@ -86,7 +86,7 @@ def wheel_drag(speed: float, coulomb: float, viscous: float, stiction: float) ->
     return falling * min(max(speed / STICKS, -1.0), 1.0) + viscous * speed
 
 
-@njit(cache=True, error_model="numpy")
+@part
 def gimbal_terms(i: int, gamma: float, gamma_dot: float, theta_dot: float,
                  units: Array) -> tuple[float, float, float, float]:
     """Return unit i's (inertia added to the body row, torque on it, coupling κ I_γ, push on one gimbal).
@@ -111,7 +111,7 @@ def gimbal_terms(i: int, gamma: float, gamma_dot: float, theta_dot: float,
     return added, torque, coupling, push
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def lean_acceleration(X: Array, inputs: Array, disturbance: float, body: Array, units: Array, out: Array) -> float:
     """Return θ̈; `out[3 + 2i]` in: NaN, or ±torque of a servo at its limit; out: the gimbals' drive torque."""
     added, push = rolling(X[0], X[1], body)
@@ -141,7 +141,7 @@ def lean_acceleration(X: Array, inputs: Array, disturbance: float, body: Array, 
     return float(torque / mass)
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def derivative(X: Array, inputs: Array, disturbance: float, body: Array, units: Array, out: Array) -> None:
     """Fill `out` with dX/dt. inputs (units,): wheel torque, torque per gimbal, or commanded gimbal rate.
 
@@ -166,7 +166,7 @@ def derivative(X: Array, inputs: Array, disturbance: float, body: Array, units: 
         unit_rates(i, X, inputs[i], acceleration, body, units, out)
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def servo_torque(i: int, X: Array, rate: float, acceleration: float, units: Array) -> float:
     """Return the drive torque per gimbal in N·m that a servo needs to follow a commanded rate."""
     _, _, coupling, back = gimbal_terms(i, X[2 + 2 * i], X[3 + 2 * i], X[1], units)
@@ -174,7 +174,7 @@ def servo_torque(i: int, X: Array, rate: float, acceleration: float, units: Arra
     return float(units[i, GIMBAL_INERTIA] * wanted + coupling * acceleration - back)
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def unit_rates(i: int, X: Array, given: float, acceleration: float, body: Array, units: Array, out: Array) -> None:
     """Fill the two rates of unit i. A wheel's second state, its current, belongs to the drive: rate 0 here."""
     if units[i, KIND] == WHEEL and units[i, COUPLING] == 0.0 and units[i, ROLE] == LEGS:

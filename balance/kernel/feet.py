@@ -3,9 +3,9 @@
 from __future__ import annotations
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
+from balance.kernel.compiled import inlined
 from balance.kernel.layout import (
     AXIS_U,
     AXIS_W,
@@ -40,7 +40,7 @@ from balance.kernel.legs import hinge_moves
 Array = NDArray[np.float64]
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def centre(theta: float, body: Array) -> tuple[float, float]:
     """Return (y_c, z_c) in m: the centre of mass across and above the centres of the foot balls, at lean θ."""
     s, c = np.sin(theta), np.cos(theta)
@@ -48,7 +48,7 @@ def centre(theta: float, body: Array) -> tuple[float, float]:
     return h * s + body[OFFSET] * c, h * c - body[OFFSET] * s
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def foot_forces(X: Array, dX: Array, push: float, body: Array, units: Array) -> tuple[float, float]:
     """Return (force across the line along w, sum of the normal forces) of the ground on the whole machine in N.
 
@@ -62,7 +62,7 @@ def foot_forces(X: Array, dX: Array, push: float, body: Array, units: Array) -> 
     return across - push, body[MASS] * (body[GRAVITY] - dX[1] * y - X[1] ** 2 * z + up)
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def turning(X: Array, dX: Array, body: Array, units: Array) -> tuple[float, float]:
     """Return dL/dt about the centre of mass in N·m along the world's u and w: what the feet's couple must make.
 
@@ -98,7 +98,7 @@ def turning(X: Array, dX: Array, body: Array, units: Array) -> tuple[float, floa
     return du * c - dw * s, du * s + dw * c
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def each_foot(X: Array, dX: Array, push: float, body: Array, units: Array) -> tuple[float, float, float, float, float]:
     """Return (normal on a, normal on b, force along w on a, on b, force along e on both together) in N.
 
@@ -119,7 +119,7 @@ def each_foot(X: Array, dX: Array, push: float, body: Array, units: Array) -> tu
     return normal - normal_b, normal_b, across - across_b, across_b, along
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def friction_needed(normal: float, across: float, along: float, total: float) -> float:
     """Return one foot's needed friction coefficient, the force along the line shared by normal load; inf when lifted."""
     if normal <= 0.0:

@@ -3,10 +3,10 @@
 from __future__ import annotations
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
 from balance.kernel import outcome
+from balance.kernel.compiled import inlined, part
 from balance.kernel.drive import torque_available
 from balance.kernel.equations import gimbal_terms
 from balance.kernel.feet import each_foot, friction_needed
@@ -36,7 +36,7 @@ Array = NDArray[np.float64]
 Flags = NDArray[np.int64]
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
+@inlined
 def line_torque(X: Array, dX: Array, units: Array) -> float:
     """Return T = dq/dt in N·m: the torque about the line all units take from the body."""
     total = 0.0
@@ -51,7 +51,7 @@ def line_torque(X: Array, dX: Array, units: Array) -> float:
     return total
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
+@inlined
 def line_momentum(X: Array, units: Array) -> float:
     """Return q in N·m·s: the momentum about the line stored in all units (a gimbal at angle zero stores none)."""
     total = 0.0
@@ -68,7 +68,7 @@ def line_momentum(X: Array, units: Array) -> float:
     return total
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def momentum_slope(angle: float, units: Array, i: int) -> float:
     """Return dq/dγ in N·m·s/rad of all rotors of a gimballed unit; in a mirrored pair the e·s₀ parts cancel."""
     lead = 0.0 if units[i, COUNT] > 1.5 else units[i, E_S0]
@@ -76,7 +76,7 @@ def momentum_slope(angle: float, units: Array, i: int) -> float:
     return float(units[i, COUNT] * units[i, MOMENTUM] * slope)
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def available(X: Array, units: Array, sign: float) -> float:
     """Return the torque about the line in N·m all units could give now toward `sign`."""
     total = 0.0
@@ -89,7 +89,7 @@ def available(X: Array, units: Array, sign: float) -> float:
     return total
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
+@inlined
 def bus_power(X: Array, dX: Array, units: Array) -> tuple[float, float]:
     """Return (electrical power of wheels plus mechanical power of gimbal drives in W, largest |current| in A).
 
@@ -110,7 +110,7 @@ def bus_power(X: Array, dX: Array, units: Array) -> tuple[float, float]:
     return power, current
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
+@inlined
 def watch(t: float, h: float, X: Array, dX: Array, body: Array, units: Array, met: Flags, metrics: Array,
           first: Array) -> None:
     """Gather the metrics of one sub-step of length h that starts at t (h = 0: only the peaks)."""
@@ -133,7 +133,7 @@ def watch(t: float, h: float, X: Array, dX: Array, body: Array, units: Array, me
         metrics[outcome.SATURATED] += h
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def watch_feet(t: float, X: Array, dX: Array, push: float, body: Array, units: Array, metrics: Array) -> None:
     """Gather each foot's least load and needed friction at t, under a horizontal push in N; keep when it lifts or slips."""
     load_a, load_b, across_a, across_b, along = each_foot(X, dX, push, body, units)
@@ -150,7 +150,7 @@ def watch_feet(t: float, X: Array, dX: Array, push: float, body: Array, units: A
             metrics[at + outcome.SLIP] = min(metrics[at + outcome.SLIP], t)
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def watch_bus(X: Array, units: Array, live: Array, metrics: Array) -> None:
     """Gather the peaks of the bus: voltage, sag below the healthy supply's own voltage, current out of the supply."""
     bus = bus_row(units)
@@ -164,7 +164,7 @@ def watch_bus(X: Array, units: Array, live: Array, metrics: Array) -> None:
         metrics[outcome.PEAK_SUPPLY] = max(metrics[outcome.PEAK_SUPPLY], power / volts)
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
+@inlined
 def note(t: float, stored: float, row: int, limit: int, first: Array) -> None:
     """Keep the time and the stored momentum when a limit was met first."""
     if t < first[row, limit, 0]:

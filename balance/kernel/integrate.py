@@ -7,10 +7,10 @@ The arrays are handed in one by one: compiled code takes a bundle apart again at
 from __future__ import annotations
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
 from balance.kernel import outcome
+from balance.kernel.compiled import entry, inlined, part
 from balance.kernel.drive import LIMITER_GAIN, unit_input
 from balance.kernel.equations import derivative
 from balance.kernel.gauge import watch, watch_bus, watch_feet
@@ -59,14 +59,14 @@ OF_LAG = 0.25
 """Share of a lag's time constant: keeps lean within 5e-9 rad of a 1e-12 integration with every limit met (measured)."""
 
 
-@njit(cache=True, error_model="numpy")
+@part
 def flank_frequency(units: Array, i: int) -> float:
     """Return how fast toothed wheel i and its motor swing on touching flanks in rad/s."""
     motor = int(units[i, PARTNER])
     return float(np.sqrt(units[i, TOOTH_STIFFNESS] * (1.0 / units[i, OWN_INERTIA] + 1.0 / units[motor, OWN_INERTIA])))
 
 
-@njit(cache=True, error_model="numpy")
+@entry
 def longest_step(units: Array) -> float:
     """Return the longest sub-step in s: 0.5 ms, or OF_LAG of the fastest lag's time constant."""
     h = min(LONGEST_STEP, OF_LAG / LIMITER_GAIN)
@@ -87,7 +87,7 @@ def longest_step(units: Array) -> float:
     return h
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
+@inlined
 def disturbance_at(t: float, active: Array, count: int) -> float:
     """Return the torque about the line in N·m at time t from the first `count` rows of `active`."""
     total = 0.0
@@ -96,7 +96,7 @@ def disturbance_at(t: float, active: Array, count: int) -> float:
     return total
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
+@inlined
 def torque_of(t: float, active: Array, i: int) -> float:
     """Return the torque about the line in N·m of one row at time t."""
     s = t - active[i, outcome.START]
@@ -106,7 +106,7 @@ def torque_of(t: float, active: Array, i: int) -> float:
     return float(torque)
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def put_on_legs(t: float, active: Array, count: int, live: Array, commands: Array) -> float:
     """Put what acts on legs that give at time t into their command; return it in N·m, 0 for stiff legs."""
     row = legs_row(live)
@@ -119,7 +119,7 @@ def put_on_legs(t: float, active: Array, count: int, live: Array, commands: Arra
     return total
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
+@inlined
 def push_at(t: float, active: Array, count: int) -> float:
     """Return the horizontal force along w in N that makes these torques at time t; a couple has none."""
     total = 0.0
@@ -129,7 +129,7 @@ def push_at(t: float, active: Array, count: int) -> float:
     return total
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
+@inlined
 def vary(t: float, active: Array, count: int, base: Array, body: Array) -> None:
     """Put what the rows of `active` make of the body at time t.
 
@@ -148,7 +148,7 @@ def vary(t: float, active: Array, count: int, base: Array, body: Array) -> None:
     body[STIFF_COS], body[OFFSET] = base[STIFF_COS] + across, base[OFFSET] + across / weight
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
+@inlined
 def rates(X: Array, torque: float, commands: Array, body: Array, live: Array, met: Flags, inputs: Array,
           slopes: Array, out: Array) -> None:
     """Fill `out` with dX/dt under held commands and a torque about the line; `met` with each unit's limit."""
@@ -175,7 +175,7 @@ def rates(X: Array, torque: float, commands: Array, body: Array, live: Array, me
                 met[i] = outcome.DRIVE
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def march(X: Array, begin: float, h: float, steps: int, commands: Array, active: Array, count: int, varying: int,
           base: Array, body: Array, units: Array, live: Array, held: Flags, met: Flags, inputs: Array, slopes: Array,
           rate: Array, total: Array, probe: Array, metrics: Array, first: Array) -> tuple[int, int]:
@@ -217,7 +217,7 @@ def march(X: Array, begin: float, h: float, steps: int, commands: Array, active:
     return steps, outcome.RAN
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
+@inlined
 def settle_currents(X: Array, inputs: Array, live: Array, met: Flags, held: Flags) -> None:
     """Show the current of wheels without a current lag (no state of its own), and that a held gimbal is limited."""
     for i in range(live.shape[0]):
@@ -227,7 +227,7 @@ def settle_currents(X: Array, inputs: Array, live: Array, met: Flags, held: Flag
             met[i] = outcome.STOP
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
+@inlined
 def beyond_stop(X: Array, units: Array, held: Flags) -> int:
     """Return the first gimballed unit that is past its stop and not held there, or -1."""
     for i in range(units.shape[0]):
@@ -236,7 +236,7 @@ def beyond_stop(X: Array, units: Array, held: Flags) -> int:
     return -1
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
+@inlined
 def ended(X: Array, body: Array) -> int:
     """Return how the trial has ended in this state (RAN: it has not)."""
     lean = X[0] - body[BALANCED]
@@ -249,7 +249,7 @@ def ended(X: Array, body: Array) -> int:
     return outcome.RAN
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def jump(column: int, X: Array, body: Array, live: Array, inputs: Array, rest: Array, push: Array) -> None:
     """Fill `push` with the change of all rates per impulse: about the line (column -1), or in input `column`.
 

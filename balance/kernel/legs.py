@@ -15,9 +15,9 @@ Lagrange's equations with Δ = ψ − χ, hinge at L, centre of mass c = h − L
 from __future__ import annotations
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
+from balance.kernel.compiled import inlined
 from balance.kernel.layout import (
     BODY_DRAG,
     GRAVITY,
@@ -36,7 +36,7 @@ from balance.kernel.layout import (
 Array = NDArray[np.float64]
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def legs_row(units: Array) -> int:
     """Return the row of legs that give: the last, or the one before the supply's; -1: the legs are stiff."""
     count = units.shape[0]
@@ -46,14 +46,14 @@ def legs_row(units: Array) -> int:
     return -1
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def legs_mass(flex: float, mass: float, height: float, offset: float, hinge: float) -> tuple[float, float, float]:
     """Return (what J gains in the trunk's row, what couples the rows, the legs' own) in kg·m² at Δ = `flex` rad."""
     across = (height - hinge) * np.cos(flex) - offset * np.sin(flex)
     return mass * hinge * (hinge - 2.0 * height), mass * hinge * across, mass * hinge * hinge
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def legs_terms(X: Array, i: int, body: Array, units: Array) -> tuple[float, float, float, float, float]:
     """Return (added inertia, torque on the trunk, coupling, own inertia, torque on the legs) of the legs in row i."""
     psi, chi, psi_dot, chi_dot = X[0], X[3 + 2 * i], X[1], X[2 + 2 * i]
@@ -67,7 +67,7 @@ def legs_terms(X: Array, i: int, body: Array, units: Array) -> tuple[float, floa
     return added, on_trunk, coupling, own, on_legs
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def hinge_moves(X: Array, dX: Array, units: Array) -> tuple[float, float, float, float]:
     """Return what the hinge does beyond turning with the trunk: (across, up) in m and (across, up) in m/s², world."""
     i = legs_row(units)
@@ -81,7 +81,7 @@ def hinge_moves(X: Array, dX: Array, units: Array) -> tuple[float, float, float,
     return L * (sc - sp), L * (cc - cp), L * across, L * up
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def on_legs_of(lever: float, units: Array) -> float:
     """Return which share of a force's moment about the line acts on the legs: F L of F ℓ, all of it below the hinge.
 

@@ -8,7 +8,6 @@ sample, command switch, disturbance: a push at a sampling instant is seen by the
 from __future__ import annotations
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
 from balance.kernel import outcome
@@ -35,6 +34,7 @@ from balance.kernel.bundles import (
     Output,
     Work,
 )
+from balance.kernel.compiled import entry, part
 from balance.kernel.gauge import available, line_momentum, line_torque, note
 from balance.kernel.integrate import jump
 from balance.kernel.layout import (
@@ -68,7 +68,7 @@ TINY = 1e-9
 """Share of a sample time within which two instants are the same."""
 
 
-@njit(cache=True, error_model="numpy", nogil=True)
+@entry
 def run_trial(X: Array, units: Array, law: LawArrays, events: Events, work: Work, output: Output) -> int:
     """Run one trial from X (changed to the end state), fill `output`, return how it ended (`outcome`).
 
@@ -87,7 +87,7 @@ def run_trial(X: Array, units: Array, law: LawArrays, events: Events, work: Work
     return end
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def tick(X: Array, start: float, sample: int, units: Array, law: LawArrays, events: Events, work: Work,
          output: Output) -> None:
     """Take a sample and compute the command that acts `latency` later; until the release it is held at zero."""
@@ -104,13 +104,13 @@ def tick(X: Array, start: float, sample: int, units: Array, law: LawArrays, even
     send(start, sample, short or abs(v) > most * (1.0 + 1e-9), units, law, events, work, output)
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def is_free(start: float, sample_time: float, events: Events) -> bool:
     """Return whether the machine is no longer held."""
     return bool(start >= events.release - TINY * sample_time)
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def sense(X: Array, start: float, sample: int, units: Array, law: LawArrays, events: Events, work: Work,
           output: Output) -> bool:
     """Put the measurements into their row and make room for a command; return whether the sample was taken at all."""
@@ -138,7 +138,7 @@ def sense(X: Array, start: float, sample: int, units: Array, law: LawArrays, eve
     return True
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def send(start: float, sample: int, clipped: bool, units: Array, law: LawArrays, events: Events, work: Work,
          output: Output) -> None:
     """Round the command that stands in the newest row as the actuators' inputs do; note that it was clipped."""
@@ -155,7 +155,7 @@ def send(start: float, sample: int, clipped: bool, units: Array, law: LawArrays,
         note(start, output.history[sample, 1], units.shape[0], outcome.OUTPUT, output.first)
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def run_period(X: Array, start: float, stop: float, sample: int, sample_time: float, units: Array,
                events: Events, work: Work, output: Output) -> int:
     """Integrate from one sample to the next, piece by piece between sudden changes; return how it ended."""
@@ -179,7 +179,7 @@ def run_period(X: Array, start: float, stop: float, sample: int, sample_time: fl
     return end
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def newest_due(t: float, work: Work) -> float:
     """Put what the newest command that acts at t asks of each unit; return when the next one takes over, in s.
 
@@ -196,7 +196,7 @@ def newest_due(t: float, work: Work) -> float:
     return next_one
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def missed(start: float, sample: int, events: Events) -> bool:
     """Return whether the sample is one that the controller does not take."""
     for i in range(events.spells.shape[0]):
@@ -205,7 +205,7 @@ def missed(start: float, sample: int, events: Events) -> bool:
     return False
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def lateness(start: float, sample: int, events: Events) -> float:
     """Return by how much in s the command of this sample is later than the latency."""
     most = 0.0
@@ -215,13 +215,13 @@ def lateness(start: float, sample: int, events: Events) -> float:
     return float(most * scrambled(events.seed + 1, 2 * sample + 1)) if most > 0.0 else 0.0
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def in_spell(t: float, spell: Array) -> bool:
     """Return whether a spell is on, to a ten-thousandth of a millisecond."""
     return bool(spell[outcome.START] <= t + 1e-7 < spell[outcome.END])
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def change(X: Array, t: float, tiny: float, units: Array, events: Events, work: Work) -> None:
     """Apply what changes suddenly at t: release, kicks and shifts due, and which torques act from now on."""
     at = work.flags[AT]
@@ -258,7 +258,7 @@ def change(X: Array, t: float, tiny: float, units: Array, events: Events, work: 
     weaken_supply(t + tiny, units, events, work)
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def weaken_supply(t: float, units: Array, events: Events, work: Work) -> None:
     """Let the supply's own voltage fall to what is left of it at t."""
     bus = bus_row(units)
@@ -274,7 +274,7 @@ def weaken_supply(t: float, units: Array, events: Events, work: Work) -> None:
     work.live[bus, SOURCE_POWER] = most_power(volts, units[bus, SOURCE_OHMS], units[bus, SOURCE_AMPS])
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def change_body(X: Array, row: Array, work: Work) -> None:
     """Add what changes of the body; what comes at rest takes its share of the momentum about the line.
 
@@ -296,7 +296,7 @@ def change_body(X: Array, row: Array, work: Work) -> None:
     kick(X, -(after[1] - before[1]) * psi - (after[2] - before[2]) * chi, np.int64(legs), work)
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def legs_share(X: Array, legs: int, work: Work) -> tuple[float, float, float]:
     """Return what legs that give make of the mass matrix in kg·m² (`legs.legs_mass`); zeros for stiff ones."""
     if legs < 0:
@@ -306,7 +306,7 @@ def legs_share(X: Array, legs: int, work: Work) -> tuple[float, float, float]:
     return added, coupling, own
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def kick(X: Array, impulse: float, row: int, work: Work) -> None:
     """Let an impulse in N·m·s act at once, on the trunk (row −1) or in a row of the units: rates jump by M⁻¹ times it."""
     if impulse == 0.0:
@@ -319,7 +319,7 @@ def kick(X: Array, impulse: float, row: int, work: Work) -> None:
         X[place] += impulse * step[place]
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def write(X: Array, t: float, units: Array, work: Work, out: Array) -> None:
     """Record one sample in the row `out`."""
     release_stops(X, t, units, work)
@@ -335,7 +335,7 @@ def write(X: Array, t: float, units: Array, work: Work, out: Array) -> None:
         out[outcome.TRACE_SIZE + i - 2] = X[i]
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def finish(X: Array, sample: int, units: Array, work: Work, output: Output) -> None:
     """Record the end state and the last peaks."""
     metrics, lean, stored = output.metrics, X[0] - work.body[BALANCED], line_momentum(X, units)

@@ -6,9 +6,9 @@ Noise is a function of (seed, sample, channel) alone, so that a trial's noise de
 from __future__ import annotations
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
+from balance.kernel.compiled import inlined, part
 from balance.kernel.layout import BALANCED, GRAVITY
 
 Array = NDArray[np.float64]
@@ -31,7 +31,7 @@ TILT = -1
 GYRO = -2
 
 
-@njit(cache=True, error_model="numpy")
+@part
 def scrambled(seed: int, count: int) -> float:
     """Return a uniform number in (0, 1) from two whole numbers.
 
@@ -45,21 +45,21 @@ def scrambled(seed: int, count: int) -> float:
     return (float(z >> np.uint64(11)) + 0.5) * 2.0**-53
 
 
-@njit(cache=True, error_model="numpy")
+@part
 def normal(seed: int, sample: int, channel: int) -> float:
     """Return a standard normal number of (seed, sample, channel), channel 0 to 3: Box and Muller."""
     radius = np.sqrt(-2.0 * np.log(scrambled(seed, 8 * sample + 2 * channel)))
     return float(radius * np.cos(2.0 * np.pi * scrambled(seed, 8 * sample + 2 * channel + 1)))
 
 
-@njit(cache=True, error_model="numpy")
+@part
 def digitised(value: float, step: float, most: float) -> float:
     """Return the value within ±most, on the nearest count."""
     value = min(max(value, -most), most)
     return float(step * np.floor(value / step + 0.5)) if step > 0.0 else value
 
 
-@njit(cache=True, error_model="numpy")
+@part
 def read_gyro(lean_rate: float, sensor: Array, seed: int, sample: int) -> float:
     """Return the rate about the line in rad/s as the gyro shows it."""
     value = lean_rate + sensor[GYRO_BIAS]
@@ -68,7 +68,7 @@ def read_gyro(lean_rate: float, sensor: Array, seed: int, sample: int) -> float:
     return float(digitised(value, sensor[GYRO_STEP], sensor[GYRO_RANGE]))
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def specific_force(X: Array, acceleration: float, hinge: tuple[float, float], body: Array,
                    sensor: Array) -> tuple[float, float]:
     """Return what an accelerometer without faults shows along w and u in m/s².
@@ -82,14 +82,14 @@ def specific_force(X: Array, acceleration: float, hinge: tuple[float, float], bo
     return across, (g + hinge[1]) * cosine + hinge[0] * sine - s * acceleration - r * X[1] ** 2
 
 
-@njit(cache=True, error_model="numpy")
+@part
 def out_of_range(X: Array, acceleration: float, hinge: tuple[float, float], body: Array, sensor: Array) -> bool:
     """Return whether gyro or accelerometer would have to show more than they can, noise apart."""
     across, up = specific_force(X, acceleration, hinge, body, sensor)
     return bool(abs(X[1] + sensor[GYRO_BIAS]) > sensor[GYRO_RANGE] or max(abs(across), abs(up)) > sensor[ACCEL_RANGE])
 
 
-@njit(cache=True, error_model="numpy")
+@part
 def read_tilt(X: Array, acceleration: float, hinge: tuple[float, float], body: Array, sensor: Array, seed: int,
               sample: int) -> float:
     """Return the lean in rad that the accelerometer shows, counted from the balanced lean.

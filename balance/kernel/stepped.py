@@ -3,11 +3,11 @@
 from __future__ import annotations
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
 from balance.kernel import outcome
 from balance.kernel.bundles import Events, LawArrays, Output, Work
+from balance.kernel.compiled import entry
 from balance.kernel.run import finish, is_free, run_period, send, sense
 
 Array = NDArray[np.float64]
@@ -16,7 +16,7 @@ MISSED, HELD, FREE = 0, 1, 2
 """What a sample is: not taken at all, taken while the machine is held, taken while it can fall."""
 
 
-@njit(cache=True, error_model="numpy")
+@entry
 def begin_sample(X: Array, sample: int, units: Array, law: LawArrays, events: Events, work: Work, output: Output) -> int:
     """Put the measurements into their row of `work.numbers`; return MISSED, HELD or FREE."""
     start = sample * law.sample_time
@@ -25,7 +25,7 @@ def begin_sample(X: Array, sample: int, units: Array, law: LawArrays, events: Ev
     return FREE if is_free(start, law.sample_time, events) else HELD
 
 
-@njit(cache=True, error_model="numpy")
+@entry
 def end_sample(X: Array, sample: int, clipped: bool, taken: bool, units: Array, law: LawArrays, events: Events, work: Work,
                output: Output) -> int:
     """Send what stands in the newest row of the queue (if a sample was taken) and move to the next; return how it ended."""

@@ -7,7 +7,6 @@ equations of motion need no second form; `Work.live` is the copy of the units' p
 from __future__ import annotations
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
 from balance.kernel import outcome
@@ -29,6 +28,7 @@ from balance.kernel.bundles import (
     Output,
     Work,
 )
+from balance.kernel.compiled import part
 from balance.kernel.gauge import line_momentum, note
 from balance.kernel.integrate import beyond_stop, disturbance_at, jump, march, put_on_legs, rates, vary
 from balance.kernel.layout import ANGLE_STOP, DRIVE_TORQUE, GIMBAL_SERVO, GIMBAL_TORQUE, KIND, RATE_LAG, WHEEL
@@ -36,7 +36,7 @@ from balance.kernel.layout import ANGLE_STOP, DRIVE_TORQUE, GIMBAL_SERVO, GIMBAL
 Array = NDArray[np.float64]
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def run_piece(X: Array, begin: float, until: float, longest: float, units: Array, work: Work,
               output: Output) -> tuple[int, float]:
     """Integrate one smooth piece in sub-steps of at most `longest`; return how the trial ended, and the time.
@@ -56,7 +56,7 @@ def run_piece(X: Array, begin: float, until: float, longest: float, units: Array
     return end, t
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def go(X: Array, t: float, h: float, steps: int, units: Array, work: Work, metrics: Array,
        first: Array) -> tuple[int, int]:
     """Take the bundle apart and march: the one place where it is done."""
@@ -67,7 +67,7 @@ def go(X: Array, t: float, h: float, steps: int, units: Array, work: Work, metri
     return int(made), int(end)
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def run_to_stop(X: Array, t: float, h: float, units: Array, work: Work, metrics: Array, first: Array) -> float:
     """Move on from t to where a gimbal meets its stop, within the next h; hold it there; return the time moved.
 
@@ -95,7 +95,7 @@ def run_to_stop(X: Array, t: float, h: float, units: Array, work: Work, metrics:
     return low
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def release_stops(X: Array, t: float, units: Array, work: Work) -> bool:
     """Let go of each held gimbal that the law would turn away from its stop; return whether one is still held.
 
@@ -121,7 +121,7 @@ def release_stops(X: Array, t: float, units: Array, work: Work) -> bool:
     return any_held
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def rates_now(X: Array, t: float, work: Work) -> float:
     """Put the rates at t into their row; return the disturbance in N·m."""
     numbers = work.numbers
@@ -134,7 +134,7 @@ def rates_now(X: Array, t: float, work: Work) -> float:
     return float(torque)
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def lock(i: int, live: Array) -> None:
     """Make unit i stand still whatever pushes it."""
     live[i, KIND] = GIMBAL_SERVO
@@ -142,7 +142,7 @@ def lock(i: int, live: Array) -> None:
     live[i, RATE_LAG] = 1.0
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def stop_gimbal(i: int, X: Array, units: Array, work: Work) -> None:
     """Unit i met its stop: its rate drops to zero, shared with the body by the mass matrix; it is held there.
 

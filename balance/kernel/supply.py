@@ -7,10 +7,10 @@ takes no current back leaves it in the bus capacitor, ½ C (V² − V₀²), unt
 from __future__ import annotations
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
 from balance.kernel import outcome
+from balance.kernel.compiled import inlined
 from balance.kernel.layout import (
     BACK_EMF,
     BRAKE_OHMS,
@@ -40,7 +40,7 @@ SLACK = 1e-9
 """Relative excess below which what equals its limit does not count as limited."""
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def sagging_voltage(power: float, open_voltage: float, ohms: float) -> float:
     """Return V in V: V² − V₀ V + R_b P = 0, the upper root; V₀/2 where more is asked than any load can draw."""
     if ohms == 0.0:
@@ -49,7 +49,7 @@ def sagging_voltage(power: float, open_voltage: float, ohms: float) -> float:
     return float(0.5 * (open_voltage + np.sqrt(max(left, 0.0))))
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def most_power(open_voltage: float, ohms: float, amps: float) -> float:
     """Return the largest power in W: at the current limit, or V₀²/(4 R_b) where the load then matches the source."""
     if amps == np.inf and ohms == 0.0:
@@ -58,7 +58,7 @@ def most_power(open_voltage: float, ohms: float, amps: float) -> float:
     return float(amps * (open_voltage - ohms * amps))
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def scale_to(square: float, linear: float, rest: float, power: float) -> float:
     """Return s in 0 to 1 with A s² + B s + rest = power: how much of the current fits.
 
@@ -76,13 +76,13 @@ def scale_to(square: float, linear: float, rest: float, power: float) -> float:
     return float(min(max(2.0 * (power - rest) / below, 0.0), 1.0)) if below != 0.0 else 0.0
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def capacitor_voltage(energy: float, open_voltage: float, farads: float) -> float:
     """Return V in V with ½ C (V² − V₀²) = energy."""
     return float(np.sqrt(open_voltage * open_voltage + 2.0 * max(energy, 0.0) / farads))
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def brake_power(volts: float, overvoltage: float, ohms: float) -> float:
     """Return what the brake resistor burns in W: from nothing 2 % below the overvoltage to V²/R there and above."""
     if ohms <= 0.0:
@@ -91,7 +91,7 @@ def brake_power(volts: float, overvoltage: float, ohms: float) -> float:
     return on * volts * volts / ohms
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def power_taken_back(volts: float, overvoltage: float, ohms: float, farads: float) -> float:
     """Return the largest power in W the motors may give back now: the resistor's, and what brings V to its limit."""
     if overvoltage == np.inf:
@@ -100,14 +100,14 @@ def power_taken_back(volts: float, overvoltage: float, ohms: float, farads: floa
     return float(max(brake_power(volts, overvoltage, ohms) + room, 0.0))
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def bus_row(units: Array) -> int:
     """Return the supply's row, the last one; -1: the units have none."""
     last = units.shape[0] - 1
     return last if units[last, KIND] == WHEEL and units[last, ROLE] == BUS else -1
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
+@inlined
 def motor_power(X: Array, units: Array) -> float:
     """Return the electrical power of all wheel motors in W, negative when they give back."""
     power = 0.0
@@ -117,7 +117,7 @@ def motor_power(X: Array, units: Array) -> float:
     return power
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def bus_voltage(X: Array, power: float, units: Array, bus: int) -> float:
     """Return the bus voltage in V. A bus that cannot give back stands above V₀ while its capacitor holds energy."""
     if units[bus, TAKES_BACK] == 0.0 and (X[2 + 2 * bus] > 0.0 or power < 0.0):
@@ -125,7 +125,7 @@ def bus_voltage(X: Array, power: float, units: Array, bus: int) -> float:
     return float(sagging_voltage(power, units[bus, BUS_VOLTAGE], units[bus, SOURCE_OHMS]))
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def put_voltage(X: Array, bus: int, live: Array) -> tuple[float, float]:
     """Write the bus voltage into every motor's row; return (the motors' power in W, the voltage in V)."""
     power = float(motor_power(X, live))
@@ -136,7 +136,7 @@ def put_voltage(X: Array, bus: int, live: Array) -> tuple[float, float]:
     return power, volts
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def share_bus(X: Array, power: float, volts: float, bus: int, live: Array, slopes: Array, met: Flags, inputs: Array) -> None:
     """Cut the currents the motors head for to what the bus gives and takes, all alike; put the bus's own rates.
 
@@ -164,7 +164,7 @@ def share_bus(X: Array, power: float, volts: float, bus: int, live: Array, slope
     inputs[bus], slopes[bus] = gained, burnt
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def cut_currents(X: Array, bus: int, live: Array, most: float, back: float, slopes: Array, met: Flags) -> None:
     """Scale the target currents so that their power stays between -back and `most`."""
     heat_drawn, push_drawn, heat_given, push_given = 0.0, 0.0, 0.0, 0.0
@@ -192,7 +192,7 @@ def cut_currents(X: Array, bus: int, live: Array, most: float, back: float, slop
                 slopes[i] = live[i, CURRENT_LAG] * (scale * target - X[3 + 2 * i])
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True, forceinline=True)
+@inlined
 def target_power(X: Array, i: int, live: Array, slopes: Array) -> tuple[float, float]:
     """Return (heat, power against the back-EMF) in W at the current motor i heads for."""
     target = X[3 + 2 * i] + slopes[i] / live[i, CURRENT_LAG]

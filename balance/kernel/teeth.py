@@ -3,9 +3,9 @@
 from __future__ import annotations
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
+from balance.kernel.compiled import inlined
 from balance.kernel.layout import (
     KIND,
     PARTNER,
@@ -20,7 +20,7 @@ from balance.kernel.layout import (
 Array = NDArray[np.float64]
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def tooth_torque(gap: float, closing: float, play: float, stiffness: float, damping: float) -> float:
     """Return the torque in N·m on the wheel: a spring and damper beyond ±play/2 that push and never pull.
 
@@ -33,7 +33,7 @@ def tooth_torque(gap: float, closing: float, play: float, stiffness: float, damp
     return 0.0
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def press_teeth(X: Array, units: Array, inputs: Array, slopes: Array) -> None:
     """Put what each toothed wheel and its motor do to each other: equal and opposite, both seen at the wheel."""
     for i in range(units.shape[0]):

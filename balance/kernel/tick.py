@@ -3,9 +3,9 @@
 from __future__ import annotations
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
+from balance.kernel.compiled import inlined, part
 from balance.kernel.layout import BALANCED
 from balance.kernel.sensing import GYRO, TILT, read_gyro, read_tilt
 
@@ -13,7 +13,7 @@ Array = NDArray[np.float64]
 Places = NDArray[np.int64]
 
 
-@njit(cache=True, error_model="numpy")
+@part
 def measure(X: Array, acceleration: float, hinge: tuple[float, float], body: Array, places: Places, sensor: Array,
             seed: int, sample: int, y: Array) -> None:
     """Fill y with the states at `places`: place 0 is read as lean, θ - θ_b; TILT and GYRO are read by the sensor."""
@@ -26,7 +26,7 @@ def measure(X: Array, acceleration: float, hinge: tuple[float, float], body: Arr
             y[j] = X[places[j]] - body[BALANCED] if places[j] == 0 else X[places[j]]
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def reads_sensor(places: Places) -> bool:
     """Return whether any measurement is the inertial sensor's."""
     found = False
@@ -35,7 +35,7 @@ def reads_sensor(places: Places) -> bool:
     return found
 
 
-@njit(cache=True, error_model="numpy")
+@part
 def law_tick(x: Array, y: Array, A: Array, B: Array, E: Array, C: Array, D: Array, most: float,
              spare: Array) -> tuple[float, float]:
     """Return (v, v' = clip(v, ±most)) and move the memory x on: v = C x + D y, x⁺ = A x + B y + E v'."""
@@ -57,7 +57,7 @@ def law_tick(x: Array, y: Array, A: Array, B: Array, E: Array, C: Array, D: Arra
     return v, limited
 
 
-@njit(cache=True, error_model="numpy")
+@part
 def share_out(v: float, y: Array, allotment: Array, levelling: Array, most: Array, line_share: Array,
               out: Array) -> bool:
     """Fill `out` with the units' inputs, allotment·v - levelling·y, each within ±most; return: was one limited.
@@ -89,14 +89,14 @@ def share_out(v: float, y: Array, allotment: Array, levelling: Array, most: Arra
     return limited
 
 
-@njit(cache=True, error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)
+@part
 def _room(missing: float, line_share: float, most: float, given: float) -> float:
     """Return the torque about the line a unit can still add toward `missing`, as a magnitude."""
     way = 1.0 if missing * line_share >= 0.0 else -1.0
     return abs(line_share) * max(most - way * given, 0.0)
 
 
-@njit(cache=True, error_model="numpy", forceinline=True)
+@inlined
 def servo_steps(rate: float, sample_time: float, asked: float, sent: float, resolution: float, dead_band: float,
                 most: float) -> tuple[float, float, float]:
     """Return (rate its drive turns at, angle asked for, angle sent) of a position servo in one sample.

@@ -1,0 +1,99 @@
+"""How the room's functions are compiled: `entry` for what Python calls, `part` and `inlined` for what stands inside.
+
+numba compiles every function on its own: it optimises and translates a callee again in each of its callers, level after
+level, which made more than half of the first run. A part's code is therefore left as it was lowered, and optimised once,
+in the entries it ends up in. A part that Python calls all the same (tests do) becomes an entry of its own by that.
+
+No function here allocates: with `_nrt=False` compiled code counts no references of arrays, which made five sixths of a
+trial (measured; not one bit changes).
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from typing import Any
+
+from numba import _dynfunc, njit, types
+from numba.core.codegen import JITCodeLibrary
+from numba.core.compiler import CompilerBase, DefaultPassBuilder
+from numba.core.compiler_machinery import PassManager, register_pass
+from numba.core.typed_passes import NativeLowering
+
+COMMON: dict[str, Any] = {"error_model": "numpy", "_nrt": False}
+"""Division by zero gives inf as in numpy: no branch for an exception."""
+
+
+class PartLibrary(JITCodeLibrary):  # type: ignore[misc]
+    """The code of one part and of what it calls, neither optimised nor translated."""
+
+    def finalize(self) -> None:
+        """Put in what the part calls, and leave it at that."""
+        self._raise_if_finalized()
+        for library in dict.fromkeys(self._linking_libraries):
+            self._reload_init.update(library._reload_init)
+            self._final_module.link_in(library._get_module_for_linking(), preserve=True)
+        self._finalized = True
+
+
+@register_pass(mutates_CFG=True, analysis_only=False)
+class PartLowering(NativeLowering):  # type: ignore[misc]
+    """numba's lowering into a `PartLibrary`; callers know the part by its name, there is no address to call."""
+
+    _name = "part_lowering"
+
+    def run_pass(self, state: Any) -> bool:
+        """Lower one part; True: the state was changed."""
+        state.library = PartLibrary(state.targetctx.codegen(), state.func_id.func_qualname)
+        state.flags.no_compile = True
+        changed = super().run_pass(state)
+        lowered = state["cr"]
+        name, module = state.func_id.func_name, lowered.fndesc.lookup_module()
+        stand_in = _dynfunc.make_function(module, name, "part of compiled code", 0, lowered.env, (state.library,))
+        state["cr"] = lowered._replace(cfunc=stand_in)
+        state.targetctx.insert_user_function(stand_in, lowered.fndesc, [state.library])
+        return bool(changed)
+
+
+class PartCompiler(CompilerBase):  # type: ignore[misc]
+    """numba's own passes with `PartLowering` in the place of its lowering."""
+
+    def define_pipelines(self) -> list[Any]:
+        """Return the one list of passes."""
+        passes = PassManager("part")
+        for kind, words in DefaultPassBuilder.define_nopython_pipeline(self.state).passes:
+            passes.add_pass(PartLowering if kind is NativeLowering else kind, words)
+        passes.finalize()
+        return [passes]
+
+
+class Part:
+    """A part: compiled code takes it for a compiled function; called from Python it compiles an entry of its own."""
+
+    def __init__(self, function: Callable[..., Any], **options: Any) -> None:
+        self.py_func = function
+        self.__doc__, self.__name__, self.__module__ = function.__doc__, function.__name__, function.__module__
+        self._entry: Any = None
+        lowered = njit(pipeline_class=PartCompiler, no_cpython_wrapper=True, no_cfunc_wrapper=True, **COMMON, **options)
+        self._dispatcher = lowered(function)
+        self._numba_type_ = types.Dispatcher(self._dispatcher)   # numba's name for "take this as"
+
+    def __call__(self, *given: Any) -> Any:
+        """Run the part compiled by itself."""
+        if self._entry is None:
+            self._entry = njit(cache=True, **COMMON)(self.py_func)
+        return self._entry(*given)
+
+
+def entry(function: Callable[..., Any]) -> Any:
+    """Compile what Python calls: optimised, kept on disk, free of the interpreter's lock."""
+    return njit(cache=True, nogil=True, no_cfunc_wrapper=True, **COMMON)(function)
+
+
+def part(function: Callable[..., Any]) -> Any:
+    """Compile what entries call."""
+    return Part(function)
+
+
+def inlined(function: Callable[..., Any]) -> Any:
+    """Compile what entries call in their hot loops: never a call."""
+    return Part(function, forceinline=True)
