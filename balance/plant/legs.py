@@ -109,18 +109,20 @@ def doubling(pole: float) -> float:
     return log(2.0) / pole if pole > 0.0 else inf
 
 
-def bound_scales(A: Array, trunk: Array, legs: Array, hinge: float, height: float) -> tuple[float, float, float, float]:
-    """Return (p, rad of lean, rad/s of lean rate, N·s at the centre of mass) per N·m·s of p-discounted torque.
+def bound_scales(A: Array, trunk: Array, legs: Array, share: float, stiff: float) -> tuple[float, ...] | None:
+    """Return (p, rad of lean, rad/s of lean rate, N·m·s of a push) per N·m·s of p-discounted torque; None: no such mode.
 
     Along an unstable mode with left eigenvector ℓ, ż = p z + ℓ·b T: what can be caught is |ℓ x₀| < |ℓ·b| ∫ e^{−ps} T ds,
-    with b the column of a torque on the trunk, x₀ a machine that leans or turns as one stiff piece, or was just pushed.
-    The fastest unstable mode counts; a second one only makes it harder.
+    with b the column of a torque on the trunk, x₀ a machine that leans or turns as one stiff piece, or was just pushed with
+    `share` of the moment on the legs.  The mode is the toppling: the real one nearest to the pole on stiff legs, `stiff`.
+    A second unstable mode only makes it harder.
     """
     values, left = np.linalg.eig(A.T)
-    fastest = int(np.argmax(values.real))
-    p, row = float(values[fastest].real), left[:, fastest].real
+    real = np.flatnonzero((np.abs(values.imag) <= 1e-9 * np.abs(values)) & (values.real > 0.0))
+    if not len(real):
+        return None
+    at_ = int(real[np.argmin(np.abs(np.log(values.real[real] / stiff)))])
+    row = left[:, at_].real
     able = abs(float(row @ trunk))
-    pushed = (height - hinge) * trunk + hinge * legs
-    starts = (row[0] + row[-2], row[1] + row[-1], float(row @ pushed))
-    lean, rate, push = (able / abs(x) for x in starts)
-    return p, float(lean), float(rate), float(push)
+    starts = (row[0] + row[-2], row[1] + row[-1], float(row @ ((1.0 - share) * trunk + share * legs)))
+    return (float(values[at_].real), *(float(able / abs(x)) for x in starts))

@@ -68,11 +68,15 @@ def on_legs(stiff: Plant, legs: Array, push: Array) -> Plant:
 
 
 def _bounds(stiff: Plant, model: LinearModel, legs: Array) -> Bounds:
-    """Return the closed-form bounds along the fastest unstable mode; those of stiff legs where nothing topples."""
+    """Return the closed-form bounds along the toppling mode; those of stiff legs where nothing topples."""
+    height = stiff.stance.height
     if stiff.pole == 0.0 or model.on_legs is None:
         return stiff.bounds
-    p, lean, rate, push = bound_scales(model.A, model.disturbance, model.on_legs, float(legs[at.HINGE]), stiff.stance.height)
-    able = float(sum(discounted(row, p) for row in stiff.unit_parameters))
+    scales = bound_scales(model.A, model.disturbance, model.on_legs, float(legs[at.HINGE]) / height, stiff.pole)
+    if scales is None:
+        return stiff.bounds
+    p, lean, rate, moment = scales
+    able, push = float(sum(discounted(row, p) for row in stiff.unit_parameters)), moment / height
     only, kick = lean * stiff.torque_limit / p, lean * stiff.momentum_capacity
     gimballed = all(u.kind != "reaction wheel" for u in stiff.units)
     return Bounds(lean * able, rate * able, push * able, only, kick, limited_by(lean * able, only, kick, gimballed))

@@ -6,6 +6,7 @@ from dataclasses import replace
 
 import numpy as np
 import pytest
+from scipy.linalg import expm
 
 from balance.base.errors import InputError
 from balance.kernel import layout as at
@@ -13,7 +14,7 @@ from balance.kernel.equations import derivative
 from balance.machine.legs import LegCompliance
 from balance.machine.read import read_machine
 from balance.plant.build import build_plant
-from balance.plant.legs import balance_on
+from balance.plant.legs import balance_on, bound_scales
 from balance.simulate.setup import kernel_units
 from balance.stance.build import build_stance
 from tests.plant.random_plants import random_plant_on_legs
@@ -116,3 +117,22 @@ def test_a_point_mass_cannot_turn_on_a_hinge():
                       leg_compliance=LegCompliance(0.15, 100.0))
     with pytest.raises(InputError, match="inertia about its own centre"):
         build_plant(machine, build_stance(machine, "line"))
+
+
+@pytest.mark.parametrize("start", ["lean", "lean_rate", "impulse"])
+def test_the_bound_is_where_full_torque_just_turns_the_fall(start):
+    """The linear model on soft legs under all the torque for ever, by exponentials: 1 % below comes back, above not."""
+    plant = rig(height=0.15, stiffness=25.0, damping=0.3)
+    model, torque = plant.model, 0.5
+    p = plant.unstable_pole
+    _, lean, rate, moment = bound_scales(model.A, model.disturbance, model.on_legs, 0.15 / 0.28, plant.stiff.pole)
+    n = len(model.states)
+    piece = np.zeros(n)
+    piece[[0, n - 2] if start == "lean" else [1, n - 1]] = 1.0
+    share = 0.15 / 0.28
+    x0 = {"lean": lean * piece, "lean_rate": rate * piece,
+          "impulse": moment * ((1 - share) * model.disturbance + share * model.on_legs)}[start] * torque / p
+    A = np.block([[model.A, -torque * model.disturbance[:, None]], [np.zeros((1, n + 1))]])
+    for part, back in ((0.99, True), (1.01, False)):
+        end = expm(A * 3.0) @ np.append(part * x0, 1.0)                     # e^{3 p} = 5e6: the mode alone is left
+        assert (end[0] < 0.0) == back
