@@ -68,6 +68,7 @@ class Drawing:
     balanced_lean: float    # degrees
     height: float           # mm
     offset: float           # mm
+    hinge: float            # mm above the line where the legs give; NaN: they are stiff
 
 
 @dataclass(frozen=True)
@@ -164,4 +165,5 @@ def outline(machine: Machine, stance: Stance, plant: Plant | None) -> Drawing:
         machine=machine.machine, stance=stance.name, acts=plant is None or plant.acts,
         top=view(machine, stance, plant, above), side=view(machine, stance, plant, along),
         outward=np.asarray(stance.w_W)[:2], balanced_lean=math.degrees(lean),
-        height=MM * stance.height, offset=MM * stance.offset)
+        height=MM * stance.height, offset=MM * stance.offset,
+        hinge=MM * machine.leg_compliance.height if machine.leg_compliance else math.nan)

@@ -15,6 +15,7 @@ from balance.machine.legs import LegCompliance
 from balance.machine.read import read_machine
 from balance.plant.build import build_plant
 from balance.plant.legs import balance_on, bound_scales
+from balance.plant.statespace import to_statespace
 from balance.simulate.setup import kernel_units
 from balance.stance.build import build_stance
 from tests.plant.random_plants import random_plant_on_legs
@@ -136,3 +137,10 @@ def test_the_bound_is_where_full_torque_just_turns_the_fall(start):
     for part, back in ((0.99, True), (1.01, False)):
         end = expm(A * 3.0) @ np.append(part * x0, 1.0)                     # e^{3 p} = 5e6: the mode alone is left
         assert (end[0] < 0.0) == back
+
+
+def test_the_state_space_names_the_legs():
+    plant = rig(height=0.15, stiffness=25.0, damping=0.3)
+    model = to_statespace(plant)
+    assert model.state_labels == ["lean", "lean_rate", "wheel_speed", "legs_lean", "legs_lean_rate"]
+    assert sorted(model.poles().real)[-1] == pytest.approx(plant.unstable_pole)

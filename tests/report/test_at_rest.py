@@ -81,3 +81,21 @@ def test_a_pair_that_needs_a_link_is_a_caution():
     plants = tuple(build_plant(loose, build_stance(loose, s)) for s in loose.stance_names())
     assert len(link_cautions(plants)) == 3
     assert "caution: gyros on on-fore-right" in show_plant(plants).replace("\n  ", " ")
+
+
+def test_one_wheel_on_three_lines_loses_by_the_cosine():
+    """α = a·e per contact line; what does not act is told: cos 30° loses 13 %, a wheel along x has nothing about y."""
+    machine = read_machine("plants/trellis-scout.yaml")
+    machine = replace(machine, stabilisers={"long-wheel": machine.stabilisers["long-wheel"]})
+    plants = tuple(build_plant(machine, build_stance(machine, s)) for s in machine.stance_names())
+    lines = show_plant(plants).splitlines()
+    rows = {p.stance.name: next(x for x in lines if x.startswith(p.stance.name) and "long-wheel" in x) for p in plants}
+    for plant in plants:
+        share = float(plant.stance.e_W[0])                                  # the trunk stands straight: a = world x
+        row = rows[plant.stance.name]
+        assert f"{share:+.4f}".replace("-", "−") in row
+        loss = "all: square" if abs(share) < 1e-9 else f" {100 * (1 - abs(share)):.0f}\u00a0%"
+        assert loss in row
+    assert "all: square" in rows["on-left-right"]
+    assert plants[1].acts
+    assert not plants[0].acts

@@ -59,6 +59,8 @@ def fill_side(axes: Axes, drawing: Drawing) -> None:
     axes.plot([0.0, 0.0], [0.0, 1.12 * max(drawing.height, 1.0)], color=SLATE, ls=DOTTED, lw=1.0, zorder=6)
     axes.plot([0.0, view.centre[0]], [0.0, view.centre[1]], color=NAVY, lw=1.0, zorder=6)
     axes.plot([0.0], [0.0], "o", color=RUST, ms=6, zorder=8)
+    if np.isfinite(drawing.hinge):
+        axes.plot([0.0], [drawing.hinge], "s", mfc="white", mec=PLUM, mew=1.4, ms=7, zorder=8)
     draw_centre(axes, view)
     axes.set_xlabel("Across the line, outward (mm)")
     axes.set_ylabel("Above the line (mm)")
@@ -185,6 +187,8 @@ def key(drawing: Drawing) -> list[Line2D]:
                Line2D([], [], ls="", marker="D", mfc="none", mec=NAVY, ms=7, label="same, at the balanced lean")]
     if any(up for _, up, _ in view.feet):
         samples.append(Line2D([], [], ls="", marker="o", mfc="white", mec=INK, label="lifted foot"))
+    if np.isfinite(drawing.hinge):
+        samples.append(Line2D([], [], ls="", marker="s", mfc="white", mec=PLUM, mew=1.4, label="where the legs give"))
     if len(view.polygon) > 2:
         samples.append(Line2D([], [], color=SLATE, ls=DOTTED, label="feet when all are down"))
     if view.axles:
