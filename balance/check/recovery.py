@@ -89,7 +89,7 @@ def feet_verdicts(stance: str, trials: Sequence[TrialResult], grip: bool) -> lis
     if lifted:
         verdicts.append(Verdict("feet_on_ground", stance, "lifted", "", "on the ground", "is", False, _told(
             lifted[0], "lift_off", "carries no load", "the feet carry no load at one moment")))
-    slipped = [r for r in trials if any(math.isfinite(foot.slip) for foot in r.feet)]
+    slipped = [r for r in trials if not r.verdict.startswith("fell") and any(math.isfinite(foot.slip) for foot in r.feet)]
     if grip and slipped:
         verdicts.append(Verdict("feet_grip", stance, "slipped", "", "hold", "is", False,
                                 _told(slipped[0], "slip", "needs more friction than the feet have", "")))

@@ -31,6 +31,17 @@ def lifted(metrics: Array) -> bool:
     return bool(np.isfinite(_rows(metrics)[:, outcome.LIFT_OFF]).any())
 
 
+def feet_story(feet: tuple[FootLoad, ...]) -> str:
+    """Return what each foot does first that a foot must not do, in words; "" where both stay where they are."""
+    told = []
+    for foot in feet:
+        done = [(when, what) for when, what in ((foot.lift_off, "lifts"), (foot.slip, "slips")) if math.isfinite(when)]
+        if done:
+            when, what = min(done)
+            told.append((when, f"foot {foot.foot} {what} at {when:.2f} s"))
+    return ", ".join(words for _, words in sorted(told))
+
+
 def _rows(metrics: Array) -> Array:
     """Return the metrics of the feet, (2, FOOT_SIZE); the second stands as it began where both are looked at together."""
     return metrics[outcome.FEET:outcome.FEET + 2 * outcome.FOOT_SIZE].reshape(2, outcome.FOOT_SIZE)

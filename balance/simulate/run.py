@@ -23,7 +23,7 @@ from balance.machine.machine import Machine
 from balance.plant.legs import balance_on
 from balance.plant.record import Plant
 from balance.simulate.events import Happening, directions, happening
-from balance.simulate.ground import foot_loads, lifted, most_friction
+from balance.simulate.ground import feet_story, foot_loads, lifted, most_friction
 from balance.simulate.records import Trace, TrialResult
 from balance.simulate.setup import empty_output, kernel_units, law_arrays, start_state
 from balance.simulate.stepped import Controller, run_stepped
@@ -130,6 +130,9 @@ def _result(design: Design, name: str, event: Happening, ended: int, output: Out
         reason = "no limit was met: the law itself did not hold it"
     if verdict == "did not settle" and running_away and not math.isinf(settled):
         reason = _and(reason, f"stored momentum still grows and would be full {full_in:.2g} s later")
+    feet = foot_loads(plant.stance, metrics)
+    if ended == outcome.RAN:
+        reason = _and(reason, feet_story(feet))
     return TrialResult(
         name=name, stance=plant.stance.name, toward=event.toward, verdict=verdict, reason=reason,
         peak_lean=float(metrics[outcome.PEAK_LEAN]), peak_lean_rate=float(metrics[outcome.PEAK_RATE]), settling_time=settled,
@@ -138,7 +141,7 @@ def _result(design: Design, name: str, event: Happening, ended: int, output: Out
         momentum_used=_share(float(metrics[outcome.PEAK_MOMENTUM]), float(plant.momentum_capacity)),
         rms_torque=math.sqrt(metrics[outcome.TORQUE_SQUARED] / metrics[outcome.END_TIME]),
         peak_current=float(metrics[outcome.PEAK_CURRENT]), peak_bus_power=float(metrics[outcome.PEAK_POWER]),
-        friction_needed=most_friction(metrics), lift_off=lifted(metrics), feet=foot_loads(plant.stance, metrics),
+        friction_needed=most_friction(metrics), lift_off=lifted(metrics), feet=feet,
         standing_swing=standing_swing(time, lean) if ended == outcome.RAN else math.inf,
         end_lean=float(metrics[outcome.END_LEAN]), end_momentum=float(metrics[outcome.END_MOMENTUM]),
         peak_bus_voltage=_of_bus(plant, metrics[outcome.PEAK_BUS]),
@@ -175,5 +178,5 @@ def _share(peak: float, capacity: float) -> float:
 
 
 def _and(reason: str, more: str) -> str:
-    """Join two reasons."""
-    return f"{reason}; {more}" if reason else more
+    """Join two reasons, of which either may be empty."""
+    return "; ".join(one for one in (reason, more) if one)

@@ -72,6 +72,21 @@ def test_the_short_wheel_does_not_pass_and_says_what_runs_out_and_by_how_much(ch
     assert answer["gains"]["stances"][0]["margins"]["stable"]
 
 
+@pytest.mark.parametrize("name", ["quay-gyros", "scout-wheels", "scout-built"])
+def test_both_feet_of_a_walker_stay_where_they_are_in_every_trial(checked, name: str) -> None:
+    """Each foot on the line carries some load and holds; three numbers know no feet (the twin)."""
+    _, answer = checked(name)
+    lines = {s["stance"]: [s["line"]["from"], s["line"]["to"]] for s in answer["plant"]["stances"]}
+    for trial in answer["recover"]["trials"]:
+        feet = trial["feet"]
+        assert [foot["foot"] for foot in feet] == lines[trial["stance"]]
+        assert all(foot["least_load_n"] > 0.0 for foot in feet)
+        assert all(foot["lift_off_s"] is None and foot["slip_s"] is None for foot in feet)
+        assert trial["friction_needed"] == max(foot["friction_needed"] for foot in feet)
+    _, rig = checked("bench-rig")
+    assert [trial["feet"] for trial in rig["recover"]["trials"]] == [[]] * len(rig["recover"]["trials"])
+
+
 @pytest.mark.parametrize("name", DESIGNS)
 def test_every_design_is_judged_on_its_worst_case_where_tolerances_are_stated(checked, name: str) -> None:
     _, answer = checked(name)

@@ -133,7 +133,10 @@ def test_each_foot_has_its_loads_and_a_machine_of_three_numbers_has_none(quay, r
     body = quay[2].plant.body_parameters.copy()
     body[at.FRICTION] = 0.5 * result.friction_needed
     soap = replace(quay[2], plant=replace(quay[2].plant, body_parameters=body))
-    assert all(0.1 <= foot.slip < 0.5 for foot in ran(quay, trial, design=soap).feet)
+    slips = ran(quay, trial, design=soap)
+    assert all(0.1 <= foot.slip < 0.5 for foot in slips.feet)
+    assert f"foot {stance.foot_from} slips at {slips.feet[0].slip:.2f} s" in slips.reason
+    assert "slips" not in result.reason
     lumped = ran(rig, trial)
     assert lumped.feet == ()
     assert 0.0 < lumped.friction_needed < math.inf
