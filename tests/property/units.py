@@ -16,7 +16,7 @@ EXPONENTS: dict[str, tuple[float, float, float, float]] = {
     "inertia": (1, 2, 0, 0), "torque": (1, 2, -2, 0), "angular stiffness": (1, 2, -2, 0), "angular damping": (1, 2, -1, 0),
     "torque constant": (1, 2, -2, -1), "voltage": (1, 2, -3, -1), "resistance": (1, 2, -3, -2), "inductance": (1, 2, -2, -2),
     "capacitance": (-1, -2, 4, 2), "gyro noise": (0, 0, -0.5, 0), "acceleration noise": (0, 1, -1.5, 0),
-    "momentum": (1, 2, -1, 0),
+    "momentum": (1, 2, -1, 0), "impulse": (1, 1, -1, 0),
 }
 
 

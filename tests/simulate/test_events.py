@@ -122,6 +122,9 @@ def test_gusts_are_pieces_of_straight_line_and_end():
     assert happens.events.torques.shape[0] == 2
     assert happens.quiet_from == pytest.approx(0.4)
     assert happens.end_torque == 0.0
+    assert list(happens.events.torques[:, outcome.LEVER]) == [math.inf] * 2          # a torque is stated
+    wind = Gusts("x.csv", 0.45, points=((0.0, 0.0), (0.2, 0.4), (0.3, 0.0)), lever=0.45)
+    assert list(happening(Trial(gusts=wind), "outward").events.torques[:, outcome.LEVER]) == [0.45] * 2
 
 
 def test_a_load_adds_its_mass_at_its_place():
