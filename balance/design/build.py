@@ -64,10 +64,14 @@ def _ideal(plant: Plant, control: LqrControl) -> Ideal | None:
 
 def law_for(plant: Plant, goal: Goal) -> Law | str:
     """Return the law with its estimator, made for the plant as firmware sees it (`Plant.for_law`), or why there is none."""
-    plant = plant.for_law
-    sampled = sample_plant(plant, 1.0 / goal.loop.rate, goal.loop.latency)
+    T = 1.0 / goal.loop.rate
+    true, plant = plant, plant.for_law
+    sampled = sample_plant(plant, T, goal.loop.latency)
     check_noise(plant, goal)
-    found = _law(plant, sampled, goal)
+    if isinstance(goal.control, PidControl):                 # its search sees the loop as it is, legs that give included
+        found = design_pid(plant, sampled if true is plant else sample_plant(true, T, goal.loop.latency), goal)
+    else:
+        found = _lqr(plant, sampled, goal, goal.control)
     if isinstance(found, str) or isinstance(goal.estimator, NoEstimator):
         return found
     if isinstance(goal.estimator, Complementary):
@@ -78,14 +82,12 @@ def law_for(plant: Plant, goal: Goal) -> Law | str:
         return "no Kalman filter with these noises: its Riccati equation has no stabilising solution"
 
 
-def _law(plant: Plant, sampled: SampledPlant, goal: Goal) -> Law | str:
+def _lqr(plant: Plant, sampled: SampledPlant, goal: Goal, control: LqrControl) -> Law | str:
     """Return the law or why there is none."""
-    if isinstance(goal.control, PidControl):
-        return design_pid(plant, sampled, goal)
-    check_weights(plant, goal, goal.control)
+    check_weights(plant, goal, control)
     limits = loop_limits(plant, sampled.sample_time, sampled.latency)
     try:
-        return lqr_law(plant, sampled, goal.control)
+        return lqr_law(plant, sampled, control)
     except np.linalg.LinAlgError:
         return (f"no gains stabilise this loop in double precision: the unstable pole times the delay is "
                 f"{limits.pole_times_delay:.2f}, so |T| would be at least {limits.least_peak_complementary:.3g}: "

@@ -25,6 +25,9 @@ NOISE_SHARE = 0.05
 DAMPING = 0.4
 """Least damping ratio of any mode: below it a disturbance rings on."""
 
+LEFT = 0.8
+"""Share of the legs' own damping that the loop must leave them."""
+
 FILTER_SHARE = 0.2
 """Derivative filter over sample rate, where the file states none."""
 
@@ -37,6 +40,8 @@ RUNS_AWAY = ("a PID on the lean alone lets the stored momentum run away: the lea
 
 def design_pid(plant: Plant, sampled: SampledPlant, goal: Goal) -> Law | str:
     """Return the PID law, or in plain words why there is none.
+
+    `plant` is the machine as firmware sees it (stiff legs); `sampled` the machine as it is: gains are computed on that loop.
 
     Computed gains: the largest ki (least integrated lean after a step torque) that keeps `peak_sensitivity`, the
     margins under `require` and the noise limit (`pid_tune`).  The user's own gains are judged, not changed, except
@@ -64,7 +69,7 @@ def _computed(plant: Plant, sampled: SampledPlant, require: Requirements, contro
     nearest = inf
     for time in times:
         form = PidForm(0.0, 1.0, 0.0, 1.0 / (plant.stiffness * time), bandwidth, 1.0 / plant.pole)
-        found, over = search(prepare(plant, sensed, form, act), form, wanted, DAMPING)
+        found, over = search(prepare(plant, sensed, form, act), form, wanted, _damping(sampled.plant))
         nearest = min(nearest, over)
         if found is not None and over <= 0.0:
             return pid_law(plant, replace(found, tracking=tracking(found.kp, found.kd, plant.pole)), act,
@@ -84,6 +89,11 @@ def tracking(kp: float, kd: float, pole: float) -> float:
     return min(0.5 * kd / kp if kp > 0.0 and kd > 0.0 else 1.0, 0.2 / pole)
 
 
+def _damping(plant: Plant) -> float:
+    """Return the least damping ratio asked of every mode; legs that give ring as they do, and may lose a fifth of it."""
+    return DAMPING if plant.legs is None else min(DAMPING, LEFT * plant.legs.damping)
+
+
 def perfect_sensors(sampled: SampledPlant, plant: Plant) -> Sensed:
     """Return the sampled plant with lean and lean rate measured under a small sensor's noise, unit states exactly."""
     n, N = len(plant.model.states), len(sampled.A)
@@ -92,7 +102,8 @@ def perfect_sensors(sampled: SampledPlant, plant: Plant) -> Sensed:
     F = np.zeros((n, 2))
     F[0, 0] = F[1, 1] = 1.0
     sigma = np.array([GYRO_NOISE, GYRO_NOISE * sqrt(0.5 / sampled.sample_time)])
-    return Sensed(sampled.A, sampled.B, sampled.C[:n], np.zeros((N, 2)), F, sigma, np.eye(N)[0], padded, sampled.sample_time)
+    C = sampled.rows(plant.model.states)
+    return Sensed(sampled.A, sampled.B, C, np.zeros((N, 2)), F, sigma, np.eye(N)[0], padded, sampled.sample_time)
 
 
 def _wanted(plant: Plant, require: Requirements, control: PidControl) -> Wanted:

@@ -1,7 +1,7 @@
 """Legs that give, as the plant has them: their row for the kernel, where they balance, and what they make of the modes.
 
-What firmware can measure is the trunk, so a law is made for the machine on stiff legs; poles, margins and trials are those
-of the machine as it is.  Equations: `kernel.legs`.
+What firmware can measure is the trunk, so a law feeds back what stiff legs have; poles, margins and trials are those of the
+machine as it is.  Equations: `kernel.legs`.
 """
 
 from __future__ import annotations

@@ -8,7 +8,7 @@ import numpy as np
 import pytest
 
 from balance.api.load import load
-from balance.design.build import design_stance
+from balance.design.build import design_stance, measured
 from balance.design.loop import close, sample_plant
 from balance.design.robustness.ranges import ranges_of
 from balance.design.robustness.worst import worst_case
@@ -70,6 +70,20 @@ def test_legs_that_ring_or_sag_lose_the_loop(stiffness, damping, kept):
     design, _, _ = designed(height=0.15, stiffness=stiffness, damping=damping)
     assert design.margins.stable == kept
     assert design.plant.stiff is not None
+
+
+def test_a_pid_is_computed_on_the_loop_that_gives():
+    """The gains for stiff legs miss what is asked on soft ones; those computed on them are lower and keep it."""
+    give = {"height": 0.15, "stiffness": 600.0, "damping": 1.2}
+    soft, goal, _ = designed("bench-rig-pid", **give)
+    stiff, _, _ = designed("bench-rig-pid")
+    assert soft.margins.stable
+    assert soft.margins.peak_sensitivity <= goal.require.peak_sensitivity * 1.02           # the search's own grid
+    gains = {name: (soft.law.gains[name], stiff.law.gains[name]) for name in ("kp", "ki", "kd")}
+    assert all(ours < theirs for ours, theirs in gains.values())
+    carried = measured(soft.plant, sample_plant(soft.plant, 1.0 / goal.loop.rate, goal.loop.latency), stiff.law, goal)
+    assert carried.margins.gain_upper < goal.require.gain_margin_upper <= soft.margins.gain_upper
+    assert soft.law.measurements == stiff.law.measurements
 
 
 def test_a_weight_that_slips_costs_more_on_soft_legs():
