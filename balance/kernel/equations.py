@@ -113,7 +113,10 @@ def gimbal_terms(i: int, gamma: float, gamma_dot: float, theta_dot: float,
 
 @inlined
 def lean_acceleration(X: Array, inputs: Array, disturbance: float, body: Array, units: Array, out: Array) -> float:
-    """Return θ̈; `out[3 + 2i]` in: NaN, or ±torque of a servo at its limit; out: the gimbals' drive torque."""
+    """Return θ̈; `out[3 + 2i]` in: NaN, or ±torque of a servo at its limit.
+
+    Of legs that give it leaves χ̈ at θ̈ = 0 in `out[2 + 2i]` and in `out[3 + 2i]` what θ̈ takes off it.
+    """
     added, push = rolling(X[0], X[1], body)
     mass = body[INERTIA] + added
     torque = gravity_torque(X[0], body) + push + disturbance - body[BODY_DRAG] * X[1]
@@ -122,8 +125,9 @@ def lean_acceleration(X: Array, inputs: Array, disturbance: float, body: Array, 
             if units[i, COUPLING] == 0.0:                  # square to the line, or no wheel at all: legs, the supply
                 if units[i, ROLE] == LEGS:
                     more, line, coupling, own, back = legs_terms(X, i, body, units)
-                    mass += more - coupling**2 / own
-                    torque += line - coupling / own * (inputs[i] + back)
+                    out[2 + 2 * i], out[3 + 2 * i] = (inputs[i] + back) / own, coupling / own
+                    mass += more - coupling * out[3 + 2 * i]
+                    torque += line - coupling * out[2 + 2 * i]
                 continue
             net = inputs[i] - wheel_drag(X[2 + 2 * i], units[i, COULOMB], units[i, VISCOUS], units[i, STICTION])
             mass -= units[i, COUPLING] ** 2 / units[i, OWN_INERTIA]
@@ -163,7 +167,7 @@ def derivative(X: Array, inputs: Array, disturbance: float, body: Array, units: 
         acceleration = lean_acceleration(X, inputs, disturbance, body, units, out)
     out[0], out[1] = X[1], acceleration
     for i in range(units.shape[0]):
-        unit_rates(i, X, inputs[i], acceleration, body, units, out)
+        unit_rates(i, X, inputs[i], acceleration, units, out)
 
 
 @inlined
@@ -175,11 +179,10 @@ def servo_torque(i: int, X: Array, rate: float, acceleration: float, units: Arra
 
 
 @inlined
-def unit_rates(i: int, X: Array, given: float, acceleration: float, body: Array, units: Array, out: Array) -> None:
+def unit_rates(i: int, X: Array, given: float, acceleration: float, units: Array, out: Array) -> None:
     """Fill the two rates of unit i. A wheel's second state, its current, belongs to the drive: rate 0 here."""
     if units[i, KIND] == WHEEL and units[i, COUPLING] == 0.0 and units[i, ROLE] == LEGS:
-        _, _, coupling, own, back = legs_terms(X, i, body, units)
-        out[2 + 2 * i] = (given + back - coupling * acceleration) / own
+        out[2 + 2 * i] -= out[3 + 2 * i] * acceleration
         out[3 + 2 * i] = X[2 + 2 * i]
         return
     if units[i, KIND] == WHEEL:

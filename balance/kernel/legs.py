@@ -57,14 +57,15 @@ def legs_mass(flex: float, mass: float, height: float, offset: float, hinge: flo
 def legs_terms(X: Array, i: int, body: Array, units: Array) -> tuple[float, float, float, float, float]:
     """Return (added inertia, torque on the trunk, coupling, own inertia, torque on the legs) of the legs in row i."""
     psi, chi, psi_dot, chi_dot = X[0], X[3 + 2 * i], X[1], X[2 + 2 * i]
-    m, h, d, L = body[MASS], body[HEIGHT], body[OFFSET], units[i, HINGE]
-    added, coupling, own = legs_mass(psi - chi, m, h, d, L)
-    whirl = m * L * ((h - L) * np.sin(psi - chi) + d * np.cos(psi - chi))
-    weight = m * body[GRAVITY] * L
+    sp, cp, sc, cc = np.sin(psi), np.cos(psi), np.sin(chi), np.cos(chi)
+    sine, cosine = sp * cc - cp * sc, cp * cc + sp * sc                # of Δ: the functions are the dear part
+    h, d, L = body[HEIGHT] - units[i, HINGE], body[OFFSET], units[i, HINGE]
+    mL = body[MASS] * L
+    whirl = mL * (h * sine + d * cosine)
     spring = units[i, HINGE_STIFFNESS] * (psi - chi) + units[i, HINGE_DAMPING] * (psi_dot - chi_dot)
-    on_trunk = -weight * np.sin(psi) - spring - whirl * chi_dot**2 + body[BODY_DRAG] * psi_dot
-    on_legs = weight * np.sin(chi) + spring + whirl * psi_dot**2 - body[BODY_DRAG] * chi_dot
-    return added, on_trunk, coupling, own, on_legs
+    on_trunk = -mL * body[GRAVITY] * sp - spring - whirl * chi_dot**2 + body[BODY_DRAG] * psi_dot
+    on_legs = mL * body[GRAVITY] * sc + spring + whirl * psi_dot**2 - body[BODY_DRAG] * chi_dot
+    return mL * (L - 2.0 * body[HEIGHT]), on_trunk, mL * (h * cosine - d * sine), mL * L, on_legs
 
 
 @inlined
