@@ -7,6 +7,8 @@ from dataclasses import replace
 import numpy as np
 
 from balance.api.load import load
+from balance.design.loop import close, sample_plant
+from balance.design.records import Design
 from balance.goal.goal import Allow, Goal, Loop, LqrControl
 from balance.machine.machine import Lumped, Machine
 from balance.machine.motors import Motor, Supply
@@ -49,6 +51,20 @@ def random_plant(rng: np.random.Generator) -> Plant:
     inertia = mass * height**2 * rng.uniform(1.1, 2.5)
     spin = inertia * float(np.exp(rng.uniform(np.log(2e-3), np.log(5e-2))))
     return plant_of(wheel_machine(mass, height, inertia, spin, rng.choice([0.0, 1e-5, 1e-3]), rng.uniform(50, 1000)))
+
+
+def linear_leans(design: Design, start: dict[str, float], count: int) -> np.ndarray:
+    """Return the lean at `count` samples of the linear closed loop from the named plant states and memory places."""
+    sampled = sample_plant(design.plant, design.law.sample_time, design.law.latency)
+    A, names = close(sampled, design.law), (*sampled.states, *design.law.memory)
+    x = np.zeros(len(A))
+    for name, value in start.items():
+        x[names.index(name)] = value
+    leans = []
+    for _ in range(count):
+        leans.append(x[0])
+        x = A @ x
+    return np.array(leans)
 
 
 def shipped(design: str, stance: str, **changes) -> tuple[Plant, Goal]:

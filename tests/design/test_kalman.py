@@ -20,7 +20,7 @@ from balance.goal.read import read_goal
 from balance.goal.trials import LiftOff, Start, Trial
 from balance.kernel.sensing import ACCEL_NOISE, GYRO_BIAS, GYRO_NOISE, TILT_BIAS
 from balance.simulate.run import run_one
-from tests.design.machines import shipped
+from tests.design.machines import linear_leans, shipped
 
 RIG = ("bench-rig-sensed", "line")
 
@@ -86,16 +86,8 @@ def test_nonlinear_simulator_and_linear_loop_are_one():
     units[:, 4] = 0.0                                                    # Coulomb drag is not linear
     design = replace(design, plant=replace(design.plant, unit_parameters=units))
     run = run_one(design, goal, "small", Trial(start=Start(1e-4, 0.0, 0.0, "outward"), lasts=1.0), "outward", True)
-    sampled = sample_plant(design.plant, design.law.sample_time, design.law.latency)
-    A = close(sampled, design.law)
-    x = np.zeros(len(A))
-    x[0] = 1e-4
-    x[len(sampled.A) + design.law.memory.index("lean_predicted")] = 1e-4
-    leans = []
-    for _ in range(len(run.trace.lean)):
-        leans.append(x[0])
-        x = A @ x
-    assert np.abs(np.array(leans) - run.trace.lean).max() < 1e-8
+    leans = linear_leans(design, {"lean": 1e-4, "lean_predicted": 1e-4}, len(run.trace.lean))
+    assert np.abs(leans - run.trace.lean).max() < 1e-8
     assert run.trace.lean[-1] != pytest.approx(run.trace.lean[0], rel=0.5)
 
 

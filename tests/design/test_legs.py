@@ -9,7 +9,7 @@ import pytest
 
 from balance.api.load import load
 from balance.design.build import design_stance, measured
-from balance.design.loop import close, sample_plant
+from balance.design.loop import sample_plant
 from balance.design.robustness.ranges import ranges_of
 from balance.design.robustness.worst import worst_case
 from balance.design.steady import standing
@@ -22,6 +22,7 @@ from balance.plant.build import build_plant
 from balance.plant.deviation import deviated
 from balance.simulate.run import run_one
 from balance.stance.build import build_stance
+from tests.design.machines import linear_leans
 
 
 def designed(name="bench-rig-sensed", **give):
@@ -41,16 +42,8 @@ def test_nonlinear_simulator_and_linear_loop_are_one(give):
     """A start 1e-4 rad off behind a complementary filter: the hinge's own acceleration is in what the sensor reads."""
     design, goal, _ = designed(**give)
     run = run_one(design, goal, "small", Trial(start=Start(1e-4, 0.0, 0.0, "outward"), lasts=0.4), "outward", True)
-    sampled = sample_plant(design.plant, design.law.sample_time, design.law.latency)
-    A = close(sampled, design.law)
-    x = np.zeros(len(A))
-    x[0] = x[sampled.states.index("legs_lean")] = 1e-4
-    x[len(sampled.A) + design.law.memory.index("lean_estimate")] = 1e-4
-    leans = []
-    for _ in range(len(run.trace.lean)):
-        leans.append(x[0])
-        x = A @ x
-    assert np.abs(np.array(leans) - run.trace.lean).max() < 1e-8
+    leans = linear_leans(design, {"lean": 1e-4, "legs_lean": 1e-4, "lean_estimate": 1e-4}, len(run.trace.lean))
+    assert np.abs(leans - run.trace.lean).max() < 1e-8
     assert np.abs(run.trace.lean).min() < 5e-5
 
 

@@ -9,7 +9,7 @@ from balance.kernel import layout as at
 from balance.kernel.feet import each_foot
 from balance.simulate.setup import kernel_units
 from tests.parity.reduced import reduced
-from tests.parity.test_random_machines import TOLERANCE, feet_of_the_engine, motion, random_state
+from tests.parity.test_random_machines import TOLERANCE, feet_of_the_engine, motion, random_state, unbalanced
 from tests.plant.random_plants import random_plant_on_legs
 
 STATES = 2
@@ -23,9 +23,7 @@ def residuals(machine, plant, engine, X, inputs, torque, units):
     angles["legs"], rates["legs"], a["legs"] = chi, chi_rate, dX[-2]
     applied["line"] -= spring
     applied["legs"] = spring + inputs[-1] - plant.body_parameters[at.BODY_DRAG] * chi_rate
-    M, bias = engine.equations(angles, rates)
-    terms = np.column_stack([M * [a[n] for n in engine.columns], bias, [-applied[n] for n in engine.columns]])
-    return np.abs(terms.sum(axis=1)) / np.abs(terms).max(axis=1)
+    return unbalanced(engine, angles, rates, a, applied)
 
 
 def on_legs(rng, plant):

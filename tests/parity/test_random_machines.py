@@ -66,6 +66,11 @@ def motion(machine, plant, engine, X, inputs, torque, units):
 def residuals(machine, plant, engine, X, inputs, torque, units):
     """Return each row's |M a + bias − applied| over its largest term, a being the kernel's accelerations."""
     angles, rates, a, applied, _ = motion(machine, plant, engine, X, inputs, torque, units)
+    return unbalanced(engine, angles, rates, a, applied)
+
+
+def unbalanced(engine, angles, rates, a, applied):
+    """Return each row's |M a + bias − applied| over its largest term."""
     M, bias = engine.equations(angles, rates)
     terms = np.column_stack([M * [a[n] for n in engine.columns], bias, [-applied[n] for n in engine.columns]])
     return np.abs(terms.sum(axis=1)) / np.abs(terms).max(axis=1)
