@@ -258,11 +258,15 @@ def jump(column: int, X: Array, body: Array, live: Array, inputs: Array, rest: A
     """
     for i in range(live.shape[0]):
         inputs[i] = 0.0
-    derivative(X, inputs, 0.0, body, live, rest)
-    about = 1.0
-    if column >= 0:
-        inputs[column] = 1.0
-        about = 0.0
-    derivative(X, inputs, about, body, live, push)
+    about = 0.0
+    for pushed in range(2):                                # one place that calls, since two would be compiled
+        if pushed == 1:
+            for j in range(X.size):
+                rest[j] = push[j]
+            if column >= 0:
+                inputs[column] = 1.0
+            else:
+                about = 1.0
+        derivative(X, inputs, about, body, live, push)
     for j in range(X.size):
         push[j] -= rest[j]

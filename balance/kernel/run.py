@@ -63,6 +63,7 @@ from balance.kernel.supply import bus_row, most_power
 from balance.kernel.tick import law_tick, measure, reads_sensor, servo_steps, share_out
 
 Array = NDArray[np.float64]
+Flags = NDArray[np.int64]
 
 TINY = 1e-9
 """Share of a sample time within which two instants are the same."""
@@ -236,26 +237,38 @@ def change(X: Array, t: float, tiny: float, units: Array, events: Events, work: 
         kick(X, blow - on_legs, np.int64(-1), work)
         kick(X, on_legs, np.int64(legs), work)
         shift = events.jumps[at[NEXT_JUMP], outcome.SHIFT]
-        for body in (work.body, work.base):
-            body[OFFSET] += shift
-            body[STIFF_COS] += body[MASS] * body[GRAVITY] * shift
+        shift_centre(shift, work.body)
+        shift_centre(shift, work.base)
         at[NEXT_JUMP] += 1
     while at[NEXT_CHANGE] < events.changes.shape[0] and events.changes[at[NEXT_CHANGE], outcome.AT] <= t + tiny:
         change_body(X, events.changes[at[NEXT_CHANGE]], work)
         at[NEXT_CHANGE] += 1
     while at[NEXT_BREAK] < events.breaks.size and events.breaks[at[NEXT_BREAK]] <= t + tiny:
         at[NEXT_BREAK] += 1
+    switch_torques(t + tiny, events.torques, work.active, at)
+    weaken_supply(t + tiny, units, events, work)
+
+
+@part
+def shift_centre(shift: float, body: Array) -> None:
+    """Move the centre of mass by `shift` m along w."""
+    body[OFFSET] += shift
+    body[STIFF_COS] += body[MASS] * body[GRAVITY] * shift
+
+
+@part
+def switch_torques(t: float, torques: Array, active: Array, at: Flags) -> None:
+    """Put the torques that act at t into the first rows of `active`; note how many, and whether one changes the body."""
     on = 0
     at[VARYING] = 0
-    for i in range(events.torques.shape[0]):
-        if events.torques[i, outcome.START] <= t + tiny and events.torques[i, outcome.END] > t + tiny:
+    for i in range(torques.shape[0]):
+        if torques[i, outcome.START] <= t < torques[i, outcome.END]:
             for j in range(outcome.TORQUE_SIZE):
-                work.active[on, j] = events.torques[i, j]
-                if outcome.OF_INERTIA <= j < outcome.LEVER and events.torques[i, j] != 0.0:
+                active[on, j] = torques[i, j]
+                if outcome.OF_INERTIA <= j < outcome.LEVER and torques[i, j] != 0.0:
                     at[VARYING] = 1
             on += 1
     at[TORQUES_ON] = on
-    weaken_supply(t + tiny, units, events, work)
 
 
 @part
