@@ -7,6 +7,7 @@ prints one line per command: seconds (the median), the ratio to a bare interpret
 
 from __future__ import annotations
 
+import os
 import statistics
 import subprocess
 import sys
@@ -33,32 +34,34 @@ class Timed:
         return f"{self.name:<44} {self.seconds:7.3f} s {self.seconds / self.bare:7.1f} x bare python{aim}"
 
 
-def one_run(words: tuple[str, ...]) -> float:
-    """Return the seconds one run takes; the command must end with 0."""
+def one_run(words: tuple[str, ...], compiled: str = "") -> float:
+    """Return the seconds one run takes; the command must end with 0. `compiled`: folder of compiled code, else one's own."""
+    there = {**os.environ, "NUMBA_CACHE_DIR": compiled} if compiled else None
     start = time.perf_counter()
-    subprocess.run([sys.executable, *words], cwd=ROOT, check=True, capture_output=True)
+    subprocess.run([sys.executable, *words], cwd=ROOT, env=there, check=True, capture_output=True)
     return time.perf_counter() - start
 
 
-def timed(name: str, words: tuple[str, ...], runs: int, target: float = 0.0) -> Timed:
+def timed(name: str, words: tuple[str, ...], runs: int, target: float = 0.0, compiled: str = "") -> Timed:
     """Time a command and the bare interpreter in turns, so that a busy machine slows both."""
     own, bare = [], []
     for _ in range(runs):
         bare.append(one_run(BARE))
-        own.append(one_run(words))
+        own.append(one_run(words, compiled))
     return Timed(name, statistics.median(own), statistics.median(bare), target)
 
 
 def measure(runs: int) -> list[Timed]:
-    """Time help, a mistake-free plant, and the main job cold (as this machine's caches are) and warm."""
-    with TemporaryDirectory() as folder:
+    """Time help, a mistake-free plant, the trials as first used after installing and again, and the main job."""
+    with TemporaryDirectory() as folder, TemporaryDirectory() as compiled:
+        recover = ("-m", "balance", "recover", "designs/bench-rig.yaml")
         check = ("-m", "balance", "check", "designs/bench-rig.yaml", "--out", folder)
-        first = timed("balance check bench-rig, first run", check, 1)
         return [
             timed("balance --help", ("-m", "balance", "--help"), 2 * runs, 0.25),
             timed("balance plant bench-rig", ("-m", "balance", "plant", "plants/bench-rig.yaml"), runs),
-            first,
-            timed("balance check bench-rig, warm", check, runs, 4.0),
+            timed("balance recover bench-rig, first use", recover, 1, 15.0, compiled),
+            timed("balance recover bench-rig, second use", recover, runs, 1.5, compiled),
+            timed("balance check bench-rig, warm", check, runs, 4.0, compiled),
         ]
 
 

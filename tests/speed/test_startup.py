@@ -12,8 +12,10 @@ def test_the_benchmark_prints_a_line_for_every_command(record_property) -> None:
     for line in lines:
         record_property(line.name, line.seconds / line.bare)
         print(line)
-    assert [line.name.split(",")[-1].strip() for line in lines[2:]] == ["first run", "warm"]
+    assert [line.name.split(",")[-1].strip() for line in lines[2:]] == ["first use", "second use", "warm"]
     assert all(line.seconds > 0 for line in lines)
+    first, second = lines[2:4]
+    assert first.seconds > 2.0 * second.seconds, "the first use found compiled code, or the second did not"
 
 
 def test_a_command_that_fails_is_no_benchmark() -> None:
