@@ -105,8 +105,8 @@ class Slope:
     """The ground gives way or rises in a step.
 
     `along` the line: one foot sinks, and less (or more) of the weight acts about the line. `across`: the ground rises
-    toward `toward`; the lifted foot meets it sooner or later, and foot balls roll on it. Two point feet themselves
-    feel no slope across their line.
+    toward `toward`; the lifted foot meets it sooner or later, foot balls roll on it, and the feet need more friction. Two
+    point feet lean no differently on a slope across their line.
     """
 
     along: float = quantity("angle", above=-0.7853981633974483, below=0.7853981633974483, default=0.0)

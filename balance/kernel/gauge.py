@@ -20,6 +20,7 @@ from balance.kernel.layout import (
     E_S0,
     FRICTION,
     GIMBAL_INERTIA,
+    GROUND_RISES,
     KIND,
     LENGTH,
     MOMENTUM,
@@ -137,14 +138,17 @@ def watch(t: float, h: float, X: Array, dX: Array, body: Array, units: Array, me
 def watch_feet(t: float, X: Array, dX: Array, push: float, body: Array, units: Array, metrics: Array) -> None:
     """Gather each foot's least load and needed friction at t, under a horizontal push in N; keep when it lifts or slips."""
     load_a, load_b, across_a, across_b, along = each_foot(X, dX, push, body, units)
+    flat, steep = np.cos(body[GROUND_RISES]), np.sin(body[GROUND_RISES])
+    total = (load_a + load_b) * flat - (across_a + across_b) * steep
     for foot in range(2 if body[LENGTH] > 0.0 else 1):
         at = outcome.FEET + foot * outcome.FOOT_SIZE
-        load, across = (load_a, across_a) if foot == 0 else (load_b, across_b)
+        up, aside = (load_a, across_a) if foot == 0 else (load_b, across_b)
+        load, across = up * flat - aside * steep, aside * flat + up * steep           # square to the ground, and along it
         metrics[at + outcome.LEAST_LOAD] = min(metrics[at + outcome.LEAST_LOAD], load)
         if load <= 0.0:
             metrics[at + outcome.LIFT_OFF] = min(metrics[at + outcome.LIFT_OFF], t)
             continue
-        needed = friction_needed(load, across, along, load_a + load_b)
+        needed = friction_needed(load, across, along, total)
         metrics[at + outcome.GRIP] = max(metrics[at + outcome.GRIP], needed)
         if needed > body[FRICTION]:
             metrics[at + outcome.SLIP] = min(metrics[at + outcome.SLIP], t)

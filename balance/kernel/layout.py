@@ -24,6 +24,7 @@ LENGTH = 15        # m: from foot a to foot b; 0: nothing is known of the feet, 
 GRAVITY_ALONG = 16 # m/s²: the part of gravity along e (negative where the line rises)
 FRICTION = 17      # coefficient of the feet on the ground
 LANDS_OUTWARD = 18 # rad: outward θ at which a foot lifted on that side lands; inf where nothing catches it
+GROUND_RISES = 19  # rad: how the ground under the feet rises toward w
 BODY_SIZE = 20
 
 # unit parameters, common

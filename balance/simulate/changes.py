@@ -16,6 +16,7 @@ from balance.kernel.layout import (
     FOOT_RADIUS,
     GRAVITY,
     GRAVITY_ALONG,
+    GROUND_RISES,
     HEIGHT,
     INERTIA,
     LANDS_OUTWARD,
@@ -100,5 +101,6 @@ def _sloped(body: Array, slope: Slope, side: float) -> Array:
     out[GRAVITY], out[GRAVITY_ALONG] = whole * math.cos(new), -whole * math.sin(new)
     out[STIFF_SIN] = body[STIFF_SIN] * share
     out[STIFF_COS] = body[STIFF_COS] * share - out[MASS] * out[GRAVITY] * body[FOOT_RADIUS] * math.sin(rises)
+    out[GROUND_RISES] = body[GROUND_RISES] + rises
     out[TOUCH_DOWN], out[LANDS_OUTWARD] = body[TOUCH_DOWN] + rises, body[LANDS_OUTWARD] - rises
     return out

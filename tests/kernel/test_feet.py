@@ -168,3 +168,26 @@ def test_feet_that_are_not_known_are_looked_at_together():
     a, b = feet_of(row, units, memory=0.5)
     assert a[outcome.LEAST_LOAD] == pytest.approx(MASS * 9.81, rel=1e-12)
     assert list(b) == [inf, 0.0, inf, inf]
+
+
+@pytest.mark.parametrize("rises", [0.2, -0.2])
+def test_ground_that_rises_across_the_line_needs_friction_at_rest(rises):
+    """Statics: tan σ whichever way it rises; each foot's load square to the ground is m g cos σ/2. The twin is level."""
+    row, units = standing(0.25), wheel()
+    for slope in (rises, 0.0):
+        row[at.GROUND_RISES] = slope
+        for foot in feet_of(row, units):
+            assert foot[outcome.GRIP] == pytest.approx(abs(np.tan(slope)), rel=1e-12)
+            assert foot[outcome.LEAST_LOAD] == pytest.approx(MASS * 9.81 * cos(slope) / 2, rel=1e-12)
+
+
+def test_a_push_down_the_slope_needs_more_friction_than_one_up():
+    """A push along w, at the height where a level floor would feel half of it, on ground that rises toward w."""
+    row, units = standing(0.25), wheel(inertia=1e-9)
+    row[at.STIFF_SIN] = 1e-9
+    lever, slope = 0.5 * row[at.INERTIA] / (MASS * HEIGHT), 0.1
+    row[at.GROUND_RISES] = slope
+    for force in (5.0, -5.0):
+        a, _ = feet_of(row, units, 0.002, torques=[[0.0, 1.0, force * lever, *[0.0] * (outcome.LEVER - 3), lever]])
+        held = np.arctan2(-force / 2, MASS * 9.81)                               # of the ground's force toward w
+        assert a[outcome.GRIP] == pytest.approx(abs(np.tan(held + slope)), rel=1e-3)     # it leans 0.1 mrad

@@ -156,6 +156,7 @@ def test_a_slope_turns_the_weight_and_moves_the_touch_down():
     for way, sign in (("outward", 1.0), ("inward", -1.0)):
         across = happening(Trial(slope=Slope(across=0.05)), way).end_body
         assert across[at.TOUCH_DOWN] == pytest.approx(0.2 + sign * 0.05)
+        assert across[at.GROUND_RISES] == pytest.approx(sign * 0.05)
         assert across[at.LANDS_OUTWARD] == pytest.approx(0.3 - sign * 0.05)
         np.testing.assert_array_equal(across[[at.STIFF_SIN, at.STIFF_COS]], BODY[[at.STIFF_SIN, at.STIFF_COS]])
 
