@@ -14,9 +14,11 @@ from balance.machine.solids import (
     Cylinder,
     Disc,
     Part,
+    PointMass,
     RimAndWeb,
     RimWebSize,
     Ring,
+    Rod,
     Sphere,
     Tensor,
     Tube,
@@ -40,10 +42,18 @@ def exactly_one(record: object, words: tuple[str, ...], hint: str = "") -> Itera
 
 def check_part(part: Part) -> Iterator[Fault]:
     """A mass or a density, a solid or a tensor; a density needs a volume."""
-    yield from exactly_one(part, ("mass", "density"), "a density needs a `solid` whose volume it fills")
+    yield from exactly_one(part, ("mass", "density", "material"), "a density needs a `solid` whose volume it fills")
     yield from exactly_one(part, ("solid", "inertia"))
-    if part.density is not None and part.solid is None and part.inertia is not None:
-        yield Fault("density", "`density` without `solid`", "`mass` beside `inertia`")
+    yield from _volume_for(part)
+
+
+def _volume_for(record: Part | Rotor) -> Iterator[Fault]:
+    """A density or a material fills a volume: rods, points and stated tensors have none."""
+    word = "material" if record.material is not None else "density"
+    if getattr(record, word) is None or (record.solid is not None and not isinstance(record.solid, Rod | PointMass)):
+        return
+    without = "`solid`" if record.solid is None else "a volume"
+    yield Fault(word, f"`{word}` without {without}", "`mass`", "a rod, a point and a tensor have no volume to fill")
 
 
 def check_tube(tube: TubeSize) -> Iterator[Fault]:
@@ -66,12 +76,12 @@ def check_rotor(rotor: Rotor) -> Iterator[Fault]:
     """A round solid about z with a mass or density, or a stated spin inertia."""
     yield from exactly_one(rotor, ("solid", "spin"))
     if rotor.solid is not None:
-        yield from exactly_one(rotor, ("mass", "density"))
+        yield from exactly_one(rotor, ("mass", "density", "material"))
         if rotor.transverse is not None:
             yield Fault("transverse", "`transverse` beside `solid`", "`transverse` only with `spin`")
         yield from _round_about_z(rotor)
-    elif rotor.density is not None:
-        yield Fault("density", "`density` without `solid`", "`mass` beside `spin`")
+    else:
+        yield from _volume_for(rotor)
     spin, transverse = rotor.spin or 0.0, rotor.transverse
     if transverse is not None and spin > 2.0 * transverse * (1.0 + SLACK):
         yield Fault("transverse", f"{transverse:g} kg*m^2", f"at least half of `spin`, {spin / 2:g} kg*m^2",

@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from balance.files.fields import Shape, choice, place, quantity, section, variant, vector
+from balance.machine.materials import STOCK
 
 Vector = tuple[float, float, float]
 
@@ -132,7 +133,7 @@ Solid = Box | Cylinder | Disc | Tube | Ring | RimAndWeb | Sphere | Rod | PointMa
 
 @dataclass(frozen=True)
 class Part:
-    """A rigid part of the trunk. Exactly one of `solid` and `inertia`; `mass`, or `density` with a solid."""
+    """A rigid part of the trunk. Exactly one of `solid` and `inertia`; `mass`, or `density` or `material` with a solid."""
 
     mass: float | None = quantity("mass", above=0, default=None)
     density: float | None = quantity("density", above=0, default=None)
@@ -140,3 +141,4 @@ class Part:
     inertia: Tensor | None = section(Tensor, default=None)
     at: Vector = vector("length", default=(0.0, 0.0, 0.0))
     turn: Vector = vector("angle", default=(0.0, 0.0, 0.0))
+    material: str | None = choice(list(STOCK), default=None, says="in place of a density")

@@ -5,13 +5,14 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from balance.files.fields import choice, direction, flag, quantity, section, text, variant, vector
+from balance.machine.materials import STOCK
 from balance.machine.motors import Gear
 from balance.machine.solids import SOLIDS, Solid, Tensor, Vector
 
 
 @dataclass(frozen=True)
 class Rotor:
-    """The spinning part.  A solid with mass or density, or stated `spin` and `transverse` inertia with mass.
+    """The spinning part.  A solid with mass, density or material, or stated `spin` and `transverse` inertia with mass.
 
     A solid's own `along` must be z: the rotor's z is its spin axis.
     """
@@ -22,6 +23,7 @@ class Rotor:
     spin: float | None = quantity("inertia", above=0, default=None, says="about the spin axis")
     transverse: float | None = quantity(
         "inertia", above=0, default=None, says="square to the spin axis, about the centre")
+    material: str | None = choice(list(STOCK), default=None, says="in place of a density")
 
 
 @dataclass(frozen=True)

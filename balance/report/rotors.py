@@ -6,6 +6,7 @@ import math
 from dataclasses import dataclass
 
 from balance.machine.machine import Machine
+from balance.machine.materials import density_of
 from balance.machine.stabilisers import ReactionWheel
 from balance.plant.record import Plant, Unit
 from balance.report.shapes import rotor_diameter
@@ -43,7 +44,7 @@ def rotor_fact(machine: Machine, unit: Unit) -> RotorFact:
     stated = machine.stabilisers[unit.name]
     top = unit.speed_limit if isinstance(stated, ReactionWheel) else stated.spin_speed
     rotor, diameter = stated.rotor, rotor_diameter(stated.rotor)
-    mass = solid_mass(rotor.solid, rotor.mass, rotor.density)[0] or math.nan
+    mass = solid_mass(rotor.solid, rotor.mass, density_of(rotor.density, rotor.material))[0] or math.nan
     volume = solid_shape(rotor.solid)[0] if rotor.solid is not None else 0.0
     rim = 0.5 * diameter * top if diameter is not None else math.nan
     density = mass / volume if volume > 0.0 else math.nan

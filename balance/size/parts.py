@@ -10,6 +10,7 @@ from balance.files.document import load
 from balance.files.fields import Shape, number, place, quantity, table, text
 from balance.files.reader import read
 from balance.goal.goal import Goal
+from balance.machine.materials import STOCK, Material
 from balance.machine.motors import Motor
 
 
@@ -34,17 +35,6 @@ class StockDrive:
 
 
 @dataclass(frozen=True)
-class Material:
-    """What a rotor can be made of; `source` says where the numbers come from."""
-
-    density: float = quantity("density", above=0)
-    strength: float = quantity("stress", above=0, says="yield, or 0.2 % proof")
-    ultimate: float = quantity("stress", above=0)
-    poisson: float = number(least=0, below=0.5)
-    source: str = text()
-
-
-@dataclass(frozen=True)
 class Parts:
     """One parts file, or several together."""
 
@@ -58,7 +48,7 @@ class Parts:
 def read_parts(goal: Goal) -> Parts:
     """Return the parts of every file that the design file names; a later file's word goes before an earlier one's.
 
-    Raises InputError for a file that is not there or wrong, and where no material or neither motor nor drive is left.
+    Raises InputError for a file that is not there or wrong, and where no motor is left; no material listed: the stock.
     """
     assert goal.size is not None
     found = [read(load(os.path.normpath(os.path.join(os.path.dirname(goal.source), path))), Parts)
@@ -66,11 +56,11 @@ def read_parts(goal: Goal) -> Parts:
     whole = Parts(1, " + ".join(p.parts for p in found),
                   {k: v for p in found for k, v in (p.motors or {}).items()},
                   {k: v for p in found for k, v in (p.drives or {}).items()},
-                  {k: v for p in found for k, v in (p.materials or {}).items()})
-    if not whole.materials or not whole.motors:
+                  {k: v for p in found for k, v in (p.materials or {}).items()} or STOCK)
+    if not whole.motors:
         line, column = goal.marks.get("size.parts", (0, 0))
-        raise InputError([Problem(goal.source, line, column, "size.parts", "lists without a motor or without a material",
-                                  "at least one motor and one material", "start from plants/parts/starter.yaml")])
+        raise InputError([Problem(goal.source, line, column, "size.parts", "lists without a motor",
+                                  "at least one motor", "start from plants/parts/starter.yaml")])
     return whole
 
 

@@ -7,6 +7,7 @@ from collections.abc import Mapping
 import numpy as np
 from numpy.typing import NDArray
 
+from balance.machine.materials import density_of
 from balance.machine.solids import (
     Box,
     Cylinder,
@@ -62,7 +63,7 @@ def stated_tensor(stated: Tensor) -> Array:
 
 def part_body(name: str, part: Part) -> Body:
     """Return one part in the trunk's axes."""
-    mass, I_own = solid_mass(part.solid, part.mass, part.density)
+    mass, I_own = solid_mass(part.solid, part.mass, density_of(part.density, part.material))
     if part.inertia is not None:
         I_own = stated_tensor(part.inertia)
     return Body(name, mass, np.array(part.at), rotated(I_own, turned(*part.turn)))

@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 
 from balance.base.errors import InputError
 from balance.machine.machine import Machine
+from balance.machine.materials import density_of
 from balance.machine.motors import Motor
 from balance.machine.stabilisers import GimballedFlywheel, ReactionWheel, Rotor, ScissoredPair, Stabiliser
 from balance.maths.inertia import axial, rotated
@@ -61,7 +62,7 @@ def rotor_mass(rotor: Rotor) -> RotorMass:
 
     A stated spin inertia without a transverse one is taken as a thin disc's: half of it.
     """
-    mass, I_own = solid_mass(rotor.solid, rotor.mass, rotor.density)
+    mass, I_own = solid_mass(rotor.solid, rotor.mass, density_of(rotor.density, rotor.material))
     spin = rotor.spin if rotor.spin is not None else float(I_own[2, 2])
     if rotor.transverse is not None:
         return RotorMass(mass, spin, rotor.transverse)

@@ -13,6 +13,7 @@ from balance.machine.read import read_machine
 from balance.machine.rules import check_gimballed
 from balance.machine.solids import Tensor
 from balance.machine.tensors import check_tensor, principal_moments
+from balance.stance.build import build_stance
 
 
 def changed(tmp_path, file, *edits):
@@ -41,6 +42,13 @@ def test_shipped_machines_are_read(file):
     ("bench-rig", "inertia: 0.33 kg*m^2", "inertia: 0.2 kg*m^2", "lumped.inertia", "mass*(height^2"),
     ("bench-rig", "continuous_current: 6 A", "continuous_current: 60 A", "motors.hub-motor.continuous_current", "exchanged"),
     ("trellis-scout", "mass: 620 g,", "mass: 620 g, density: 900 kg/m^3,", "body.battery", "exactly one"),
+    ("trellis-scout", "mass: 620 g,", "mass: 620 g, material: steel,", "body.battery", "exactly one"),
+    ("trellis-scout", "mass: 1.75 kg,", "material: steal,", "body.deck.material", "did you mean `steel`"),
+    ("trellis-scout", "mass: 410 g,", "material: steel,", "body.camera.material", "without `solid`"),
+    ("trellis-scout", "mass: 620 g,   solid: {box: [140 mm, 45 mm, 35 mm]}", "material: brass, solid: {rod: {length: 9 cm}}",
+     "body.battery.material", "without a volume"),
+    ("bench-rig", "spin: 2.2e-3 kg*m^2", "spin: 2.2e-3 kg*m^2, material: steel", "stabilisers.wheel.rotor.material",
+     "without `solid`"),
     ("trellis-scout", "outer: 30 mm, inner: 26 mm", "outer: 30 mm, inner: 36 mm", "body.mast.solid", "less than the outer"),
     ("trellis-scout", "xx: 8e-4 kg*m^2", "xx: 1e-4 kg*m^2", "body.camera.inertia", "triangle inequality"),
     ("trellis-scout", "down:   {left: [-130 mm, 225.2 mm, 0 mm], right", "down:   {lefft: [-130 mm, 225.2 mm, 0 mm], right",
@@ -62,6 +70,18 @@ def test_shipped_machines_are_read(file):
 def test_each_rule(tmp_path, file, old, new, key, says):
     found = problems(tmp_path, file, (old, new))
     assert any(p.key.startswith(key) and says in str(p) and p.line > 0 for p in found), [str(p) for p in found]
+
+
+def test_a_material_is_its_density(tmp_path):
+    deck, wheel = "mass: 1.75 kg,", "mass: 420 g,"
+    ways = (("material: aluminium,", "material: steel,"), ("density: 2700 kg/m^3,", "density: 7850 kg/m^3,"),
+            ("material: brass,", "material: steel,"))
+    one, same, heavier = (
+        build_stance(read_machine(changed(tmp_path, "trellis-scout", (deck, of_deck), (wheel, of_wheel))), "on-left-right")
+        for of_deck, of_wheel in ways)
+    assert (one.mass, one.offset, one.inertia_locked) == (same.mass, same.offset, same.inertia_locked)
+    plate = 0.24 * 0.24 * 0.05                                    # m³, the deck's box
+    assert heavier.mass - one.mass == pytest.approx(plate * (8500.0 - 2700.0), rel=1e-12)   # rounding of sums of ten masses
 
 
 def test_principal_moments_against_numpy():
