@@ -8,6 +8,7 @@ from balance.api.json_numbers import Tree, number
 from balance.size.answer import SizeAnswer
 from balance.size.cautions import cautions
 from balance.size.confirm import Confirmed
+from balance.size.ledger import Ledger
 from balance.size.need import Need
 from balance.size.rotor import RotorCheck
 
@@ -46,7 +47,16 @@ def _confirmed(c: Confirmed) -> Tree:
             "best_possible_push_n_s": number(c.best_possible), "push_stance": c.push_stance, "push_toward": c.push_toward,
             "peak_power_w": number(c.power), "momentum_used": number(c.momentum_used),
             "momentum_capacity_n_m_s": number(c.capacity), "torque_limit_n_m": number(c.torque),
-            "rms_torque_n_m": number(c.rms_torque), "simulated_over_closed_form": number(c.ratio)}
+            "rms_torque_n_m": number(c.rms_torque), "gimbal_push_back": number(c.push_back),
+            "simulated_over_closed_form": number(c.ledger.ratio) if c.ledger else None,
+            "difference": _ledger(c.ledger) if c.ledger else None}
+
+
+def _ledger(told: Ledger) -> Tree:
+    return {"stance": told.stance, "trial": told.trial, "toward": told.toward,
+            "best_possible_over_closed_form": number(told.possible),
+            "lines": [{"what": e.what, "closed_form": number(e.closed), "simulated": number(e.simulated),
+                       "simulated_over_closed_form": number(e.ratio)} for e in told.entries]}
 
 
 UNITS = {"stress": "stress_pa", "burst_speed": "burst_speed_rad_s", "burst_ductile": "burst_ductile_rad_s",

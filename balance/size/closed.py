@@ -84,18 +84,19 @@ def _shares(line: BareLine, count: int) -> Array:
 
 
 def discounted(grid: Grid, parts: Parts, machine: Machine, line: BareLine, pole: Array, count: int, less_speed: float = 1.0,
-               less_torque: float = 1.0) -> Array:
+               less_torque: float = 1.0, used: float = 1.0) -> Array:
     """Return ∫ e^{−ps} T ds in N·m·s of each candidate's all-out manoeuvre about a line (n,).
 
-    `less_speed` and `less_torque`: what is left of momentum and torque when the safety factor is taken off.
+    `less_speed` and `less_torque`: what is left of momentum and torque when the safety factor is taken off; `used`: the
+    share of the momentum that may be stored (a wheel's speed, the sine of a gimbal's angle).
     """
     if grid.family == WHEEL:
         share = float(_shares(line, count).sum())
-        return share * _wheels(grid, parts, machine, pole, less_speed, less_torque)
+        return share * _wheels(grid, parts, machine, pole, less_speed * used, less_torque)
     stock = tuple((parts.drives or {}).values())
     rate, stop = (np.array([getattr(d, word) for d in stock])[grid.drive] for word in ("rate", "angle"))
     h = (2 if grid.family == PAIR else 1) * grid.spin * grid.speed * less_speed
-    rate = rate * less_torque
+    rate, stop = rate * less_torque, np.arcsin(used * np.sin(stop))
     inner = np.exp(-pole * stop / rate) * (rate * np.sin(stop) - pole * np.cos(stop)) + pole
     return np.asarray(h * rate * inner / (pole**2 + rate**2))
 
@@ -155,32 +156,25 @@ def margin(grid: Grid, parts: Parts, machine: Machine, goal: Goal, lines: Sequen
 
     The push is the largest at the height of the centre of mass that no controller could beat, safety left out.
     """
+    can, holds, push = margins(grid, parts, machine, goal, lines)
+    return np.minimum(can, holds), push
+
+
+def margins(grid: Grid, parts: Parts, machine: Machine, goal: Goal, lines: Sequence[BareLine]) -> tuple[Array, Array, Array]:
+    """Return the same with the margin parted: (momentum and torque, what gimbal drives hold against the body, push)."""
     assert goal.size is not None
     count = parallel(lines)
-    used = goal.require.momentum_used or 1.0
-    worst, push = np.full(len(grid), inf), np.full(len(grid), inf)
+    used, less = goal.require.momentum_used or 1.0, 1.0 / goal.size.safety
+    worst, holds, push = np.full(len(grid), inf), np.full(len(grid), inf), np.full(len(grid), inf)
     for line in lines:
         s = seen(line, grid, count)
         p = s.pole
         late = np.exp(p * delay(grid, parts, goal))
-        less = used / goal.size.safety
-        can = discounted(grid, parts, machine, line, p, count, less, 1.0 / goal.size.safety)
+        can = discounted(grid, parts, machine, line, p, count, less, less, used)
         steady = goal.size.offset_error * s.stiffness / s.height * goal.size.phase
         for must in demands(goal, s).values():
             worst = np.minimum(worst, can / (must * late + steady))
             if grid.family != WHEEL:
-                worst = np.minimum(worst, _drive_torque(grid, parts) * s.inertia / (grid.spin * grid.speed * must))
+                holds = np.minimum(holds, _drive_torque(grid, parts) * s.inertia / (grid.spin * grid.speed * must))
         push = np.minimum(push, discounted(grid, parts, machine, line, p, count) / late / s.height)
-    return worst, push
-
-
-def shortfall(grid: Grid, parts: Parts, machine: Machine, goal: Goal, lines: Sequence[BareLine], factor: float) -> float:
-    """Return can ÷ must of a grid of one candidate with `factor` times the top speed and the safety on momentum only."""
-    assert goal.size is not None
-    count, worst, less = parallel(lines), inf, factor * (goal.require.momentum_used or 1.0) / goal.size.safety
-    for line in lines:
-        s = seen(line, grid, count)
-        late = np.exp(s.pole * delay(grid, parts, goal))
-        can = discounted(grid, parts, machine, line, s.pole, count, less)
-        worst = min(worst, *(float((can / (must * late))[0]) for must in demands(goal, s).values()))
-    return worst
+    return worst, holds, push

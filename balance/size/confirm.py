@@ -2,9 +2,13 @@
 
 from __future__ import annotations
 
-from dataclasses import asdict, dataclass
+from dataclasses import asdict, dataclass, replace
+from math import inf
 
+from balance.plant.gyros import holds_lean_rate
+from balance.plant.record import Plant
 from balance.size.candidate import Candidate, added_mass
+from balance.size.ledger import Entry, Ledger, ledger
 from balance.size.question import Question
 from balance.size.trial import Tested, thorough
 from balance.size.trim import built, trim
@@ -13,11 +17,10 @@ from balance.study.push import worst_push
 
 @dataclass(frozen=True)
 class Task:
-    """A candidate, whether to make it as small as it can be, and the closed form's own least factor of momentum."""
+    """A candidate, and whether to make it as small as it can be."""
 
     candidate: Candidate
     trimmed: bool
-    closed_factor: float
 
 
 @dataclass(frozen=True)
@@ -39,7 +42,14 @@ class Confirmed:
     capacity: float         # N·m·s about the line of the stance that is pushed
     torque: float           # N·m about it
     rms_torque: float       # N·m about the line, hardest trial
-    ratio: float            # least momentum by simulation ÷ least by the closed forms; 0 where not trimmed
+    push_back: float        # at that push, what presses a gimbal back ÷ what its drive has; 0 for wheels
+    mode: float             # rad/s, slowest swing of legs that give on any stance; inf: they are stiff
+    ledger: Ledger | None   # least momentum by simulation against the closed forms; None where not trimmed
+
+    @property
+    def given_way(self) -> bool:
+        """True where that push overpowers a gimbal drive: it is turned faster than it turns itself, and that helps."""
+        return self.push_back > 1.0
 
 
 def confirm(question: Question, task: Task) -> Confirmed:
@@ -48,20 +58,28 @@ def confirm(question: Question, task: Task) -> Confirmed:
     if task.trimmed:
         small = trim(task.candidate, question)
         made, tested, refused = small.candidate, small.tested, small.refused
-        binding, limited_by, factor = small.binding, small.limited_by, small.factor
+        binding, limited_by = small.binding, small.limited_by
     else:
-        made, binding, limited_by, factor = task.candidate, "", "", 0.0
+        made, binding, limited_by = task.candidate, "", ""
         tested = thorough(built(made, question), question.goal, question.stances)
         refused = tested.failed[0] if tested.failed else ""
     added = added_mass(made, question.parts, question.count)
     if tested is None or refused:
-        return Confirmed(made, added, False, refused, binding, limited_by, 0.0, 0.0, "", "", *([0.0] * 6))
+        return Confirmed(made, added, False, refused, binding, limited_by, 0.0, 0.0, "", "", 0.0, 0.0, 0.0, 0.0, 0.0, 0.0,
+                         inf, None)
     pushed = worst_push(tested.designs, question.goal)
     plant = next(d.plant for d in tested.designs if d.plant.stance.name == pushed.stance)
-    ratio = factor / task.closed_factor if task.trimmed and task.closed_factor else 0.0
     return Confirmed(made, added, True, "", binding, limited_by, pushed.impulse, pushed.best_possible, pushed.stance,
                      pushed.toward, tested.power, tested.momentum_used, plant.momentum_capacity, plant.torque_limit,
-                     max(t.rms_torque for t in tested.trials), ratio)
+                     max(t.rms_torque for t in tested.trials), _push_back(plant, pushed.impulse),
+                     min((d.plant.legs.mode for d in tested.designs if d.plant.legs is not None), default=inf),
+                     ledger(made, question, tested) if binding else None)
+
+
+def _push_back(plant: Plant, impulse: float) -> float:
+    """Return H σ' θ̇ just after a push at the height of the centre of mass, as a share of the gimbal drive's torque."""
+    held = min((holds_lean_rate(row) for row in plant.unit_parameters), default=inf)
+    return impulse * plant.stance.height / plant.inertia_free / held
 
 
 def to_plain(found: Confirmed) -> dict[str, object]:
@@ -72,6 +90,9 @@ def to_plain(found: Confirmed) -> dict[str, object]:
 def from_plain(plain: dict[str, object]) -> Confirmed:
     """Return what `to_plain` wrote."""
     values = dict(plain)
-    candidate = values.pop("candidate")
+    candidate, told = values.pop("candidate"), values.pop("ledger")
     assert isinstance(candidate, dict)
-    return Confirmed(candidate=Candidate(**candidate), **values)  # type: ignore[arg-type]
+    kept = None
+    if isinstance(told, dict):
+        kept = replace(Ledger(**told), entries=tuple(Entry(**e) for e in told["entries"]))
+    return Confirmed(candidate=Candidate(**candidate), ledger=kept, **values)  # type: ignore[arg-type]

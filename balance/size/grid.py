@@ -96,15 +96,26 @@ def grid(family: str, sizing: Sizing, parts: Parts, supply: Supply | None, lines
             np.geomspace(THINNEST, sizing.space.length, lengths), np.arange(len(parts.motors)),
             np.array(GEARS) if wheel else np.arange(len(drives)),
             np.array([1.0]) if wheel else np.geomspace(0.3, 1.0, SPINS))
-    shape, material, diameter, length, motor, last, spun = (a.ravel() for a in np.meshgrid(*axes, indexing="ij"))
+    return columns(family, sizing, parts, supply, lines, *(a.ravel() for a in np.meshgrid(*axes, indexing="ij")))
+
+
+def columns(family: str, sizing: Sizing, parts: Parts, supply: Supply | None, lines: int, shape: Array, material: Array,
+            diameter: Array, length: Array, motor: Array, last: Array, spun: Array) -> Grid:
+    """Return candidates from their columns, (n,) each, those too heavy left out.
+
+    `last`: gear ratio of a wheel, drive of a gimbal; `spun`: the share of the top speed at which it turns.
+    """
+    assert parts.motors and parts.materials                                                                # noqa: PT018
+    wheel = family == WHEEL
     ratio, drive = (last, np.full(len(last), -1)) if wheel else (np.ones(len(last)), last)
     rows = _weighed(family, parts, lines, shape, material, diameter, length, motor, ratio, drive)
     no_load = _no_load(parts, supply)[motor] / ratio
     speed = np.minimum(np.minimum(sizing.top_speed, strongest_speed(sizing, parts, shape, material, diameter)),
                        no_load if wheel else 0.85 * no_load) * spun
-    keep = (rows[2] <= sizing.most_mass) & (motor < len(parts.motors) if wheel else _small_spindle(parts, motor))
+    driven = np.ones(len(motor), dtype=bool) if wheel else _small_spindle(parts, motor.astype(np.int64))
+    keep = (rows[2] <= sizing.most_mass) & driven
     web = np.maximum(0.2 * length, np.minimum(2e-3, length))
-    names = (tuple(parts.materials), tuple(parts.motors), drives)
+    names = (tuple(parts.materials), tuple(parts.motors), tuple(parts.drives or {}))
     alike = 2 if family == PAIR or (wheel and lines > 1) else 1
     kinds = [np.asarray(v[keep], dtype=np.int64) for v in (shape, material, motor, drive)]
     sized = [np.asarray(v[keep], dtype=float) for v in (diameter, length, web, ratio, speed, rows[0], rows[2], *rows[1])]

@@ -62,7 +62,7 @@ def _lightest(question: Question, one: Survey, assumed: float) -> float:
         s = seen_with(line, assumed)
         p = np.full(len(columns), float(s.pole[0]))
         can = discounted(columns, question.parts, question.machine, line, p, question.count,
-                         (goal.require.momentum_used or 1.0) / sizing.safety, 1.0 / sizing.safety)
+                         1.0 / sizing.safety, 1.0 / sizing.safety, goal.require.momentum_used or 1.0)
         must = max(float(d[0]) for d in demands(goal, s).values()) if goal.trials else 0.0
         able &= can >= must * np.exp(p * delay(columns, question.parts, goal)) + standing(question, line, s)
     return float(one.grid.added[able].min()) if able.any() else inf

@@ -14,7 +14,7 @@ from balance.size.candidate import GEARED
 from balance.size.closed import BareLine, bare_lines, parallel
 from balance.size.parts import Parts, StockMotor, bare
 
-FORMAT = 3
+FORMAT = 4
 """Of the state file: counts up whenever what is kept, or how it is found, changes."""
 
 

@@ -12,23 +12,21 @@ import os
 from collections.abc import Callable, Iterator, Sequence
 from concurrent.futures import ProcessPoolExecutor
 from contextlib import suppress
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from functools import partial
-from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
-from balance.size.closed import margin, shortfall
+from balance.size.closed import margin
 from balance.size.confirm import Confirmed, Task, confirm, from_plain, to_plain
 from balance.size.grid import Grid, grid
 from balance.size.question import Question
-from balance.size.trim import LEAST
 
 Array = NDArray[np.float64]
 Tell = Callable[[str], None]
 
-LEVELS = (1.4, 2.0)
+LEVELS = (1.2, 1.4, 1.7, 2.0, 2.5)
 """Beside the smallest: how many times what is needed larger ones can do, for the front of mass against push."""
 TRIED, ROUNDS = 1, 6
 """Smallest ones of a family simulated at once, and how often the next ones are taken when none of them passes."""
@@ -56,7 +54,7 @@ def survey(question: Question, family: str) -> Survey:
     return Survey(found, can, push)
 
 
-def rounds(one: Survey, question: Question) -> Iterator[list[Task]]:
+def rounds(one: Survey) -> Iterator[list[Task]]:
     """Return batches of tasks: the smallest of each motor, gear and drive in turn; the larger ones with the first."""
     order, at, kinds = one.enough, 0, _kinds(one.grid)
     smallest: list[int] = []
@@ -68,9 +66,9 @@ def rounds(one: Survey, question: Question) -> Iterator[list[Task]]:
         if len(smallest) >= TRIED * ROUNDS:
             break
     while at < len(smallest):
-        batch = [_task(one, i, True, question) for i in smallest[at:at + TRIED]]
+        batch = [Task(one.grid.take(i), True) for i in smallest[at:at + TRIED]]
         if at == 0:
-            batch += [_task(one, i, False, question) for i in _larger(one)]
+            batch += [Task(one.grid.take(i), False) for i in _larger(one)]
         at += TRIED
         yield batch
 
@@ -93,32 +91,6 @@ def _larger(one: Survey) -> list[int]:
     return list(dict.fromkeys(found))
 
 
-def _task(one: Survey, i: int, trimmed: bool, question: Question) -> Task:
-    return Task(one.grid.take(i), trimmed, closed_factor(one.grid, i, question) if trimmed else 0.0)
-
-
-def closed_factor(columns: Grid, i: int, question: Question) -> float:
-    """Return the least factor on a candidate's top speed with which the closed forms still hold, torque not weakened."""
-    alone = single(columns, i)
-    low, high = LEAST, 4.0
-    for _ in range(30):
-        middle = 0.5 * (low + high)
-        enough = _able(alone, question, middle)
-        low, high = (low, middle) if enough else (middle, high)
-    return high
-
-
-def _able(alone: Grid, question: Question, factor: float) -> bool:
-    """Tell whether the closed forms hold with `factor` times the speed, the safety factor on momentum alone."""
-    return shortfall(alone, question.parts, question.machine, question.goal, question.lines, factor) >= 1.0
-
-
-def single(columns: Grid, i: int) -> Grid:
-    """Return a grid of one candidate."""
-    rows: dict[str, Any] = {n: v[i:i + 1] for n, v in vars(columns).items() if isinstance(v, np.ndarray)}
-    return replace(columns, **rows)
-
-
 def search(question: Question, workers: int, state: str, tell: Tell) -> tuple[tuple[Survey, ...], tuple[Confirmed, ...]]:
     """Return every family's survey and what was confirmed, in order.
 
@@ -128,7 +100,7 @@ def search(question: Question, workers: int, state: str, tell: Tell) -> tuple[tu
     surveys = tuple(survey(question, family) for family in families)
     for one in surveys:
         tell(f"{one.grid.family}: {len(one.enough)} of {len(one.grid)} candidates can do it by the closed forms")
-    waiting = {family: rounds(one, question) for family, one in zip(families, surveys, strict=True)}
+    waiting = {family: rounds(one) for family, one in zip(families, surveys, strict=True)}
     answers: dict[str, list[Confirmed]] = {family: [] for family in families}
     with _pool(workers) as run:
         while waiting:

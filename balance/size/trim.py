@@ -1,6 +1,6 @@
 """The least momentum with which a candidate passes while momentum, or torque, is divided by the safety factor.
 
-The rotor is made thinner, and where it is as thin as can be slower, until the machine only just passes with either of
+The rotor is made thinner, and where it is as thin as can be narrower, until the machine only just passes with either of
 the two divided by the safety factor.  The one that fails first then binds: divided by five per cent more, the machine fails.
 """
 
@@ -52,10 +52,13 @@ def with_torque(candidate: Candidate, factor: float, question: Question) -> Cand
 
 
 def smaller(candidate: Candidate, factor: float) -> Candidate:
-    """Return the candidate with about `factor` times its momentum: a shorter rotor first, then a lower speed."""
+    """Return the candidate with about `factor` times its momentum: a shorter rotor first, then a narrower one.
+
+    Momentum grows with the fourth power of the diameter; the speed stays, and with it what the motor gives.
+    """
     length = max(candidate.length * factor, min(THINNEST, candidate.length))
-    speed = candidate.speed * min(candidate.length * factor / length, 1.0)
-    return replace(candidate, length=length, web=web_of(length), speed=speed)
+    diameter = candidate.diameter * min(candidate.length * factor / length, 1.0) ** 0.25
+    return replace(candidate, length=length, web=web_of(length), diameter=diameter)
 
 
 def weakened(binding: str, candidate: Candidate, factor: float, question: Question) -> Machine:

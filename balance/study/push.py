@@ -12,6 +12,7 @@ from dataclasses import dataclass, replace
 from balance.design.records import Design
 from balance.goal.goal import Goal
 from balance.goal.trials import Push, Trial
+from balance.plant.record import Plant
 from balance.simulate.run import run_one
 
 FINE = 0.01
@@ -57,16 +58,25 @@ def boundary(recovers: Callable[[float], bool], guess: float, fine: float = FINE
     return low, runs
 
 
+def push_of(plant: Plant, impulse: float, toward: str) -> Trial:
+    """Return the trial of one push in N·s at the height of the centre of mass."""
+    return Trial(push=Push(impulse, plant.stance.height, toward), lasts=LASTS)
+
+
+def holds(design: Design, goal: Goal, trial: Trial, toward: str) -> bool:
+    """Tell whether the machine is turned back in a trial; whether it settles in time, and with what left, is not asked."""
+    asked = replace(goal, trials={"held": trial})
+    result = run_one(design, asked, "held", trial, toward, False)
+    return result.verdict in ("recovered", "did not settle") and abs(result.end_lean) < 0.5 * goal.fell
+
+
 def largest_push(design: Design, goal: Goal, toward: str, fine: float = FINE) -> Boundary:
     """Return the largest push toward one side that the design recovers from; merely not to have fallen is not enough."""
     plant = design.plant
     best = plant.bounds.impulse
 
     def recovers(impulse: float) -> bool:
-        trial = Trial(push=Push(impulse, plant.stance.height, toward), lasts=LASTS)
-        asked = replace(goal, trials={"push": trial})
-        result = run_one(design, asked, "push", trial, toward, False)
-        return result.verdict in ("recovered", "did not settle") and abs(result.end_lean) < 0.5 * goal.fell
+        return holds(design, goal, push_of(plant, impulse, toward), toward)
 
     found, runs = boundary(recovers, 0.6 * best, fine)
     return Boundary(plant.stance.name, toward, found, best, runs)
