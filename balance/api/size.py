@@ -13,6 +13,7 @@ from balance.check.records import CheckResult
 from balance.files.writer import written
 from balance.machine.machine import Machine
 from balance.report.figures.sizing import write_sizing_figure
+from balance.report.size_page import write_size_page
 from balance.size.answer import SizeAnswer, answer
 from balance.size.confirm import Confirmed
 from balance.size.parts import read_parts
@@ -71,3 +72,8 @@ def apply(found: SizeAnswer, chosen: Confirmed, path: str) -> str:
 def size_figure(found: SizeAnswer, path: str) -> str:
     """Draw the fronts, families side by side; PNG where `path` ends so, else SVG."""
     return write_sizing_figure(found, path)
+
+
+def size_page(found: SizeAnswer, folder: str) -> str:
+    """Write the page of the answer into `folder`, made if it is not there; return its path."""
+    return write_size_page(found, folder)

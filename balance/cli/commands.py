@@ -196,14 +196,15 @@ def run_size(asked: argparse.Namespace, progress: Progress) -> Outcome:
 
     job = load(asked.file, asked.stance)
     from balance.api.json_size import json_size
-    from balance.api.size import apply, proved, size, size_figure, sized_machine
+    from balance.api.size import apply, proved, size, size_figure, size_page, sized_machine
     from balance.cli.show_size import show_size
 
     state = os.path.join(output_folder(asked.file), "size-state.jsonl")
     if asked.again and os.path.isfile(state):
         os.remove(state)
     found = size(job, max(asked.workers, 1), state, progress.tell)
-    answer, text = json_size(found), show_size(found)
+    page = size_page(found, asked.out or output_folder(asked.file))
+    answer, text = {**json_size(found), "report": page}, show_size(found, page)
     if asked.figure:
         answer["figure"] = size_figure(found, asked.figure)
         text += f"\n\nfigure: {asked.figure}"

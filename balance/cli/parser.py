@@ -128,7 +128,7 @@ def _own_words(name: str, parser: argparse.ArgumentParser) -> None:
             parser.add_argument(f"--{word}", metavar=metavar, default="", help=says)
         parser.add_argument("--workers", metavar="N", type=int, default=2, help="processes (default: 2), the same answer")
         parser.add_argument("--again", action="store_true", help="forget what an earlier search has confirmed")
-    if name == "check":
+    if name in ("check", "size"):
         parser.add_argument(
             "--out",
             metavar="FOLDER",

@@ -12,6 +12,7 @@ from balance.report.sizing import (
     ledger_rows,
     ledger_words,
     need_rows,
+    nothing_lines,
     overpowered,
     power_rows,
     push_rows,
@@ -21,8 +22,8 @@ from balance.size.answer import SizeAnswer
 from balance.size.cautions import cautions
 
 
-def show_size(found: SizeAnswer) -> str:
-    """Return the text of the answer."""
+def show_size(found: SizeAnswer, page: str = "") -> str:
+    """Return the text of the answer; `page`: where its report was written."""
     goal = found.question.goal
     head = f"{found.question.machine.machine}: the smallest stabiliser for {goal.design}"
     count = sum(len(s.grid) for s in found.surveys)
@@ -32,8 +33,9 @@ def show_size(found: SizeAnswer) -> str:
         parts += [text_table(BEST, best_rows(found), "llrrrl"), *_details(found), *_fronts(found),
                   "\n".join(folded(s.words()) for s in found.sensitivities)]
     else:
-        parts.append(_nothing(found))
-    return "\n\n".join([*parts, "\n".join(folded(f"Caution: {line}") for line in cautions(found))])
+        parts.append("\n".join(folded(line) for line in nothing_lines(found)))
+    parts.append("\n".join(folded(f"Caution: {line}") for line in cautions(found)))
+    return "\n\n".join([*parts, *([f"report: {page}"] if page else [])])
 
 
 def _needs(found: SizeAnswer) -> str:
@@ -60,12 +62,3 @@ def _fronts(found: SizeAnswer) -> list[str]:
     power = text_table(["adds", "peak power", "family", "front of mass and power"], power_rows(found), "rrll")
     told = overpowered(found)
     return [push + ("\n" + folded(told) if told else ""), power]
-
-
-def _nothing(found: SizeAnswer) -> str:
-    """Say that nothing fits, what each of the tried ones missed, and what to relax."""
-    lines = ["NOTHING FITS: no stabiliser within these limits passes."]
-    lines += [f"{c.candidate.words()}: {c.refused}" for c in found.confirmed if c.refused][:6]
-    if found.relax:
-        lines.append("By the closed forms one of these would do: " + "; ".join(r.words() for r in found.relax) + ".")
-    return "\n".join(folded(line) for line in lines)

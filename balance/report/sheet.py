@@ -27,7 +27,8 @@ tr.unmet th::before { content: "\\2717\\00a0"; color: #c4571a; }
 tr.met th::before { content: "\\2713\\00a0"; color: #17456e; }
 .note { font-size: .86rem; color: #454f5b; margin: .2rem 0 1rem; max-width: 48rem; }
 .figures { display: grid; grid-template-columns: repeat(auto-fill, minmax(min(100%, 24rem), 1fr)); gap: .8rem 1.2rem; }
-figure { margin: .4rem 0; min-width: 0; max-width: 32rem; } figure img { display: block; width: 100%; height: auto; }
+figure { margin: .4rem 0; min-width: 0; max-width: 32rem; }
+.broad figure { max-width: none; } figure img { display: block; width: 100%; height: auto; }
 figcaption { font-size: .8rem; color: #454f5b; min-height: 1.2rem; }
 dt { font-weight: bold; font-size: .9rem; margin-top: .8rem; } dd { margin: 0; max-width: 48rem; }
 details { margin: .5rem 0; border-left: 3px solid #c9ced4; padding-left: .7rem; }

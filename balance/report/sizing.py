@@ -112,6 +112,15 @@ def crossed(c: Confirmed, r: RotorCheck) -> str:
     return f"meets the legs' own swing at {speed(r.crossing)}: {when}, its unbalance drives it"
 
 
+def nothing_lines(found: SizeAnswer) -> list[str]:
+    """Say that nothing fits, what each of the tried ones missed, and what to relax."""
+    lines = ["NOTHING FITS: no stabiliser within these limits passes."]
+    lines += [f"{c.candidate.words()}: {c.refused}" for c in found.confirmed if c.refused][:6]
+    if found.relax:
+        lines.append("By the closed forms one of these would do: " + "; ".join(r.words() for r in found.relax) + ".")
+    return lines
+
+
 def _share(part: float) -> str:
     return f"{100.0 * part:.2g} %"
 

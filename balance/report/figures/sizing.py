@@ -6,6 +6,7 @@ import os
 
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
+from matplotlib.lines import Line2D
 from matplotlib.ticker import FuncFormatter, NullFormatter
 
 from balance.report.figures.palette import DASHED, DOTTED, NAVY, PINE, RUST, SLATE, SOLID, as_bytes, ink, sheet
@@ -15,13 +16,16 @@ from balance.size.confirm import Confirmed
 LOOKS = {"reaction wheel": (NAVY, "o", SOLID), "scissored pair": (RUST, "s", DASHED),
          "gimballed flywheel": (PINE, "^", DOTTED)}
 """Family -> colour, mark, line."""
+MARKS = ((Line2D([], [], ls="", marker="o", ms=10, mfc="none", mec=SLATE), "made as small as the trials let it be"),
+         (Line2D([], [], ls="", marker="^", ms=5, mfc="white", mec=SLATE), "push that overpowers the gimbal drive"))
+"""Marks that mean something in every family, with their words."""
 
 
 def draw_sizing(answer: SizeAnswer) -> Figure:
-    """Draw both fronts; filled marks are confirmed by simulation, hollow grey ones failed it."""
+    """Draw both fronts of what simulation has confirmed."""
     with ink():
-        figure, (push, power) = sheet(3.4, 1, 2, width=7.6)
-        figure.subplots_adjust(left=0.085, right=0.985, top=0.9, bottom=0.27, wspace=0.24)
+        figure, (push, power) = sheet(3.6, 1, 2, width=7.6)
+        figure.subplots_adjust(left=0.085, right=0.985, top=0.91, bottom=0.29, wspace=0.24)
         good = [c for c in answer.confirmed if c.passed]
         for family in answer.question.sizing.families:
             own = sorted((c for c in good if c.candidate.family == family), key=lambda c: c.added)
@@ -39,17 +43,21 @@ def draw_sizing(answer: SizeAnswer) -> Figure:
                   label="front of all families")
         push.set_ylim(bottom=0.0)
         handles, labels = push.get_legend_handles_labels()
-        figure.legend(handles, labels, loc="lower center", ncols=4, handlelength=2.4)
+        marks = MARKS if any(c.given_way for c in good) else MARKS[:1]
+        figure.legend([*handles, *(h for h, _ in marks)], [*labels, *(w for _, w in marks)], loc="lower center", ncols=3,
+                      handlelength=2.4)
         push.set_title("More push costs mass", loc="left")
         power.set_title("Less mass costs power", loc="left")
     return figure
 
 
 def scatter(axes: Axes, own: list[Confirmed], values: list[float], family: str) -> None:
-    """Draw one family; the one whose binding quantity is known is ringed."""
+    """Draw one family; the one whose binding quantity is known is ringed, what overpowers a gimbal drive is hollow."""
     colour, mark, line = LOOKS[family]
     axes.plot([c.added for c in own], values, color=colour, marker=mark, ls=line, lw=0.9, ms=5, label=family)
     ringed = [(c.added, v) for c, v in zip(own, values, strict=True) if c.binding]
+    given = [(c.added, v) for c, v in zip(own, values, strict=True) if c.given_way]
+    axes.plot([x for x, _ in given], [y for _, y in given], ls="", marker=mark, ms=5, mfc="white", mec=colour)
     axes.plot([x for x, _ in ringed], [y for _, y in ringed], ls="", marker="o", ms=10, mfc="none", mec=colour, mew=0.8)
 
 
