@@ -24,7 +24,7 @@ from balance.size.trim import built
 def size(job: Job, workers: int = 1, state: str = "", tell: Tell = quiet) -> SizeAnswer:
     """Search the smallest stabilisers; `state`: a file that lets a search that was stopped go on.
 
-    Raises InputError where the design file has no `size:`, names parts that are not there, or asks for what the present
+    Raises InputError where the design file has no `size:` or no trial, names parts that are not there, or asks for what the present
     machine does not have.
     """
     goal = job.goal
@@ -33,6 +33,10 @@ def size(job: Job, workers: int = 1, state: str = "", tell: Tell = quiet) -> Siz
                                   "a section that says what may be chosen",
                                   "add `size:` with `space: {diameter: 180 mm, length: 50 mm}` and "
                                   "`parts: [../plants/parts/starter.yaml]`")])
+    if not goal.trials:
+        line, column = goal.marks.get("trials", (1, 1))
+        raise InputError([Problem(goal.source, line, column, "trials", "none", "at least one trial",
+                                  "a stabiliser is sized by what must be survived")])
     unknown = [n for n in goal.size.replaces if n not in (job.machine.body or {})]
     if unknown:
         line, column = goal.marks.get("size.replaces", (0, 0))

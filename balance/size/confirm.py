@@ -71,7 +71,7 @@ def confirm(question: Question, task: Task) -> Confirmed:
     plant = next(d.plant for d in tested.designs if d.plant.stance.name == pushed.stance)
     return Confirmed(made, added, True, "", binding, limited_by, pushed.impulse, pushed.best_possible, pushed.stance,
                      pushed.toward, tested.power, tested.momentum_used, plant.momentum_capacity, plant.torque_limit,
-                     max(t.rms_torque for t in tested.trials), _push_back(plant, pushed.impulse),
+                     max((t.rms_torque for t in tested.trials), default=0.0), _push_back(plant, pushed.impulse),
                      min((d.plant.legs.mode for d in tested.designs if d.plant.legs is not None), default=inf),
                      ledger(made, question, tested) if binding else None)
 

@@ -26,8 +26,8 @@ from balance.size.question import Question
 Array = NDArray[np.float64]
 Tell = Callable[[str], None]
 
-LEVELS = (1.2, 1.4, 1.7, 2.0, 2.5)
-"""Beside the smallest: how many times what is needed larger ones can do, for the front of mass against push."""
+LARGER, MORE = 5, 1.15
+"""Beside the smallest: how many larger ones stand on the front of mass against push, each with so many times the room."""
 TRIED, ROUNDS = 1, 6
 """Smallest ones of a family simulated at once, and how often the next ones are taken when none of them passes."""
 
@@ -82,13 +82,16 @@ def _kinds(columns: Grid) -> list[tuple[int, ...]]:
 
 
 def _larger(one: Survey) -> list[int]:
-    """Return the lightest candidate at each level of what it can do."""
-    found = []
-    for level in LEVELS:
+    """Return the lightest candidates that can do more and more, each a good deal more than the one before."""
+    found: list[int] = []
+    level = MORE
+    while len(found) < LARGER:
         able = np.flatnonzero(one.margin >= level)
-        if len(able):
-            found.append(int(able[np.argmin(one.grid.added[able])]))
-    return list(dict.fromkeys(found))
+        if not len(able):
+            break
+        found.append(int(able[np.argmin(one.grid.added[able])]))
+        level = MORE * float(one.margin[found[-1]])
+    return found
 
 
 def search(question: Question, workers: int, state: str, tell: Tell) -> tuple[tuple[Survey, ...], tuple[Confirmed, ...]]:

@@ -46,9 +46,11 @@ def with_torque(candidate: Candidate, factor: float, question: Question) -> Cand
     """Return the candidate with `factor` times its torque: at the wheel; of a gimbal, the drive's torque and rate."""
     motors, drives = question.parts.motors or {}, question.parts.drives or {}
     if candidate.family == WHEEL:
-        return replace(candidate, torque_limit=factor * question.wheel_torque(motors[candidate.motor], candidate.ratio))
+        most = min(question.wheel_torque(motors[candidate.motor], candidate.ratio), candidate.torque_limit)
+        return replace(candidate, torque_limit=factor * most)
     drive = drives[candidate.drive]
-    return replace(candidate, torque_limit=factor * drive.torque, rate_limit=factor * drive.rate)
+    return replace(candidate, torque_limit=factor * min(drive.torque, candidate.torque_limit),
+                   rate_limit=factor * min(drive.rate, candidate.rate_limit))
 
 
 def smaller(candidate: Candidate, factor: float) -> Candidate:

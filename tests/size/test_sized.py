@@ -13,7 +13,7 @@ from balance.api.check import check
 from balance.api.load import Job, load
 from balance.machine.read import read_machine
 from balance.machine.stabilisers import ReactionWheel
-from balance.size.trial import nominal, quick
+from balance.size.trial import hardest, nominal, quick, thorough
 
 SIZED = sorted((Path(__file__).parent / "sized").glob("*.yaml"))
 DESIGNS = ("bench-rig", "quay-gyros", "scout-wheels")
@@ -36,23 +36,27 @@ def test_every_scenario_and_family_is_there():
 
 
 @pytest.mark.parametrize("path", SIZED, ids=lambda p: p.stem)
-def test_twin_of_the_binding_quantity_fails(path):
+def test_passes_on_every_stance_and_its_twin_fails(path):
+    """Margins and every trial on every stance, tolerances left out; the twin on the trials that are hardest."""
     job, machine = job_of(path)
     assert "momentum binds" in path.read_text(encoding="utf-8")
-    safety = job.goal.size.safety
-    pairs = tuple((s, t) for s in job.stances for t in job.goal.trials)
-    assert quick(machine, nominal(job.goal), pairs[:2]).passed
-    found = quick(less_momentum(machine, 1.05 * safety), nominal(job.goal), pairs)
-    assert not found.passed
-    assert any("momentum" in words or "fell" in words for words in found.failed)
+    goal, safety = nominal(job.goal), job.goal.size.safety
+    whole = thorough(machine, goal, job.stances)
+    assert whole.passed, whole.failed
+    pairs = hardest(whole, 2)
+    # nothing is asked of the twin that the file as it stands does not meet with the safety factor alone taken off; 1 %
+    # of room: the least momentum is looked for to 1.2 %
+    assert quick(less_momentum(machine, 0.99 * safety), goal, pairs).passed
+    twin = quick(less_momentum(machine, 1.05 * safety), goal, pairs)
+    assert not twin.passed
+    assert any("momentum" in words or "fell" in words or "did not settle" in words for words in twin.failed)
 
 
-@pytest.mark.parametrize("stem", ["bench-rig-reaction-wheel", "bench-rig-scissored-pair", "quay-gyros-scissored-pair",
-                                  "scout-wheels-reaction-wheel"])
+@pytest.mark.parametrize("stem", ["bench-rig-gimballed-flywheel", "bench-rig-reaction-wheel", "bench-rig-scissored-pair",
+                                  "quay-gyros-scissored-pair", "scout-wheels-reaction-wheel"])
 def test_passes_the_whole_check_unchanged(stem):
-    """Tolerances and worst cases included, on four of the nine: all nine on every stance take minutes."""
+    """Tolerances and worst cases included, on the first stance: all nine on every stance take minutes."""
     path = next(p for p in SIZED if p.stem == stem)
     job, machine = job_of(path)
-    stances = job.stances[:1]                      # one stance each: the worst case of all three takes a minute
-    result = check(Job(machine, job.goal, stances))
+    result = check(Job(machine, job.goal, job.stances[:1]))
     assert result.passed, [(v.name, v.value, v.limit) for v in result.verdicts if not v.passed]
