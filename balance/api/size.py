@@ -24,8 +24,8 @@ from balance.size.trim import built
 def size(job: Job, workers: int = 1, state: str = "", tell: Tell = quiet) -> SizeAnswer:
     """Search the smallest stabilisers; `state`: a file that lets a search that was stopped go on.
 
-    Raises InputError where the design file has no `size:` or no trial, names parts that are not there, or asks for what the present
-    machine does not have.
+    Raises InputError where the design file has no `size:` or no trial, names parts that are not there, or asks for what
+    the present machine does not have.
     """
     goal = job.goal
     if goal.size is None:
