@@ -34,7 +34,7 @@ def _push_back(design: Design, trials: Sequence[TrialResult]) -> list[Verdict]:
 
 
 def _turning(design: Design) -> list[Verdict]:
-    """The share of the lighter foot's load that turning a table at its rate limit takes off, gimbals at their stops."""
+    """The share of the lighter foot's load that turning a table at its rate limit takes off, gimbals and wheels full."""
     plant, found = design.plant, []
     for i, unit in enumerate(plant.units):
         table = turning(plant, i)
@@ -43,6 +43,6 @@ def _turning(design: Design) -> list[Verdict]:
         passed = table.share <= 1.0
         reason = (f"{unit.name}: {table.stops:.3g} N·m at {table.rate:.3g} rad/s" if passed else
                   f"{unit.name} turned at {table.rate:.3g} rad/s makes {table.stops:.3g} N·m, more than the lighter foot's "
-                  "load bears: turn slower, or with the gimbals level")
+                  "load bears: turn slower, or with the gimbals level (a wheel: slow)")
         found.append(Verdict("turning_unloads", plant.stance.name, table.share, "", 1.0, "at most", passed, reason))
     return found

@@ -36,6 +36,20 @@ class Drag:
 
 
 @dataclass(frozen=True)
+class Turntable:
+    """A table that turns a wheel or a gimbal about the trunk's z to face the contact line."""
+
+    rate_limit: float = quantity("angular speed", above=0)
+
+
+@dataclass(frozen=True)
+class Mount:
+    """How the unit sits on the trunk: fixed (no turntable) or on a turntable."""
+
+    turntable: Turntable | None = section(Turntable, default=None)
+
+
+@dataclass(frozen=True)
 class ReactionWheel:
     """`kind: reaction wheel`."""
 
@@ -50,20 +64,7 @@ class ReactionWheel:
     drag: Drag | None = section(Drag, default=None)
     bias_speed: float = quantity(
         "angular speed", default=0.0, says="the law keeps the wheel turning at this speed, away from stiction")
-
-
-@dataclass(frozen=True)
-class Turntable:
-    """A table that turns a gimbal's axis about the trunk's z to face the contact line."""
-
-    rate_limit: float = quantity("angular speed", above=0)
-
-
-@dataclass(frozen=True)
-class Mount:
-    """How the unit sits on the trunk: fixed (no turntable) or on a turntable."""
-
-    turntable: Turntable | None = section(Turntable, default=None)
+    mount: Mount | None = section(Mount, default=None)
 
 
 @dataclass(frozen=True)

@@ -1,4 +1,4 @@
-"""What a gimballed flywheel asks of what is around it: its drive, its turntable and the feet, its spin motor, its link."""
+"""What a stabiliser asks of what is around it: its drive, its turntable and the feet, its spin motor, its link."""
 
 from __future__ import annotations
 
@@ -25,8 +25,8 @@ class Turning:
     """The turntable of one unit on one stance, at its rate limit, the machine standing still."""
 
     rate: float            # rad/s
-    level: float           # N·m: largest couple about a horizontal axis with the gimbals at angle zero
-    stops: float           # N·m: the same with the gimbals anywhere between their stops
+    level: float           # N·m: couple about a horizontal axis with the gimbals at angle zero, a wheel standing
+    stops: float           # N·m: the largest with the gimbals anywhere between their stops, a wheel at top speed
     share: float           # what `stops` takes off the lighter foot, as a share of what it carries
 
 
@@ -45,16 +45,13 @@ def turning(plant: Plant, i: int) -> Turning | None:
     """Return what turning unit i's table does to the feet; None where it stands on none.
 
     A table that turns at ψ̇ about the trunk's z makes the couple ψ̇ z × L, L the rotors' momentum: one flywheel H s(γ), a pair
-    2 H sin γ (g × s₀).  About w it moves load from foot to foot by itself over their distance.  The table's own
-    acceleration is not stated, and left out.
+    2 H sin γ (g × s₀), a wheel (I + s N J_r) Ω a.  About w it moves load from foot to foot by itself over their distance.
+    The table's own acceleration is not stated, and left out.
     """
     unit, stance = plant.units[i], plant.stance
-    if unit.turn_rate <= 0.0 or unit.gimbal_axis_T is None:
+    if unit.turn_rate <= 0.0:
         return None
-    row, across = plant.unit_parameters[i], np.cross(unit.gimbal_axis_T, unit.axis_T)
-    gamma = np.linspace(-row[at.ANGLE_STOP], row[at.ANGLE_STOP], ANGLES)[:, None]
-    pair = row[at.COUNT] > 1.5
-    L = row[at.MOMENTUM] * (2.0 * np.sin(gamma) * across if pair else np.cos(gamma) * unit.axis_T + np.sin(gamma) * across)
+    L = _momenta(unit, plant.unit_parameters[i])                            # (ANGLES, 3)
     couple = np.hypot(L[:, 0], L[:, 1]) * unit.turn_rate                    # |z × L|
     share = inf
     if stance.length > 0.0:
@@ -62,6 +59,18 @@ def turning(plant: Plant, i: int) -> Turning | None:
         lighter = stance.mass * stance.gravity * min(share_b, 1.0 - share_b) * stance.length
         share = float(couple.max()) / lighter if lighter > 0.0 else inf
     return Turning(unit.turn_rate, float(couple[ANGLES // 2]), float(couple.max()), share)
+
+
+def _momenta(unit: Unit, row: Array) -> Array:
+    """Return the rotors' momentum in the trunk's axes, (ANGLES, 3): gimbals stop to stop, wheels at all speeds."""
+    reach = np.linspace(-1.0, 1.0, ANGLES)[:, None]
+    if unit.gimbal_axis_T is None:
+        coupled = float(np.linalg.norm(row[[at.COUPLING, at.COUPLING_U, at.COUPLING_W]]))
+        return np.asarray(coupled * unit.speed_limit * reach * unit.axis_T)
+    across, gamma = np.cross(unit.gimbal_axis_T, unit.axis_T), row[at.ANGLE_STOP] * reach
+    if row[at.COUNT] > 1.5:                                                 # a pair
+        return np.asarray(row[at.MOMENTUM] * 2.0 * np.sin(gamma) * across)
+    return np.asarray(row[at.MOMENTUM] * (np.cos(gamma) * unit.axis_T + np.sin(gamma) * across))
 
 
 def turn_times(plants: Sequence[Plant], i: int) -> dict[tuple[str, str], float]:
@@ -81,7 +90,7 @@ def turn_times(plants: Sequence[Plant], i: int) -> dict[tuple[str, str], float]:
 
 
 def _heading(unit: Unit) -> float:
-    """Return where a unit faces on its table, rad: the heading of g × s₀ in the trunk's xy plane."""
+    """Return where a unit faces on its table, rad: the heading of g × s₀, or of a wheel's axis, in the trunk's xy plane."""
     acting = np.cross(unit.gimbal_axis_T, unit.axis_T) if unit.gimbal_axis_T is not None else unit.axis_T
     return float(np.arctan2(acting[1], acting[0]))
 

@@ -12,11 +12,10 @@ from balance.machine.machine import Machine
 from balance.machine.motors import Gear
 from balance.machine.stabilisers import GimballedFlywheel, ReactionWheel, ScissoredPair, Stabiliser
 from balance.maths.inertia import rotated
-from balance.maths.rotations import unit
 from balance.plant.limits import gimbal_discounted, wheel_discounted
 from balance.plant.motors import Drive, drive_of
 from balance.plant.record import Unit
-from balance.stance.facing import faced_axes
+from balance.stance.facing import faced_axes, faced_wheel, table_rate
 from balance.stance.rotors import WheelDrive, frame_tensor, rotor_mass, wheel_drive
 
 Array = NDArray[np.float64]
@@ -35,7 +34,7 @@ def on_line(machine: Machine, name: str, stabiliser: Stabiliser, e_T: Array) -> 
 def _wheel(machine: Machine, name: str, wheel: ReactionWheel, e_T: Array) -> tuple[Unit, Array]:
     inertia = wheel_drive(wheel, machine.motors)
     drive = drive_of((machine.motors or {})[wheel.motor], wheel.gear, machine.supply)
-    axis = unit(wheel.axis)
+    axis = faced_wheel(wheel, e_T)
     share = float(axis @ e_T)
     share = share if abs(share) > SQUARE else 0.0
     row = np.zeros(at.UNIT_SIZE)
@@ -56,7 +55,7 @@ def _wheel(machine: Machine, name: str, wheel: ReactionWheel, e_T: Array) -> tup
     stored = abs(float(row[at.COUPLING])) * top if row[at.COUPLING] != 0.0 else 0.0      # square, and no top speed: none
     return Unit(name, "reaction wheel", "torque", share, turning, stored,
                 abs(row[at.COUPLING]) / inertia.own * most, most, top, drive.bandwidth, axis, None, np.array(wheel.at),
-                wheel.bias_speed, energy=0.5 * turning * top**2), row
+                wheel.bias_speed, energy=0.5 * turning * top**2, turn_rate=table_rate(wheel.mount)), row
 
 
 FLANK_DAMPING = 0.3
@@ -116,7 +115,7 @@ def _gimballed(machine: Machine, name: str, flywheel: GimballedFlywheel, e_T: Ar
                 gimbal.rate_limit if servo else gimbal.torque_limit, gimbal.angle_limit,
                 row[at.RATE_LAG] if servo else inf, s_T, g_T, np.array(flywheel.at),
                 energy=0.5 * row[at.COUNT] * rotor.spin * flywheel.spin_speed**2,
-                spin_up=_spin_up(machine, flywheel, rotor.spin), turn_rate=_turn_rate(flywheel),
+                spin_up=_spin_up(machine, flywheel, rotor.spin), turn_rate=table_rate(flywheel.mount),
                 linked=isinstance(flywheel, ScissoredPair) and flywheel.linked), row
 
 
@@ -126,11 +125,6 @@ def _spin_up(machine: Machine, flywheel: GimballedFlywheel, spin: float) -> floa
     if motor is None:
         return nan
     return drive_of(motor, None, machine.supply).spin_up(spin + motor.rotor_inertia, flywheel.spin_speed)
-
-
-def _turn_rate(flywheel: GimballedFlywheel) -> float:
-    table = flywheel.mount.turntable if flywheel.mount else None
-    return table.rate_limit if table else 0.0
 
 
 def discounted(row: Array, pole: float) -> float:

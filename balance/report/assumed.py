@@ -6,7 +6,6 @@ from dataclasses import fields
 
 from balance.check.records import CheckResult
 from balance.goal.goal import NoEstimator
-from balance.machine.stabilisers import GimballedFlywheel
 from balance.report.amounts import amount, listed
 from balance.report.verdicts import spoken
 
@@ -27,7 +26,7 @@ def assumed(result: CheckResult) -> tuple[str, ...]:
     if machine.lumped is not None:
         said.append("The machine is given by mass, height and inertia alone: nothing is known of its feet, legs or shape, "
                     "and the length of the line in the drawing means nothing.")
-    if any(isinstance(one, GimballedFlywheel) and one.mount and one.mount.turntable for one in machine.stabilisers.values()):
+    if any(one.mount and one.mount.turntable for one in machine.stabilisers.values()):
         said.append("A turntable already faces the line when the trial begins; the time it takes to turn is not in it.")
     if any(design.plant.stance.outward_is_fall_only for design in result.designs):
         said.append("Nothing lifted catches an inward fall.")

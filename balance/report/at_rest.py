@@ -6,7 +6,7 @@ import math
 from collections.abc import Sequence
 
 from balance.plant.gyros import holds_lean_rate, needs_link, turn_times, turning
-from balance.plant.record import Plant
+from balance.plant.record import Plant, Unit
 from balance.report.amounts import amount, fixed, share
 from balance.report.tables import Row, Table
 from balance.stance.statics import Statics
@@ -55,26 +55,32 @@ def _angles(joints: Sequence[float]) -> str:
 
 
 def gyro_table(plants: Sequence[Plant]) -> Table | None:
-    """What each gimballed flywheel asks of its motor, its drive and the feet; None where there is none."""
+    """What each gimballed flywheel asks of its motor, its drive and the feet, and each turned wheel; None without any."""
     rows = []
     for i, unit in enumerate(plants[0].units):
-        if unit.kind == "reaction wheel":
+        wheel = unit.kind == "reaction wheel"
+        if wheel and unit.turn_rate <= 0.0:
             continue
         for plant in plants:
             table = turning(plant, i)
             feet = "no turntable" if table is None else f"{amount(table.stops, 'N*m')}, {share(table.share)}"
             rows.append(Row(unit.name, (
                 plant.stance.name, amount(unit.energy, "J"),
-                amount(unit.spin_up, "s") if math.isfinite(unit.spin_up) else
-                ("no spin motor stated" if math.isnan(unit.spin_up) else "never: too little voltage"),
-                amount(holds_lean_rate(plant.unit_parameters[i]), "rad/s"), feet)))
+                "–" if wheel else _spin_up(unit),
+                "–" if wheel else amount(holds_lean_rate(plant.unit_parameters[i]), "rad/s"), feet)))
     if not rows:
         return None
-    return Table("Flywheels in gimbals", ("Unit", "Stance", "Energy, spinning", "Spins up in", "Drive holds a lean rate of",
-                                          "Turning loads the feet"), tuple(rows),
+    head = ("Unit", "Stance", "Energy, spinning", "Spins up in", "Drive holds a lean rate of", "Turning loads the feet")
+    return Table("Flywheels in gimbals, and what turns", head, tuple(rows),
                  "A lean rate pushes the gimbals back with H σ' times it: beyond the one stated the drive gives way. "
-                 "Turning the table at its rate limit, gimbals at their stops, makes the couple and takes that share off "
-                 "the lighter foot; the table's own acceleration is not stated and not in it.")
+                 "Turning the table at its rate limit, gimbals at their stops and wheels at top speed, makes the couple and "
+                 "takes that share off the lighter foot; the table's own acceleration is not stated and not in it.")
+
+
+def _spin_up(unit: Unit) -> str:
+    if math.isnan(unit.spin_up):
+        return "no spin motor stated"
+    return amount(unit.spin_up, "s") if math.isfinite(unit.spin_up) else "never: too little voltage"
 
 
 def turn_table(plants: Sequence[Plant]) -> Table | None:

@@ -14,9 +14,8 @@ from balance.machine.materials import density_of
 from balance.machine.motors import Motor
 from balance.machine.stabilisers import GimballedFlywheel, ReactionWheel, Rotor, ScissoredPair, Stabiliser
 from balance.maths.inertia import axial, rotated
-from balance.maths.rotations import unit
 from balance.stance.bodies import Body
-from balance.stance.facing import faced_axes
+from balance.stance.facing import faced_axes, faced_wheel
 from balance.stance.parts import solid_mass, stated_tensor
 from balance.stance.problems import problem
 
@@ -93,7 +92,7 @@ def stabiliser_bodies(name: str, unit_: Stabiliser, motors: Mapping[str, Motor] 
     if isinstance(unit_, ReactionWheel):
         drive = wheel_drive(unit_, motors)
         across = rotor.transverse + drive.motor / 2.0        # the motor's rotor as a thin disc: a tensor a body can have
-        return [Body(name, rotor.mass, at, axial(drive.locked, across, unit(unit_.axis)))]
+        return [Body(name, rotor.mass, at, axial(drive.locked, across, faced_wheel(unit_, e_T)))]
     s_T, g_T, R = faced_axes(unit_, e_T)
     I_own = axial(rotor.spin, rotor.transverse, s_T) + rotated(frame_tensor(unit_), R)
     mass = rotor.mass + unit_.frame_mass
@@ -112,7 +111,7 @@ def spin_about_line(machine: Machine, e_T: Array) -> float:
     for unit_ in machine.stabilisers.values():
         if isinstance(unit_, ReactionWheel):
             drive = wheel_drive(unit_, machine.motors)
-            added += float(unit(unit_.axis) @ e_T) ** 2 * drive.coupled**2 / drive.own
+            added += float(faced_wheel(unit_, e_T) @ e_T) ** 2 * drive.coupled**2 / drive.own
         else:
             s_T, _, _ = faced_axes(unit_, e_T)
             count = 2 if isinstance(unit_, ScissoredPair) else 1

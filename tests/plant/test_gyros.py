@@ -17,6 +17,7 @@ from balance.plant.build import build_plant
 from balance.plant.gyros import holds_lean_rate, needs_link, turn_times, turning
 from balance.plant.motors import Drive
 from balance.stance.build import build_stance
+from balance.stance.rotors import wheel_drive
 
 
 def quay(**changes):
@@ -77,6 +78,40 @@ def test_no_table_no_couple():
     _, slower = quay(mount=Mount(Turntable(1.0)))
     _, plants = quay()
     assert turning(slower[0], 0).stops == pytest.approx(0.5 * turning(plants[0], 0).stops)
+
+
+def one_wheel(table=None, axis=(1.0, 0.0, 0.0)):
+    """Return the scout with its long wheel alone, and its plants."""
+    machine = read_machine("plants/trellis-scout.yaml")
+    wheel = replace(machine.stabilisers["long-wheel"], mount=None if table is None else Mount(Turntable(table)), axis=axis)
+    machine = replace(machine, stabilisers={"wheel": wheel})
+    return machine, tuple(build_plant(machine, build_stance(machine, name)) for name in machine.stance_names())
+
+
+def test_a_wheel_on_a_table_is_a_wheel_along_each_line():
+    """The table's plant is that of a fixed wheel whose axis the file lays along the line; a fixed one loses the cosine."""
+    machine, turned = one_wheel(3.0)
+    for i, name in enumerate(machine.stance_names()):
+        stance = turned[i].stance
+        e_T = stance.R_WT.T @ stance.e_W
+        laid = one_wheel(axis=tuple(float(x) for x in e_T))[1][i]
+        assert turned[i].units[0].axis_share == pytest.approx(1.0, rel=1e-12)
+        assert turned[i].inertia_locked == pytest.approx(laid.inertia_locked, rel=1e-12)
+        assert pytest.approx(laid.model.A, rel=1e-10, abs=1e-12) == turned[i].model.A      # rounding of one more turn
+        assert turned[i].torque_limit == pytest.approx(laid.torque_limit, rel=1e-12)
+        assert abs(one_wheel()[1][i].units[0].axis_share) < 0.9, name                     # the twin
+
+
+def test_turning_a_fast_wheel_loads_the_feet():
+    machine, plants = one_wheel(3.0)
+    unit = plants[0].units[0]
+    found = turning(plants[0], 0)
+    rotor = wheel_drive(machine.stabilisers["wheel"], machine.motors)
+    assert found.stops == pytest.approx(3.0 * rotor.coupled * unit.speed_limit, rel=1e-9)    # ψ̇ × I Ω, axis level
+    assert found.level == 0.0
+    assert turning(one_wheel()[1][0], 0) is None
+    times = turn_times(plants, 0)
+    assert times["on-fore-right", "on-fore-left"] == pytest.approx(2.0 * np.pi / 3.0 / 3.0, rel=1e-3)    # feet to 0.1 mm
 
 
 def test_the_lean_rate_that_is_held_takes_all_of_the_drive():
