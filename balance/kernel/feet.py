@@ -80,9 +80,10 @@ def turning(X: Array, dX: Array, body: Array, units: Array) -> tuple[float, floa
             dw += units[i, COUPLING_W] * dX[2 + 2 * i]
             continue
         H, D, own = units[i, MOMENTUM], units[i, TRANSVERSE] - units[i, SPIN_HELD], units[i, GIMBAL_INERTIA]
+        c, sine = np.cos(x), np.sin(x)
         for j in range(2 if units[i, COUNT] > 1.5 else 1):
             side = 1.0 if j == 0 else -1.0
-            c, s = np.cos(x), side * np.sin(x)
+            s = side * sine
             su, sw = units[i, S0_U] * c + units[i, GXS0_U] * s, units[i, S0_W] * c + units[i, GXS0_W] * s
             tu, tw = units[i, GXS0_U] * c - units[i, S0_U] * s, units[i, GXS0_W] * c - units[i, S0_W] * s
             sigma = units[i, E_S0] * c + units[i, E_GXS0] * s
@@ -109,13 +110,15 @@ def each_foot(X: Array, dX: Array, push: float, body: Array, units: Array) -> tu
     """
     across, normal = foot_forces(X, dX, push, body, units)
     along = -body[MASS] * body[GRAVITY_ALONG]
+    if body[LENGTH] == 0.0:
+        return normal, 0.0, across, 0.0, along
     y, z = centre(X[0], body)
     aside, up, _, _ = hinge_moves(X, dX, units)
     y, z = y + aside, z + up
     du, dw = turning(X, dX, body, units)
-    x, share = body[COM_ALONG], 1.0 / body[LENGTH] if body[LENGTH] > 0.0 else 0.0
-    normal_b = (x * normal - (body[FOOT_RADIUS] + z) * along + dw) * share
-    across_b = (x * across - y * along - du) * share
+    x, length = body[COM_ALONG], body[LENGTH]
+    normal_b = (x * normal - (body[FOOT_RADIUS] + z) * along + dw) / length
+    across_b = (x * across - y * along - du) / length
     return normal - normal_b, normal_b, across - across_b, across_b, along
 
 
@@ -124,4 +127,5 @@ def friction_needed(normal: float, across: float, along: float, total: float) ->
     """Return one foot's needed friction coefficient, the force along the line shared by normal load; inf when lifted."""
     if normal <= 0.0:
         return float(np.inf)
-    return float(np.hypot(across, along * normal / total) / normal)
+    beside = along * normal / total
+    return float(np.sqrt(across * across + beside * beside) / normal)       # hypot costs more, and nothing overflows here

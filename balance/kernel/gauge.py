@@ -138,7 +138,9 @@ def watch(t: float, h: float, X: Array, dX: Array, body: Array, units: Array, me
 def watch_feet(t: float, X: Array, dX: Array, push: float, body: Array, units: Array, metrics: Array) -> None:
     """Gather each foot's least load and needed friction at t, under a horizontal push in N; keep when it lifts or slips."""
     load_a, load_b, across_a, across_b, along = each_foot(X, dX, push, body, units)
-    flat, steep = np.cos(body[GROUND_RISES]), np.sin(body[GROUND_RISES])
+    flat, steep = 1.0, 0.0
+    if body[GROUND_RISES] != 0.0:
+        flat, steep = np.cos(body[GROUND_RISES]), np.sin(body[GROUND_RISES])
     total = (load_a + load_b) * flat - (across_a + across_b) * steep
     for foot in range(2 if body[LENGTH] > 0.0 else 1):
         at = outcome.FEET + foot * outcome.FOOT_SIZE
