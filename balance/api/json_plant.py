@@ -125,6 +125,7 @@ def _unit(plant: Plant, i: int) -> Tree:
         "torque_limit_n_m": number(unit.torque_limit),
         "energy_j": number(unit.energy),
         "spin_up_s": number(unit.spin_up),
+        "spin_of_no_load_speed": number(unit.spin_share),
         "drive_holds_lean_rate_rad_s": number(held),
         "needs_link": needs_link(plant, i),
         "turntable": None if table is None else {

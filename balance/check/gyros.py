@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from math import isfinite
+from math import isfinite, isnan
 
 from balance.check.records import Verdict
 from balance.design.records import Design
@@ -12,8 +12,8 @@ from balance.simulate.records import TrialResult
 
 
 def judge_gyros(design: Design, trials: Sequence[TrialResult]) -> list[Verdict]:
-    """Return per stance whether drives bear the push-back of the fastest lean in the trials, and the feet the turning."""
-    return [*_push_back(design, trials), *_turning(design)]
+    """Return per stance whether drives bear the push-back of the fastest lean, feet the turning, and motors the spin."""
+    return [*_push_back(design, trials), *_turning(design), *_spinning(design)]
 
 
 def _push_back(design: Design, trials: Sequence[TrialResult]) -> list[Verdict]:
@@ -45,4 +45,19 @@ def _turning(design: Design) -> list[Verdict]:
                   f"{unit.name} turned at {table.rate:.3g} rad/s makes {table.stops:.3g} N·m, more than the lighter foot's "
                   "load bears: turn slower, or with the gimbals level (a wheel: slow)")
         found.append(Verdict("turning_unloads", plant.stance.name, table.share, "", 1.0, "at most", passed, reason))
+    return found
+
+
+def _spinning(design: Design) -> list[Verdict]:
+    """The spin speed as a share of its own motor's no-load speed; one never so fast holds less than is said."""
+    found = []
+    for unit in design.plant.units:
+        if isnan(unit.spin_share):
+            continue
+        passed = unit.spin_share < 1.0
+        reason = (f"{unit.name}: after {unit.spin_up:.3g} s" if passed else
+                  f"{unit.name}'s motor runs out of voltage at {1.0 / unit.spin_share:.2g} of the stated spin speed: the "
+                  "momentum counted on is never there")
+        found.append(Verdict("spin_of_no_load_speed", design.plant.stance.name, unit.spin_share, "", 1.0, "at most", passed,
+                             reason))
     return found

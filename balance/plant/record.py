@@ -52,6 +52,7 @@ class Unit:
     bias_speed: float = 0.0      # rad/s the law keeps a wheel turning at
     energy: float = 0.0          # J in all its flywheels at their spin speed; wheels: at their top speed
     spin_up: float = nan         # s to the spin speed by its own motor; NaN: no spin motor is stated
+    spin_share: float = nan      # spin speed ÷ no-load speed of that motor: from 1 on it is never reached
     turn_rate: float = 0.0       # rad/s of its turntable; 0: it stands on none
     linked: bool = False         # the two gimbals of a pair are geared to each other
 

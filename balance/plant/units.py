@@ -109,22 +109,27 @@ def _gimballed(machine: Machine, name: str, flywheel: GimballedFlywheel, e_T: Ar
     if servo:
         row[at.RESOLUTION], row[at.DEAD_BAND] = gimbal.resolution, gimbal.dead_band
     row[at.SPIN] = rotor.spin
+    spin_up, spin_share = _spinning(machine, flywheel, rotor.spin)
     line_momentum = row[at.COUNT] * row[at.MOMENTUM] * abs(acting)
     return Unit(name, "scissored pair" if pair else "gimballed flywheel", "rate" if servo else "torque", acting,
                 rotor.spin, line_momentum * sin(gimbal.angle_limit), line_momentum * gimbal.rate_limit,
                 gimbal.rate_limit if servo else gimbal.torque_limit, gimbal.angle_limit,
                 row[at.RATE_LAG] if servo else inf, s_T, g_T, np.array(flywheel.at),
                 energy=0.5 * row[at.COUNT] * rotor.spin * flywheel.spin_speed**2,
-                spin_up=_spin_up(machine, flywheel, rotor.spin), turn_rate=table_rate(flywheel.mount),
+                spin_up=spin_up, spin_share=spin_share, turn_rate=table_rate(flywheel.mount),
                 linked=isinstance(flywheel, ScissoredPair) and flywheel.linked), row
 
 
-def _spin_up(machine: Machine, flywheel: GimballedFlywheel, spin: float) -> float:
-    """Return the time in s in which its own motor brings one flywheel to its speed; NaN where none is stated."""
+def _spinning(machine: Machine, flywheel: GimballedFlywheel, spin: float) -> tuple[float, float]:
+    """Return the time in s in which its own motor spins up one flywheel, and its speed ÷ the motor's no-load speed.
+
+    NaN where no motor is stated.
+    """
     motor = (machine.motors or {}).get(flywheel.spin_motor or "")
     if motor is None:
-        return nan
-    return drive_of(motor, None, machine.supply).spin_up(spin + motor.rotor_inertia, flywheel.spin_speed)
+        return nan, nan
+    drive = drive_of(motor, None, machine.supply)
+    return drive.spin_up(spin + motor.rotor_inertia, flywheel.spin_speed), flywheel.spin_speed / drive.no_load_speed
 
 
 def discounted(row: Array, pole: float) -> float:

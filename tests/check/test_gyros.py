@@ -55,6 +55,19 @@ def test_a_table_that_turns_too_fast_lifts_a_foot():
     assert quick["turning_unloads"].value == pytest.approx(1.1, rel=1e-9)
 
 
+def test_a_motor_that_cannot_spin_its_flywheel():
+    found, _, plant = judged()
+    speed = plant.unit_parameters[0, at.MOMENTUM] / plant.units[0].inertia
+    no_load = 48.0 / 0.028                                          # rad/s, supply and torque constant of the file
+    assert found["spin_of_no_load_speed"].value == pytest.approx(speed / no_load, rel=1e-9)
+    assert found["spin_of_no_load_speed"].passed
+    fast, _, _ = judged(spin_speed=1.25 * no_load)
+    assert not fast["spin_of_no_load_speed"].passed
+    assert "at 0.8 of the stated" in fast["spin_of_no_load_speed"].reason
+    silent, _, _ = judged(spin_motor=None)
+    assert "spin_of_no_load_speed" not in silent
+
+
 def test_a_machine_of_wheels_is_not_asked():
     job = load("designs/bench-rig.yaml", "line")
     plant = build_plant(job.machine, build_stance(job.machine, "line"))

@@ -35,8 +35,8 @@ BOUND_UNITS = {"lean": (0, 0, 0), "lean_rate": (0, 0, -1), "impulse": (1, 1, -1)
                "impulsive_lean": (0, 0, 0)}
 
 
-UNIT_UNITS = {"energy": (1, 2, -2), "spin_up": (0, 0, 1), "turn_rate": (0, 0, -1), "momentum_capacity": (1, 2, -1),
-              "torque_limit": (1, 2, -2), "inertia": (1, 2, 0)}
+UNIT_UNITS = {"energy": (1, 2, -2), "spin_up": (0, 0, 1), "spin_share": (0, 0, 0), "turn_rate": (0, 0, -1),
+              "momentum_capacity": (1, 2, -1), "torque_limit": (1, 2, -2), "inertia": (1, 2, 0)}
 LEG_UNITS = {"hinge": (0, 1, 0), "stiffness": (1, 2, -2), "critical": (1, 2, -2), "unstable": (0, 0, -1), "mode": (0, 0, -1),
              "damping": (0, 0, 0)}
 TURNING_UNITS = {"rate": (0, 0, -1), "level": (1, 2, -2), "stops": (1, 2, -2), "share": (0, 0, 0)}
