@@ -23,6 +23,10 @@ COMMON: dict[str, Any] = {"error_model": "numpy", "_nrt": False}
 """Division by zero gives inf as in numpy: no branch for an exception."""
 
 
+FUSED = {"contract"}
+"""What the compiler may do with floats in lanes: a·b + c rounded once. The order of sums stays."""
+
+
 class PartLibrary(JITCodeLibrary):  # type: ignore[misc]
     """The code of one part and of what it calls, neither optimised nor translated."""
 
@@ -87,6 +91,19 @@ class Part:
 def entry(function: Callable[..., Any]) -> Any:
     """Compile what Python calls: optimised, kept on disk, free of the interpreter's lock."""
     return njit(cache=True, nogil=True, no_cfunc_wrapper=True, **COMMON)(function)
+
+
+def lanes_entry(function: Callable[..., Any]) -> Any:
+    """Compile an entry whose innermost loops run over lanes: products and sums are fused, as in what it calls (`fused`)."""
+    return njit(cache=True, nogil=True, no_cfunc_wrapper=True, fastmath=FUSED, **COMMON)(function)
+
+
+def fused(function: Any) -> Any:
+    """Lower a scalar function, or a part's own, for a loop over lanes: never a call, products and sums fused.
+
+    The definition stays one: the single trace runs the same Python function unfused.
+    """
+    return Part(getattr(function, "py_func", function), forceinline=True, fastmath=FUSED)
 
 
 def part(function: Callable[..., Any]) -> Any:

@@ -50,6 +50,20 @@ def limiter_gain(units: Array, i: int) -> float:
     return float(min(0.25 * units[i, CURRENT_LAG], LIMITER_GAIN))
 
 
+@inlined
+def speed_cap(torque: float, speed: float, speed_limit: float, gain: float) -> float:
+    """Return the largest |torque| in N·m the speed limiter lets through; `gain`: inertia turned times its gain in 1/s."""
+    room = speed_limit - speed if torque > 0.0 else speed_limit + speed
+    return max(gain * room, 0.0)
+
+
+@inlined
+def current_reach(emf: float, volts: float, per_ohm: float, most: float) -> tuple[float, float]:
+    """Return the smallest and largest current in A under a back-EMF and a bus voltage in V: `current_window`."""
+    low, high = (-volts - emf) * per_ohm, (volts - emf) * per_ohm
+    return min(max(low, -most), most), min(max(high, -most), most)
+
+
 @part
 def current_window(units: Array, i: int, speed: float) -> tuple[float, float]:
     """Return the smallest and largest current in A the bus can drive at this wheel speed.
@@ -57,11 +71,8 @@ def current_window(units: Array, i: int, speed: float) -> tuple[float, float]:
     Each end of (±V - K_e N Ω)/R is clipped into ±i_max: intersecting the two intervals can leave nothing, where
     the motor really brakes at -i_max.
     """
-    emf = units[i, BACK_EMF] * speed
-    most = units[i, CURRENT_LIMIT]
-    low = (-units[i, BUS_VOLTAGE] - emf) / units[i, RESISTANCE]
-    high = (units[i, BUS_VOLTAGE] - emf) / units[i, RESISTANCE]
-    return min(max(low, -most), most), min(max(high, -most), most)
+    return current_reach(units[i, BACK_EMF] * speed, units[i, BUS_VOLTAGE], 1.0 / units[i, RESISTANCE],
+                         units[i, CURRENT_LIMIT])
 
 
 @inlined
@@ -73,8 +84,8 @@ def current_target(units: Array, i: int, speed: float, command: float) -> tuple[
         if abs(torque) > units[i, TORQUE_LIMIT] * (1.0 + SLACK):
             met = outcome.TORQUE
         torque = units[i, TORQUE_LIMIT] if torque > 0.0 else -units[i, TORQUE_LIMIT]
-    room = units[i, SPEED_LIMIT] - speed if torque > 0.0 else units[i, SPEED_LIMIT] + speed
-    cap = max((units[i, OWN_INERTIA] + units[i, BEHIND_PLAY]) * limiter_gain(units, i) * room, 0.0)
+    turned = units[i, OWN_INERTIA] + units[i, BEHIND_PLAY]
+    cap = speed_cap(torque, speed, units[i, SPEED_LIMIT], turned * limiter_gain(units, i))
     if abs(torque) > cap:
         met = outcome.SPEED
         torque = cap if torque > 0.0 else -cap

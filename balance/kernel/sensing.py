@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 
 from balance.kernel.compiled import inlined, part
 from balance.kernel.layout import BALANCED, GRAVITY
+from balance.kernel.series import cosine_of_turns, logarithm
 
 Array = NDArray[np.float64]
 
@@ -31,7 +32,7 @@ TILT = -1
 GYRO = -2
 
 
-@part
+@inlined
 def scrambled(seed: int, count: int) -> float:
     """Return a uniform number in (0, 1) from two whole numbers.
 
@@ -45,11 +46,11 @@ def scrambled(seed: int, count: int) -> float:
     return (float(z >> np.uint64(11)) + 0.5) * 2.0**-53
 
 
-@part
+@inlined
 def normal(seed: int, sample: int, channel: int) -> float:
     """Return a standard normal number of (seed, sample, channel), channel 0 to 3: Box and Muller."""
-    radius = np.sqrt(-2.0 * np.log(scrambled(seed, 8 * sample + 2 * channel)))
-    return float(radius * np.cos(2.0 * np.pi * scrambled(seed, 8 * sample + 2 * channel + 1)))
+    radius = np.sqrt(-2.0 * logarithm(scrambled(seed, 8 * sample + 2 * channel)))
+    return float(radius * cosine_of_turns(scrambled(seed, 8 * sample + 2 * channel + 1)))
 
 
 @part
@@ -69,6 +70,14 @@ def read_gyro(lean_rate: float, sensor: Array, seed: int, sample: int) -> float:
 
 
 @inlined
+def force_at(sine: float, cosine: float, lean_rate: float, acceleration: float, g: float, r: float,
+             s: float) -> tuple[float, float]:
+    """Return the specific force along w and u in m/s² at the place r u + s w of a body that leans on stiff legs."""
+    square = lean_rate * lean_rate
+    return r * acceleration - g * sine - s * square, g * cosine - s * acceleration - r * square
+
+
+@inlined
 def specific_force(X: Array, acceleration: float, hinge: tuple[float, float], body: Array,
                    sensor: Array) -> tuple[float, float]:
     """Return what an accelerometer without faults shows along w and u in m/s².
@@ -76,10 +85,10 @@ def specific_force(X: Array, acceleration: float, hinge: tuple[float, float], bo
     At the place r u + s w of the leaning body: along w: -g sin θ + r θ̈ - s θ̇²; along u: g cos θ - s θ̈ - r θ̇².
     `hinge`: what the hinge of legs that give adds in the world's axes, m/s² (`legs.hinge_moves`).
     """
-    g, r, s = body[GRAVITY], sensor[UP], sensor[ACROSS]
+    g = body[GRAVITY] + hinge[1]
     sine, cosine = np.sin(X[0]), np.cos(X[0])
-    across = -(g + hinge[1]) * sine + hinge[0] * cosine + r * acceleration - s * X[1] ** 2
-    return across, (g + hinge[1]) * cosine + hinge[0] * sine - s * acceleration - r * X[1] ** 2
+    across, up = force_at(sine, cosine, X[1], acceleration, g, sensor[UP], sensor[ACROSS])
+    return across + hinge[0] * cosine, up + hinge[0] * sine
 
 
 @part

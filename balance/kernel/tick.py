@@ -79,18 +79,18 @@ def share_out(v: float, y: Array, allotment: Array, levelling: Array, most: Arra
         return limited
     room = 0.0
     for i in range(allotment.size):
-        room += _room(missing, line_share[i], most[i], out[i])
+        room += room_of(missing, line_share[i], most[i], out[i])
     if room > 0.0:
         part = min(abs(missing) / room, 1.0)
         for i in range(allotment.size):
-            given = part * _room(missing, line_share[i], most[i], out[i])
+            given = part * room_of(missing, line_share[i], most[i], out[i])
             if given > 0.0:
                 out[i] += (given if missing > 0.0 else -given) / line_share[i]
     return limited
 
 
 @part
-def _room(missing: float, line_share: float, most: float, given: float) -> float:
+def room_of(missing: float, line_share: float, most: float, given: float) -> float:
     """Return the torque about the line a unit can still add toward `missing`, as a magnitude."""
     way = 1.0 if missing * line_share >= 0.0 else -1.0
     return abs(line_share) * max(most - way * given, 0.0)
