@@ -63,11 +63,48 @@ class PartCompiler(CompilerBase):  # type: ignore[misc]
 
     def define_pipelines(self) -> list[Any]:
         """Return the one list of passes."""
-        passes = PassManager("part")
-        for kind, words in DefaultPassBuilder.define_nopython_pipeline(self.state).passes:
-            passes.add_pass(PartLowering if kind is NativeLowering else kind, words)
-        passes.finalize()
-        return [passes]
+        return [passes_with(self.state, "part", PartLowering)]
+
+
+class WideLibrary(JITCodeLibrary):  # type: ignore[misc]
+    """Code whose vectors are as wide as the processor has them; LLVM stays at half of AVX-512 unless a function asks."""
+
+    def add_ir_module(self, ir_module: Any) -> None:
+        """Let every function defined here ask; llvmlite prints what it does not know as it stands."""
+        for function in ir_module.functions:
+            if not function.is_declaration:
+                set.add(function.attributes, '"prefer-vector-width"="512"')
+        super().add_ir_module(ir_module)
+
+
+@register_pass(mutates_CFG=True, analysis_only=False)
+class WideLowering(NativeLowering):  # type: ignore[misc]
+    """numba's lowering into a `WideLibrary`."""
+
+    _name = "wide_lowering"
+
+    def run_pass(self, state: Any) -> bool:
+        """Lower one entry; True: the state was changed."""
+        state.library = WideLibrary(state.targetctx.codegen(), state.func_id.func_qualname)
+        state.library.enable_object_caching()
+        return bool(super().run_pass(state))
+
+
+class WideCompiler(CompilerBase):  # type: ignore[misc]
+    """numba's own passes with `WideLowering` in the place of its lowering."""
+
+    def define_pipelines(self) -> list[Any]:
+        """Return the one list of passes."""
+        return [passes_with(self.state, "wide", WideLowering)]
+
+
+def passes_with(state: Any, name: str, lowering: type[NativeLowering]) -> PassManager:
+    """Return numba's passes with another lowering."""
+    passes = PassManager(name)
+    for kind, words in DefaultPassBuilder.define_nopython_pipeline(state).passes:
+        passes.add_pass(lowering if kind is NativeLowering else kind, words)
+    passes.finalize()
+    return passes
 
 
 class Part:
@@ -95,7 +132,8 @@ def entry(function: Callable[..., Any]) -> Any:
 
 def lanes_entry(function: Callable[..., Any]) -> Any:
     """Compile an entry whose innermost loops run over lanes: products and sums are fused, as in what it calls (`fused`)."""
-    return njit(cache=True, nogil=True, no_cfunc_wrapper=True, fastmath=FUSED, **COMMON)(function)
+    wide = njit(cache=True, nogil=True, no_cfunc_wrapper=True, fastmath=FUSED, pipeline_class=WideCompiler, **COMMON)
+    return wide(function)
 
 
 def fused(function: Any) -> Any:

@@ -71,8 +71,9 @@ def current_window(units: Array, i: int, speed: float) -> tuple[float, float]:
     Each end of (±V - K_e N Ω)/R is clipped into ±i_max: intersecting the two intervals can leave nothing, where
     the motor really brakes at -i_max.
     """
-    return current_reach(units[i, BACK_EMF] * speed, units[i, BUS_VOLTAGE], 1.0 / units[i, RESISTANCE],
-                         units[i, CURRENT_LIMIT])
+    low, high = current_reach(units[i, BACK_EMF] * speed, units[i, BUS_VOLTAGE], 1.0 / units[i, RESISTANCE],
+                              units[i, CURRENT_LIMIT])
+    return low, high
 
 
 @inlined

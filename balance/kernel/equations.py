@@ -49,12 +49,6 @@ Array = NDArray[np.float64]
 
 
 @inlined
-def gravity_of(sine: float, cosine: float, stiff_sin: float, stiff_cos: float) -> float:
-    """Return G_s sin θ + G_c cos θ in N·m."""
-    return stiff_sin * sine + stiff_cos * cosine
-
-
-@inlined
 def sliding_drag(speed: float, coulomb: float, viscous: float) -> float:
     """Return f(Ω) in N·m of a wheel without stiction: Coulomb drag that fades linearly below 1 rad/s: no chatter."""
     return coulomb * min(max(speed, -1.0), 1.0) + viscous * speed
@@ -64,7 +58,7 @@ def sliding_drag(speed: float, coulomb: float, viscous: float) -> float:
 def gravity_torque(theta: float, body: Array) -> float:
     """Return M(θ) in N·m, rolling feet of radius r included: G_s − m g r in place of G_s."""
     rolled = body[STIFF_SIN] - body[MASS] * body[GRAVITY] * body[FOOT_RADIUS]
-    return float(gravity_of(np.sin(theta), np.cos(theta), rolled, body[STIFF_COS]))
+    return float(rolled * np.sin(theta) + body[STIFF_COS] * np.cos(theta))
 
 
 @inlined

@@ -13,7 +13,7 @@ from balance.kernel import sensing, series, tick
 from balance.kernel.bundles import LawArrays
 from balance.kernel.compiled import fused
 from balance.kernel.lane_rows import LANES
-from balance.kernel.lane_wheels import body_in, lean_rate_change, motor_in, net_torque, sine_cosine
+from balance.kernel.lane_wheels import body_in, lean_rate_change, motor_in, net_torque, sine
 from balance.kernel.sensing import (
     ACCEL_NOISE,
     ACCEL_RANGE,
@@ -33,6 +33,7 @@ Array = NDArray[np.float64]
 
 normal = fused(sensing.normal)
 digitised = fused(sensing.digitised)
+cosine = fused(series.cosine)
 force_at = fused(sensing.force_at)
 tilt_of = fused(series.tilt_of)
 room_of = fused(tick.room_of)
@@ -60,7 +61,7 @@ def accelerate(X: Array, wheels: int, torque: float) -> None:
 def taken_by(X: Array, lane: int, motor: int, state: int) -> float:
     """Return the torque about the line in N·m one wheel takes from the body."""
     numbers = motor_in(X, motor, lane)
-    return numbers[at.SHARE] * net_torque(X[state * LANES + lane], X[(state + 1) * LANES + lane], numbers)
+    return float(numbers[at.SHARE] * net_torque(X[state * LANES + lane], X[(state + 1) * LANES + lane], numbers))
 
 
 @fused
@@ -73,8 +74,8 @@ def read_tilts(X: Array, sensor: Array, sample: int, out: Array) -> None:
             X[at.NOISE * LANES + lane] = noise * normal(np.int64(X[at.SEED * LANES + lane]), sample, 1)
             X[(at.NOISE + 1) * LANES + lane] = noise * normal(np.int64(X[at.SEED * LANES + lane]), sample, 2)
     for lane in range(LANES):
-        sine, cosine = sine_cosine(X[at.THETA * LANES + lane])
-        along, high = force_at(sine, cosine, X[at.RATE * LANES + lane], X[at.ACCELERATION * LANES + lane],
+        theta = X[at.THETA * LANES + lane]
+        along, high = force_at(sine(theta), cosine(theta), X[at.RATE * LANES + lane], X[at.ACCELERATION * LANES + lane],
                                X[at.GRAVITY * LANES + lane], up, across)
         along = digitised(along + X[at.NOISE * LANES + lane], step, most)
         high = digitised(high + X[(at.NOISE + 1) * LANES + lane], step, most)

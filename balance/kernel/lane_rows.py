@@ -38,8 +38,8 @@ RESULTS = 23         # rows below it are what a trial answers
 
 # the machine and what happens to it
 MACHINE = 24
-STIFF_SIN = 24
-STIFF_COS = 25
+STIFFNESS = 24       # N·m: the size of (G_s, G_c)
+UPRIGHT = 25         # rad: θ at which gravity has no lever
 BODY_DRAG = 26
 PER_MASS = 27        # 1/(kg·m²), wheels eliminated
 BALANCED = 28

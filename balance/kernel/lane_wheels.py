@@ -17,11 +17,10 @@ from balance.kernel.lane_rows import LANES
 Array = NDArray[np.float64]
 Motor = tuple[float, ...]
 
-gravity_of = fused(equations.gravity_of)
 sliding_drag = fused(equations.sliding_drag)
 speed_cap = fused(drive.speed_cap)
 current_reach = fused(drive.current_reach)
-sine_cosine = fused(series.sine_cosine)
+sine = fused(series.sine)
 
 
 @fused
@@ -39,15 +38,15 @@ def motor_in(X: Array, base: int, lane: int) -> Motor:
 
 @fused
 def body_in(X: Array, lane: int) -> tuple[float, float, float, float]:
-    """Return (G_s, G_c, drag, 1/mass) of one lane."""
-    return (X[at.STIFF_SIN * LANES + lane], X[at.STIFF_COS * LANES + lane], X[at.BODY_DRAG * LANES + lane],
+    """Return (gravity's stiffness, θ without its torque, drag, 1/mass) of one lane."""
+    return (X[at.STIFFNESS * LANES + lane], X[at.UPRIGHT * LANES + lane], X[at.BODY_DRAG * LANES + lane],
             X[at.PER_MASS * LANES + lane])
 
 
 @fused
 def net_torque(speed: float, current: float, motor: Motor) -> float:
     """Return what speeds the wheel up in N·m: the motor's torque less the drag."""
-    return motor[at.PER_AMP] * current - sliding_drag(speed, motor[at.COULOMB], motor[at.VISCOUS])
+    return float(motor[at.PER_AMP] * current - sliding_drag(speed, motor[at.COULOMB], motor[at.VISCOUS]))
 
 
 @fused
@@ -66,9 +65,11 @@ def current_slope(speed: float, current: float, command: float, motor: Motor) ->
 
 @fused
 def lean_rate_change(theta: float, rate: float, load: float, taken: float, body: Motor) -> float:
-    """Return θ̈ under a torque about the line and what the wheels take from it, both in N·m."""
-    sine, cosine = sine_cosine(theta)
-    return (gravity_of(sine, cosine, body[0], body[1]) + load - body[2] * rate - taken) * body[3]
+    """Return θ̈ under a torque about the line and what the wheels take from it, both in N·m.
+
+    G_s sin θ + G_c cos θ = √(G_s² + G_c²) sin(θ − θ₀): one series instead of two, the cosine is left out.
+    """
+    return float((body[0] * sine(theta - body[1]) + load - body[2] * rate - taken) * body[3])
 
 
 @fused
@@ -146,7 +147,7 @@ def march_one(X: Array, t: float, h: float, torque: tuple[float, float, float]) 
         a, i = X[at.SPEED * LANES + lane], X[at.CURRENT * LANES + lane]
         u, scale = X[at.ASKED * LANES + lane], X[at.SCALE * LANES + lane]
         d = h * X[at.ALIVE * LANES + lane]
-        e, sixth = 0.5 * d, d / 6.0
+        e, sixth = 0.5 * d, d * (1.0 / 6.0)
         p1, a1, i1, taken, limited = one_rates(x, v, a, i, u, torque[0] * scale, body, motor)
         watch(X, lane, d, taken, momentum_of(v, a, motor), abs(i), power_of(a, i, motor), limited)
         v2 = v + e * p1
@@ -175,7 +176,7 @@ def march_two(X: Array, t: float, h: float, torque: tuple[float, float, float]) 
         u, w = X[at.ASKED * LANES + lane], X[(at.ASKED + 1) * LANES + lane]
         scale = X[at.SCALE * LANES + lane]
         d = h * X[at.ALIVE * LANES + lane]
-        e, sixth = 0.5 * d, d / 6.0
+        e, sixth = 0.5 * d, d * (1.0 / 6.0)
         p1, a1, i1, b1, j1, taken, limited = two_rates(x, v, a, i, b, j, u, w, torque[0] * scale, body, first, second)
         watch(X, lane, d, taken, momentum_of(v, a, first) + momentum_of(v, b, second), max(abs(i), abs(j)),
               power_of(a, i, first) + power_of(b, j, second), limited)

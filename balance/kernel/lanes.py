@@ -1,7 +1,7 @@
 """64 trials side by side: the same sampled law, latency and disturbances as `run.run_trial`, in vectors.
 
-Per lane: the machine, the start, the size of what disturbs it, the seed of its noise. Common to a block: the law, the sensor,
-when something happens. A lane's numbers depend on nothing in its neighbours, so a batch may be cut anywhere.
+Per lane: the machine, the start, the size of what disturbs it, the seed of its noise. Common to a block: the law, the
+sensor, when something happens. A lane's numbers depend on nothing in its neighbours, so a batch may be cut anywhere.
 """
 
 from __future__ import annotations
@@ -14,7 +14,7 @@ from balance.kernel import outcome
 from balance.kernel.bundles import Events, LawArrays
 from balance.kernel.compiled import fused, lanes_entry
 from balance.kernel.integrate import disturbance_at
-from balance.kernel.lane_law import accelerate, span, sense_lanes, share_lanes, tick_lanes
+from balance.kernel.lane_law import accelerate, sense_lanes, share_lanes, span, tick_lanes
 from balance.kernel.lane_rows import LANES
 from balance.kernel.lane_wheels import march_one, march_two, momentum_of, motor_in
 from balance.kernel.sensing import TILT
@@ -179,14 +179,13 @@ def disturb(X: Array, t: float, wheels: int, events: Events, active: Array, at_j
 @fused
 def blow(X: Array, impulse: float, wheels: int) -> None:
     """Let an impulse in N·m·s about the line act at once, scaled per lane: rates jump by M⁻¹ times it."""
+    two = 1.0 if wheels == 2 else 0.0
     for lane in range(LANES):
         jump = impulse * X[at.SCALE * LANES + lane] * X[at.PER_MASS * LANES + lane] * X[at.ALIVE * LANES + lane]
         X[at.RATE * LANES + lane] += jump
         X[at.SPEED * LANES + lane] -= X[(at.MOTOR + at.SHARE) * LANES + lane] * jump
-    if wheels == 2:
-        for other in range(LANES):
-            jump = impulse * X[at.SCALE * LANES + other] * X[at.PER_MASS * LANES + other] * X[at.ALIVE * LANES + other]
-            X[(at.SPEED + at.WHEEL_STATES) * LANES + other] -= X[(at.MOTOR + at.MOTOR_SIZE + at.SHARE) * LANES + other] * jump
+        other = X[(at.MOTOR + at.MOTOR_SIZE + at.SHARE) * LANES + lane]
+        X[(at.SPEED + at.WHEEL_STATES) * LANES + lane] -= two * other * jump
 
 
 @fused

@@ -76,8 +76,7 @@ def recoveries(batch: Batch, law: LawArrays, events: Events, quiet_from: float, 
     samples = math.ceil(events.lasts / law.sample_time - 1e-9)
     time = np.minimum(np.arange(samples + 1) * law.sample_time, events.lasts)
     earlier = int(np.searchsorted(time, events.lasts - max(0.1 * events.lasts, STAYS)))
-    why = next((said for body, units in zip(batch.bodies, batch.units, strict=True)
-                if (said := not_covered(body, units, law, events))), "")
+    why = not_covered(batch.bodies, batch.units, law, events)
     if why:
         rows = np.array([_alone(batch, i, law, events, quiet_from, end_torque, earlier) for i in range(len(batch.scale))]).T
     else:

@@ -16,15 +16,18 @@ from balance.kernel.lane_rows import LANES
 Array = NDArray[np.float64]
 
 
-def not_covered(body: Array, units: Array, law: LawArrays, events: Events) -> str:
-    """Return why lanes cannot run this, "" where they can. Wheels with a motor on stiff legs and point feet are covered."""
+def not_covered(bodies: Array, units: Array, law: LawArrays, events: Events) -> str:
+    """Return why lanes cannot run these, "" where they can: wheels with a motor, on stiff legs and point feet.
+
+    bodies (n, BODY_SIZE), units (n, u, UNIT_SIZE).
+    """
     reasons = (
-        ("more than two units, or a supply, play or legs that give", len(units) > 2),
-        ("gimbals", bool(np.any(units[:, layout.KIND] != layout.WHEEL))),
-        ("a supply, play or legs that give", bool(np.any(units[:, layout.ROLE] != layout.MOTOR))),
-        ("stiction", bool(np.any(units[:, layout.STICTION] > units[:, layout.COULOMB]))),
-        ("a motor without a current lag", not np.all(np.isfinite(units[:, layout.CURRENT_LAG]))),
-        ("rounded feet", body[layout.FOOT_RADIUS] != 0.0),
+        ("more than two units, or a supply, play or legs that give", units.shape[1] > 2),
+        ("gimbals", bool(np.any(units[..., layout.KIND] != layout.WHEEL))),
+        ("a supply, play or legs that give", bool(np.any(units[..., layout.ROLE] != layout.MOTOR))),
+        ("stiction", bool(np.any(units[..., layout.STICTION] > units[..., layout.COULOMB]))),
+        ("a motor without a current lag", not np.all(np.isfinite(units[..., layout.CURRENT_LAG]))),
+        ("rounded feet", bool(np.any(bodies[:, layout.FOOT_RADIUS] != 0.0))),
         ("a release", events.release > 0.0),
         ("a body that changes", len(events.changes) > 0 or bool(np.any(events.jumps[:, outcome.SHIFT] != 0.0))),
         ("mass properties that vary", bool(np.any(events.torques[:, outcome.OF_INERTIA:outcome.LEVER] != 0.0))),
@@ -57,8 +60,7 @@ def machine_rows(bodies: Array, units: Array, scale: Array, seeds: Array, end_to
     bodies (n, BODY_SIZE), units (n, u, UNIT_SIZE), scale and seeds (n,); end_torque: N·m that stays on, before scaling.
     """
     out = np.zeros((at.MACHINE_END, len(bodies)))
-    for to, place in ((at.STIFF_SIN, layout.STIFF_SIN), (at.STIFF_COS, layout.STIFF_COS),
-                      (at.BODY_DRAG, layout.BODY_DRAG), (at.BALANCED, layout.BALANCED), (at.TOUCH_DOWN, layout.TOUCH_DOWN),
+    for to, place in ((at.BODY_DRAG, layout.BODY_DRAG), (at.BALANCED, layout.BALANCED), (at.TOUCH_DOWN, layout.TOUCH_DOWN),
                       (at.LANDS_OUTWARD, layout.LANDS_OUTWARD), (at.FELL, layout.FELL), (at.GRAVITY, layout.GRAVITY)):
         out[to] = bodies[:, place]
     mass = bodies[:, layout.INERTIA].copy()
@@ -68,9 +70,10 @@ def machine_rows(bodies: Array, units: Array, scale: Array, seeds: Array, end_to
         out[first:first + at.MOTOR_SIZE] = rows.T
         mass -= rows[:, at.MOMENT]
     out[at.PER_MASS], out[at.SCALE], out[at.SEED] = 1.0 / mass, scale, seeds
-    stiffness = np.hypot(out[at.STIFF_SIN], out[at.STIFF_COS])
+    upright, across = bodies[:, layout.STIFF_SIN], bodies[:, layout.STIFF_COS]
+    out[at.STIFFNESS], out[at.UPRIGHT] = np.hypot(upright, across), -np.arctan2(across, upright)
     with np.errstate(invalid="ignore"):                      # more than gravity can carry: nowhere, NaN
-        out[at.TARGET] = -np.arcsin(end_torque * scale / stiffness)
+        out[at.TARGET] = out[at.UPRIGHT] - out[at.BALANCED] - np.arcsin(end_torque * scale / out[at.STIFFNESS])
     return out[at.MACHINE:]
 
 
