@@ -142,13 +142,14 @@ def ratios(n: int, lasts: float, times: int) -> dict[str, float]:
     c_time, mine = shortest(lambda: by_c(plain), times), shortest(lambda: by_lanes(plain), times)
     found["C ns per step"] = 1e9 * c_time / (n * lasts / STEP)
     found["two wheels / one in C"] = shortest(lambda: by_lanes(two), times) / c_time
+    by_scipy(case(1, SAMPLE, False), 0)                      # its rates are compiled
     found["solve_ivp / lanes"] = shortest(lambda: by_scipy(plain, 0), 1) / (mine / n)
     return found
 
 
 if __name__ == "__main__":
     print(f"instruction set: {instruction_set()}")
-    for word, ratio in ratios(2048, 2.0, 9).items():
+    for word, ratio in ratios(1024, 2.0, 9).items():
         print(f"{word:<24} {ratio:10.2f}")
     large = case(100_000, 5.0, True)
     began = time.perf_counter()
