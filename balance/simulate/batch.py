@@ -92,7 +92,7 @@ def _in_lanes(batch: Batch, law: LawArrays, events: Events, quiet_from: float, e
     out = np.empty((at.RESULTS, count))
     samples = math.ceil(events.lasts / law.sample_time - 1e-9)
     settling = (quiet_from, SETTLED_SHARE, SETTLED_LEAST, STAYS)
-    workers = min(threads or len(os.sched_getaffinity(0)), max(math.ceil(count / LANES), 1))
+    workers = min(threads or cores(), max(math.ceil(count / LANES), 1))
 
     def run(worker: int) -> None:
         block, history = _aligned(rows_needed(law) * LANES), _aligned((samples + 1) * LANES)
@@ -106,6 +106,12 @@ def _in_lanes(batch: Batch, law: LawArrays, events: Events, quiet_from: float, e
     with ThreadPoolExecutor(workers) as pool:
         list(pool.map(run, range(workers)))
     return out
+
+
+def cores() -> int:
+    """Return how many processor cores this process may use; where the system does not say, all there are."""
+    allowed = getattr(os, "sched_getaffinity", None)
+    return len(allowed(0)) if allowed else os.cpu_count() or 1
 
 
 def _aligned(size: int) -> Array:
