@@ -16,6 +16,7 @@ from balance.machine.machine import Machine
 from balance.plant.record import Plant, Unit
 from balance.report.shapes import hull, part_points, rotor_points
 from balance.stance.record import Stance
+from balance.stance.statics import statics_of
 
 Array = NDArray[np.float64]
 MM = 1e3
@@ -69,6 +70,8 @@ class Drawing:
     height: float           # mm
     offset: float           # mm
     hinge: float            # mm above the line where the legs give; NaN: they are stiff
+    margin: float           # mm inside the nearest edge with all feet down; NaN: no edge, or a foot cannot be set down
+    shift: float            # mm outward by which the trunk must move to stand in balance; NaN: it cannot, or nobody asked
 
 
 @dataclass(frozen=True)
@@ -156,13 +159,22 @@ def axles(machine: Machine, stance: Stance, plant: Plant | None, flat: Flat) -> 
     return tuple(found)
 
 
+def at_rest(machine: Machine, stance: Stance) -> tuple[float, float]:
+    """Return the least margin with all feet down and the trunk's shift to balance, both in m; NaN where there is none."""
+    if stance.name not in (machine.stances or {}):
+        return math.nan, math.nan
+    found = statics_of(machine, stance)
+    return found.support.margin if found.support else math.nan, found.shift.distance if found.shift.reached else math.nan
+
+
 def outline(machine: Machine, stance: Stance, plant: Plant | None) -> Drawing:
     """Flatten one stance into both views."""
     above = Flat(np.zeros(3), np.eye(3)[:2])
     along = Flat(stance.p_a_W, np.array([stance.w_W, stance.u_W]))
     lean = plant.balanced_lean if plant else -math.atan2(stance.offset, stance.height)
+    margin, shift = at_rest(machine, stance)
     return Drawing(
-        machine=machine.machine, stance=stance.name, acts=plant is None or plant.acts,
+        margin=MM * margin, shift=MM * shift, machine=machine.machine, stance=stance.name, acts=plant is None or plant.acts,
         top=view(machine, stance, plant, above), side=view(machine, stance, plant, along),
         outward=np.asarray(stance.w_W)[:2], balanced_lean=math.degrees(lean),
         height=MM * stance.height, offset=MM * stance.offset,

@@ -14,6 +14,7 @@ from balance.machine.stabilisers import Rotor
 from balance.report.figures.machine import draw_machine
 from balance.report.outline import outline
 from balance.report.shapes import hull, part_points, rotor_points, solid_points
+from balance.stance.statics import statics_of
 
 
 def area(outline: np.ndarray) -> float:
@@ -100,7 +101,11 @@ def test_only_feet_that_are_there(answered):
     assert len(outline(result.machine, plant.stance, None).top.axles) == 0
     three = answered("scout-wheels", "on-fore-left")
     stance = three.designs[0].plant.stance
-    assert len(outline(three.machine, stance, three.designs[0].plant).top.polygon) == 3
+    standing = outline(three.machine, stance, three.designs[0].plant)
+    assert len(standing.top.polygon) == 3
+    found = statics_of(three.machine, stance)
+    assert (standing.margin, standing.shift) == (1e3 * found.support.margin, 1e3 * found.shift.distance)
+    assert np.isnan([drawing.margin, drawing.shift]).all()
     for plants in ([], [three.designs[0].plant]):
         assert len(draw_machine(three.machine, [stance], plants).axes) == 2
     with pytest.raises(ValueError, match="no stance"):

@@ -42,7 +42,7 @@ def draw_view(drawing: Drawing, which: str) -> Figure:
     """Draw one view ("top" or "side") of one stance, for a page of two columns."""
     with ink():
         samples = key(drawing)
-        foot = 0.62 + 0.17 * math.ceil(len(samples) / 2)
+        foot = 0.76 + 0.17 * math.ceil(len(samples) / 2)
         figure, (axes,) = sheet(4.2 + foot)
         figure.subplots_adjust(left=0.15, right=0.97, top=1.0 - 0.3 / (4.2 + foot), bottom=foot / (4.2 + foot))
         if which == "top":

@@ -45,7 +45,25 @@ def fill_top(axes: Axes, drawing: Drawing) -> None:
     draw_feet(axes, view)
     draw_centre(axes, view)
     axes.set_xlabel("x, forward (mm)")
+    axes.annotate(at_rest_words(drawing), (0.0, 0.0), (0.0, -38.0), xycoords="axes fraction", textcoords="offset points",
+                  fontsize=7, color=INK)
     axes.set_ylabel("y, left (mm)")
+
+
+def decimals(length: float) -> int:
+    """Tenths of a millimetre matter only below ten."""
+    return 1 if abs(length) < 10.0 else 0
+
+
+def at_rest_words(drawing: Drawing) -> str:
+    """Say how firmly the machine stands in this pose with all feet down, and how far its trunk is from balance on two."""
+    said = []
+    if np.isfinite(drawing.margin):
+        side = "inside" if drawing.margin >= 0.0 else "outside"
+        said.append(f"all feet down: {abs(drawing.margin):.{decimals(drawing.margin)}f} mm {side} the edge")
+    if np.isfinite(drawing.shift):
+        said.append(f"to balance: trunk {signed(drawing.shift, decimals(drawing.shift))} mm outward")
+    return "; ".join(said)
 
 
 def fill_side(axes: Axes, drawing: Drawing) -> None:
