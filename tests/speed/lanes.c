@@ -1,7 +1,7 @@
 /* One reaction wheel, 64 trials side by side, by hand: what the lanes of the kernel are measured against.
    The same work: gravity's sine, drag, current loop with voltage, current, torque and speed limits, RK4, a sampled law on lean,
-   lean rate and wheel speed with one sample of latency, peaks and the end of each trial; with `noise`, gyro and tilt from a
-   noisy inertial sensor. Row-major arrays [row][lane]; the inner loops are plain so that the compiler makes vectors of them. */
+   lean rate and wheel speed with one sample of latency, peaks and the end of each trial; with noise, gyro and tilt from a
+   noisy inertial sensor and a complementary filter. Row-major arrays [row][lane]; the inner loops are plain so that the compiler makes vectors of them. */
 #include <math.h>
 #include <stdint.h>
 #include <string.h>
@@ -117,16 +117,16 @@ static void step(row *s, row *m, const row *p, const row asked, double h)
 }
 
 /* numbers (NUMBERS, n), states (4, n) changed to the end, out (9, n): alive, then the metrics; law: three gains, the limit,
-   noise of gyro and accelerometer, height of the sensor, g. n is a multiple of 64. */
+   noise of gyro and accelerometer, height of the sensor, g, share of the gyro in the filter. n is a multiple of 64. */
 void run(const double *numbers, double *states, double *out, long n, long periods, int steps, double h, const double *law,
          long seed)
 {
-    row p[NUMBERS], s[4], m[9], y[3], asked, next, shown[2];
+    row p[NUMBERS], s[4], m[9], y[3], asked, next, shown[2], lean;
     for (long first = 0; first < n; first += L) {
         for (int k = 0; k < NUMBERS; k++) memcpy(p[k], numbers + k * n + first, sizeof(row));
         for (int k = 0; k < 4; k++) memcpy(s[k], states + k * n + first, sizeof(row));
         memset(m, 0, sizeof m); memset(next, 0, sizeof next);
-        for (int l = 0; l < L; l++) m[0][l] = 1.0;
+        for (int l = 0; l < L; l++) { m[0][l] = 1.0; lean[l] = s[0][l]; }
         for (long k = 0; k < periods; k++) {
             for (int l = 0; l < L; l++) { y[0][l] = s[0][l]; y[1][l] = s[1][l]; y[2][l] = s[2][l]; asked[l] = next[l]; }
             if (law[4] > 0) {
@@ -141,7 +141,8 @@ void run(const double *numbers, double *states, double *out, long n, long period
                     double acc = (P(STIFF) * sine(s[0][l]) - P(SHARE) * net) * P(PER_MASS);
                     double across = law[6] * acc - law[7] * sine(s[0][l]) + shown[0][l];
                     double up = law[7] * cosine(s[0][l]) - law[6] * v * v + shown[1][l];
-                    y[0][l] = tilt(-across, up);
+                    lean[l] = law[8] * (lean[l] + steps * h * y[1][l]) + (1 - law[8]) * tilt(-across, up);
+                    y[0][l] = lean[l];
                 }
             }
             for (int l = 0; l < L; l++)

@@ -31,9 +31,12 @@ from balance.simulate.blocks import motor_rows
 from tests.kernel import batches, rigs
 
 GAINS = (-60.0, -10.3, -0.008)
+"""Of `batches.control`: v = −gains · y."""
 LIMIT = 0.9
 STEP = 0.5e-3
 SAMPLE = 0.002
+OF_GYRO = 0.995
+"""Share of the gyro in the filter: a time constant of 0.4 s."""
 MOTOR = (rows.COUPLING, rows.PER_OWN, rows.SHARE, rows.MOMENT, rows.COULOMB, rows.VISCOUS, rows.TORQUE_LIMIT,
          rows.SPEED_LIMIT, rows.SPEED_GAIN, rows.PER_TORQUE, rows.PER_AMP, rows.EMF, rows.OHMS, rows.PER_OHM, rows.VOLTS,
          rows.AMPS, rows.LAG)
@@ -57,8 +60,17 @@ def case(n: int, lasts: float, noisy: bool, wheels: int = 1) -> Case:
     body, states = rigs.body(fell=batches.FELL), batch.states.copy()
     states[:, 0] -= rigs.body(side=0.3)[layout.BALANCED]
     batch = replace(batch, bodies=np.tile(body, (n, 1)), states=states * 0.2, scale=np.ones(n))
-    places = (TILT, GYRO, 2) if noisy else (0, 1, 2)
-    return Case(batch, batches.control(wheels, places, SAMPLE), rigs.events(lasts, longest=STEP, sensor=sensor), noisy)
+    law = batches.control(wheels, (TILT, GYRO, 2) if noisy else (0, 1, 2), SAMPLE)
+    if noisy:
+        law, batch = filtered(law), replace(batch, memory=batch.states[:, :1].copy())
+    return Case(batch, law, rigs.events(lasts, longest=STEP, sensor=sensor), noisy)
+
+
+def filtered(law: LawArrays) -> LawArrays:
+    """Return the law on a lean from a complementary filter: e⁺ = a (e + T gyro) + (1 − a) tilt, e⁺ in the tilt's place."""
+    into = np.array([[1.0 - OF_GYRO, OF_GYRO * SAMPLE, 0.0]])
+    return law._replace(A=np.array([[OF_GYRO]]), B=into, C=law.D[0] * np.array([OF_GYRO]),
+                        D=law.D * np.array([0.0, 1.0, 1.0]) + law.D[0] * into[0])
 
 
 def shortest(run: Callable[[], object], times: int) -> float:
@@ -97,8 +109,8 @@ def by_c(given: Case) -> tuple[np.ndarray, np.ndarray]:
     mass = body[:, layout.INERTIA] - motors[:, rows.MOMENT]
     numbers = np.array([body[:, layout.STIFF_SIN], 1.0 / mass, *[motors[:, k] for k in MOTOR], body[:, layout.FELL]])
     sensor = given.events.sensor
-    law = np.array([*given.law.D, LIMIT, *(sensor[[sensing.GYRO_NOISE, sensing.ACCEL_NOISE, sensing.UP]]),
-                    body[0, layout.GRAVITY]])
+    law = np.array([*(-np.array(GAINS)), LIMIT, *(sensor[[sensing.GYRO_NOISE, sensing.ACCEL_NOISE, sensing.UP]]),
+                    body[0, layout.GRAVITY], OF_GYRO])
     states, out = np.ascontiguousarray(batch.states.T), np.zeros((9, n))
     call = built().run
     call.restype, call.argtypes = None, [*[ctypes.c_void_p] * 3, ctypes.c_long, ctypes.c_long, ctypes.c_int,
