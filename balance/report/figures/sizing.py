@@ -19,6 +19,8 @@ LOOKS = {"reaction wheel": (NAVY, "o", SOLID), "scissored pair": (RUST, "s", DAS
 MARKS = ((Line2D([], [], ls="", marker="o", ms=10, mfc="none", mec=SLATE), "made as small as the trials let it be"),
          (Line2D([], [], ls="", marker="^", ms=5, mfc="white", mec=SLATE), "push that overpowers the gimbal drive"))
 """Marks that mean something in every family, with their words."""
+WIDE = 6.0
+"""Heaviest over lightest above which masses stand on a logarithmic axis."""
 
 
 def draw_sizing(answer: SizeAnswer) -> Figure:
@@ -30,11 +32,11 @@ def draw_sizing(answer: SizeAnswer) -> Figure:
         for family in answer.question.sizing.families:
             own = sorted((c for c in good if c.candidate.family == family), key=lambda c: c.added)
             scatter(push, own, [c.push for c in own], family)
-            scatter(power, own, [max(c.power, 0.1) for c in own], family)
+            scatter(power, own, [max(c.power, 0.1) for c in own], family, False)
         for axes, title in ((push, "worst-case push survived, N·s"), (power, "peak power in the trials, W")):
             axes.set_xlabel("added mass, kg")
             axes.set_ylabel(title)
-            axes.set_xlim(left=0.0)
+            mass_axis(axes, [c.added for c in good])
         power.set_yscale("log")
         power.yaxis.set_major_formatter(FuncFormatter(lambda value, _: f"{value:g}"))
         power.yaxis.set_minor_formatter(NullFormatter())
@@ -51,12 +53,25 @@ def draw_sizing(answer: SizeAnswer) -> Figure:
     return figure
 
 
-def scatter(axes: Axes, own: list[Confirmed], values: list[float], family: str) -> None:
-    """Draw one family; the one whose binding quantity is known is ringed, what overpowers a gimbal drive is hollow."""
+def mass_axis(axes: Axes, masses: list[float]) -> None:
+    """Set the axis of added mass: from zero, or by factors where one family weighs many times another."""
+    if not masses or max(masses) < WIDE * min(masses):
+        axes.set_xlim(left=0.0)
+        return
+    axes.set_xscale("log")
+    marks = [m * 10.0**k for k in range(-3, 4) for m in (1.0, 2.0, 5.0)]
+    axes.set_xlim(0.8 * min(masses), 1.25 * max(masses))
+    axes.set_xticks([m for m in marks if 0.8 * min(masses) <= m <= 1.25 * max(masses)])
+    axes.xaxis.set_major_formatter(FuncFormatter(lambda value, _: f"{value:g}"))
+    axes.xaxis.set_minor_formatter(NullFormatter())
+
+
+def scatter(axes: Axes, own: list[Confirmed], values: list[float], family: str, of_push: bool = True) -> None:
+    """Draw one family; one whose binding quantity is known is ringed, a push that overpowers a gimbal drive is hollow."""
     colour, mark, line = LOOKS[family]
     axes.plot([c.added for c in own], values, color=colour, marker=mark, ls=line, lw=0.9, ms=5, label=family)
     ringed = [(c.added, v) for c, v in zip(own, values, strict=True) if c.binding]
-    given = [(c.added, v) for c, v in zip(own, values, strict=True) if c.given_way]
+    given = [(c.added, v) for c, v in zip(own, values, strict=True) if of_push and c.given_way]
     axes.plot([x for x, _ in given], [y for _, y in given], ls="", marker=mark, ms=5, mfc="white", mec=colour)
     axes.plot([x for x, _ in ringed], [y for _, y in ringed], ls="", marker="o", ms=10, mfc="none", mec=colour, mew=0.8)
 
