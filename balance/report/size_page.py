@@ -79,7 +79,8 @@ def _needed(found: SizeAnswer) -> list[str]:
 def _fronts(found: SizeAnswer) -> list[str]:
     count = sum(len(s.grid) for s in found.surveys)
     drawn = html.picture(as_bytes(draw_sizing(found), "svg"), "added mass against push and against power, by family",
-                         f"{count} candidates; these were confirmed by simulation")
+                         f"{count} candidates; these were confirmed by simulation, those without a ring as they are, "
+                         "safety factor left out")
     push = _table("Front of added mass and worst-case push", ["adds", "push", "family", "made of"], push_rows(found))
     power = _table("Front of added mass and power", ["adds", "peak power", "family", "made of"], power_rows(found))
     told = overpowered(found)
