@@ -8,10 +8,11 @@ import numpy as np
 import pytest
 
 from balance.kernel import layout
+from balance.kernel.integrate import longest_step
 from balance.kernel.sensing import GYRO, TILT
 from balance.simulate import batch as room
 from balance.simulate.batch import Batch, Recoveries, recoveries
-from tests.kernel import batches, rigs
+from tests.kernel import batches, rigs, test_accuracy
 
 QUIET = 0.24
 ROUNDING = 1e-10
@@ -84,6 +85,34 @@ def test_runge_kutta_in_lanes_has_order_four() -> None:
     errors = np.abs(np.array(leans[:-1]) - leans[-1])
     slope = np.polyfit(np.log(steps), np.log(errors), 1)[0]
     assert slope == pytest.approx(4.0, abs=0.3)                      # the next order still shows at the coarse end
+
+
+def after_kicks(longest, kicks=(0.02, 0.12, 0.24), lasts=0.3):
+    """Return (result of lanes, DOP853's end states at 1e-12, the momenta those store): `test_accuracy`'s machine and law."""
+    body, units, n = rigs.body(inertia=0.35, stiffness=9.0), test_accuracy.real_motor(), len(kicks)
+    law = rigs.law(test_accuracy.GAINS, 0.002, 0.0027)
+    batch = Batch(np.tile(body, (n, 1)), np.tile(units, (n, 1, 1)), np.zeros((n, 4)), np.zeros((n, 1)), np.array(kicks),
+                  np.zeros(n, dtype=np.int64), np.full(n, 2.0))
+    result = recoveries(batch, law, rigs.events(lasts, jumps=[(0.02, 1.0, 0.0, np.inf)], longest=longest), 0.02)
+    ends = np.array([test_accuracy.by_period(body, units, [0.0] * 4, test_accuracy.GAINS, 0.002, 0.0027, 0.02, k, lasts)[-1]
+                     for k in kicks])
+    coupling, own = units[0, layout.COUPLING], units[0, layout.OWN_INERTIA]
+    return result, ends, coupling * ends[:, 2] + coupling**2 / own * ends[:, 1]
+
+
+def test_lanes_against_dop853_with_every_limit_met() -> None:
+    """Issue 5's bounds: lean within 5e-9 rad, wheel speed (here its momentum) within 1e-5 of its peak."""
+    result, ends, stored = after_kicks(longest_step(test_accuracy.real_motor()))
+    assert np.all(result.end_time == 0.3)                            # none has fallen: the ends are of one instant
+    assert result.torque_saturated[2] > result.torque_saturated[0]
+    assert np.abs(result.end_lean - ends[:, 0]).max() < 5e-9
+    assert np.all(np.abs(result.end_momentum - stored) < 1e-5 * result.peak_momentum)
+
+
+def test_lanes_with_a_step_too_long_are_seen() -> None:
+    """The twin: the same comparison fails with sub-steps the current loop does not allow."""
+    result, ends, _ = after_kicks(1e-3)
+    assert np.abs(result.end_lean - ends[:, 0]).max() > 5e-9
 
 
 @pytest.mark.parametrize(("change", "why"), [
