@@ -56,7 +56,7 @@ def test_more_momentum_can_more_and_weighs_more(asked):
             continue
         candidate = one.grid.take(int(one.enough[0]))
         less = smaller(candidate, 0.7)
-        assert less.length * less.speed < candidate.length * candidate.speed
+        assert less.length * less.diameter**4 * less.speed < candidate.length * candidate.diameter**4 * candidate.speed
         assert added_mass(less, asked.parts, asked.count) <= added_mass(candidate, asked.parts, asked.count)
 
 
