@@ -11,6 +11,9 @@ from balance.machine.solids import Tensor
 SLACK = 1e-6
 """Relative: what rounding a printed tensor may cost; a flat plate meets the triangle rule with equality."""
 
+NOTHING = 1e-7
+"""Share of the largest moment below which one is none: what the closed form of the moments can tell."""
+
 
 def principal_moments(tensor: Tensor) -> tuple[float, float, float]:
     """Return the principal moments of inertia in kg·m², ascending.
@@ -40,8 +43,10 @@ def check_tensor(tensor: Tensor) -> Iterator[Fault]:
     """
     low, middle, high = principal_moments(tensor)
     given = f"principal moments {low:.4g}, {middle:.4g} and {high:.4g} kg*m^2"
-    if high <= 0.0 or middle <= 0.0 or low < -SLACK * high:
+    if high <= 0.0 or middle <= 0.0 or low < NOTHING * high:
+        thin = high > 0.0 and abs(low) < NOTHING * high
         yield Fault("", given, "positive principal moments",
+                    "a rod so thin is `solid: {rod: …}`; a body has some moment about every axis" if thin else
                     "check xy, xz and yz" if high > 0.0 else "a point mass is `solid: {point: 0 mm}`")
     elif high > (low + middle) * (1.0 + SLACK):
         yield Fault("", given, "a largest moment of at most the sum of the other two (triangle inequality)",

@@ -101,6 +101,9 @@ def test_rule_and_moments_are_told():
     (fault,) = check_tensor(Tensor(1.0, 1.0, 1.0, 2.0))
     assert "positive" in fault.allowed
     assert list(check_tensor(Tensor(1.0, 1.0, 2.0))) == []          # a flat plate: equality is allowed
+    (fault,) = check_tensor(Tensor(0.0, 1.0, 1.0))                  # no body is that thin
+    assert "solid: {rod" in fault.hint
+    assert list(check_tensor(Tensor(1e-4, 1.0, 1.0))) == []
 
 
 def test_bodies_of_real_parts_pass_and_shrunken_ones_do_not():
