@@ -5,6 +5,8 @@ from __future__ import annotations
 import hashlib
 import os
 
+from balance.base.whole import write_whole
+
 MARK = "<!-- whole: "
 END = " -->\n</body></html>\n"
 
@@ -30,6 +32,14 @@ def untouched(path: str) -> bool:
         return False
     body, mark, rest = text.rpartition(MARK)
     return bool(mark) and rest == digest(body) + END
+
+
+def put(page: str, folder: str, name: str) -> str:
+    """Write a page into `folder` (made if it is not there), whole or not at all, in its free place; return its path."""
+    os.makedirs(folder, exist_ok=True)
+    path = free_place(folder, name)
+    write_whole(path, page)
+    return path
 
 
 def free_place(folder: str, name: str) -> str:

@@ -2,13 +2,10 @@
 
 from __future__ import annotations
 
-import os
-
-from balance.base.whole import write_whole
 from balance.report import page as html
 from balance.report.figures.palette import as_bytes
 from balance.report.figures.sizing import draw_sizing
-from balance.report.seal import free_place
+from balance.report.seal import put
 from balance.report.sizing import (
     BEST,
     LEDGER,
@@ -37,11 +34,7 @@ def write_size_page(found: SizeAnswer, folder: str) -> str:
     An earlier page is replaced, but not one that somebody has edited since.
     Raises OSError where the folder cannot be written.
     """
-    text = compose(found)
-    os.makedirs(folder, exist_ok=True)
-    path = free_place(folder, PAGE)
-    write_whole(path, text)
-    return path
+    return put(compose(found), folder, PAGE)
 
 
 def compose(found: SizeAnswer) -> str:

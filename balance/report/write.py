@@ -2,9 +2,6 @@
 
 from __future__ import annotations
 
-import os
-
-from balance.base.whole import write_whole
 from balance.check.records import CheckResult
 from balance.design.records import Design
 from balance.design.robustness.one_law import compared
@@ -29,7 +26,7 @@ from balance.report.margins import margin_table
 from balance.report.outline import outline
 from balance.report.responses import picture_responses
 from balance.report.robustness import across_words, one_law_table, retuned_words, worst_table
-from balance.report.seal import free_place
+from balance.report.seal import put
 from balance.report.told import told
 from balance.report.verdicts import headline, tally, verdict_tables
 from balance.stance.compared import bench_against_cad
@@ -44,11 +41,7 @@ def write_report(result: CheckResult, folder: str) -> str:
     An earlier report is replaced, but not one that somebody has edited since: then a new name is chosen (`report-2.html`).
     Raises OSError where the folder cannot be written.
     """
-    text = compose(result)
-    os.makedirs(folder, exist_ok=True)
-    path = free_place(folder, PAGE)
-    write_whole(path, text)
-    return path
+    return put(compose(result), folder, PAGE)
 
 
 def compose(result: CheckResult) -> str:
